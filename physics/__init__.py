@@ -1,0 +1,1 @@
+"""One-band transport through layered heterostructures: levels, transmission, density."""

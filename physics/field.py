@@ -1,0 +1,122 @@
+"""Structure and bias to band edges over position.
+
+The *uniform* model drops ``bias + built-in`` linearly across the layers between the contacts; the
+built-in part lines up the two Fermi levels at zero bias. Where permittivities differ, the
+displacement field is continuous, so each layer's field is proportional to 1/permittivity
+(J. D. Jackson, Classical Electrodynamics, sec. 4.4, from memory).
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from physics.errors import StructureError
+from physics.structure import MAX_BIAS_V, Structure
+
+ASSUMED_PERMITTIVITY = 12.9
+"""Relative permittivity of a layer that states none (GaAs, static); `advise` says so where used."""
+
+
+@dataclass(frozen=True, eq=False)
+class Profile:
+    """Band edge and mass over position, as linear pieces between flat contacts."""
+
+    position_nm: NDArray[np.float64]
+    """Faces of the pieces, shape (P + 1,); 0 at the left contact's face."""
+    edge_left_eV: NDArray[np.float64]
+    """Band edge at each piece's left face, shape (P,)."""
+    edge_right_eV: NDArray[np.float64]
+    """Band edge at each piece's right face, shape (P,)."""
+    mass_left: NDArray[np.float64]
+    """Mass at each piece's left face, in m0, shape (P,)."""
+    mass_right: NDArray[np.float64]
+    """Mass at each piece's right face, in m0, shape (P,)."""
+    layer_index: NDArray[np.int64]
+    """Index of the layer that each piece belongs to, counted from 0, shape (P,)."""
+    contact_edge_eV: tuple[float, float]
+    """Band edge in the left and in the right contact, bias included."""
+    contact_mass: tuple[float, float]
+    """Mass in the left and in the right contact, in m0."""
+
+    @property
+    def length_nm(self) -> float:
+        """Distance between the contacts' faces."""
+        return float(self.position_nm[-1])
+
+    @property
+    def lowest_eV(self) -> float:
+        """Lowest band edge anywhere, contacts included."""
+        return float(min(self.edge_left_eV.min(), self.edge_right_eV.min(), *self.contact_edge_eV))
+
+    @property
+    def highest_eV(self) -> float:
+        """Highest band edge anywhere, contacts included."""
+        return float(max(self.edge_left_eV.max(), self.edge_right_eV.max(), *self.contact_edge_eV))
+
+    def edge_eV(self, position_nm: NDArray[np.float64]) -> NDArray[np.float64]:
+        """Band edge at each position, shape of ``position_nm``; at a face, the piece to its right."""
+        x = np.asarray(position_nm, dtype=np.float64)
+        piece = np.searchsorted(self.position_nm, x, side="right") - 1
+        inside = np.clip(piece, 0, self.edge_left_eV.size - 1)
+        start = self.position_nm[inside]
+        share = (x - start) / (self.position_nm[inside + 1] - start)
+        edge = self.edge_left_eV[inside] * (1.0 - share) + self.edge_right_eV[inside] * share
+        edge = np.where(x < 0.0, self.contact_edge_eV[0], edge)
+        return np.where(x > self.length_nm, self.contact_edge_eV[1], edge)
+
+
+def built_in_eV(structure: Structure) -> float:
+    """Drop across the layers at zero bias: what lines up the Fermi levels of the two contacts."""
+    left, right = structure.left, structure.right
+    if left.fermi_eV is None or right.fermi_eV is None:
+        return 0.0
+    return (right.edge_eV + right.fermi_eV) - (left.edge_eV + left.fermi_eV)
+
+
+def uniform_field(structure: Structure, bias_V: float = 0.0) -> Profile:
+    """Lay the uniform field of a bias over a structure.
+
+    Parameters
+    ----------
+    structure : Structure
+        The layers and contacts.
+    bias_V : float
+        Right contact relative to the left; positive lowers the right contact's band edge.
+
+    Returns
+    -------
+    Profile
+        One linear piece a layer.
+
+    Raises
+    ------
+    StructureError
+        The bias is not a number or beyond ``MAX_BIAS_V``.
+    """
+    if not abs(bias_V) <= MAX_BIAS_V:
+        allowed = f"a bias lies between -{MAX_BIAS_V:g} and {MAX_BIAS_V:g} V"
+        raise StructureError("conditions", "bias_V", bias_V, allowed)
+    layers = structure.layers
+    thickness = np.array([layer.thickness_nm for layer in layers])
+    permittivity = np.array(
+        [
+            ASSUMED_PERMITTIVITY if layer.permittivity is None else layer.permittivity
+            for layer in layers
+        ]
+    )
+    position = np.concatenate(([0.0], np.cumsum(thickness)))
+    weight = np.concatenate(([0.0], np.cumsum(thickness / permittivity)))
+    drop = (bias_V + built_in_eV(structure)) * (weight / weight[-1])
+    return Profile(
+        position_nm=position,
+        edge_left_eV=np.array([layer.edge_eV for layer in layers]) - drop[:-1],
+        edge_right_eV=np.array([layer.right_edge_eV for layer in layers]) - drop[1:],
+        mass_left=np.array([layer.mass for layer in layers]),
+        mass_right=np.array([layer.right_mass for layer in layers]),
+        layer_index=np.arange(len(layers), dtype=np.int64),
+        contact_edge_eV=(structure.left.edge_eV, structure.right.edge_eV - float(drop[-1])),
+        contact_mass=(structure.left.mass, structure.right.mass),
+    )

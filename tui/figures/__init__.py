@@ -1,0 +1,1 @@
+"""What is drawn: values in, lines of cells out."""

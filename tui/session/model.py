@@ -1,0 +1,75 @@
+"""A session as its user wrote it: materials by name, thickness in either unit, nothing resolved.
+
+These frozen values are what the workbench edits, what undo steps through, and what the session
+text reads into and writes back from. `tui.session.resolve` turns one into the numbers that
+``physics`` works with.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, field
+from typing import Literal
+
+FieldModel = Literal["uniform"]
+
+
+@dataclass(frozen=True)
+class Conditions:
+    """Temperature, bias and the field model."""
+
+    temperature_K: float = 300.0
+    bias_V: float = 0.0
+    field: FieldModel = "uniform"
+
+
+@dataclass(frozen=True)
+class ContactEntry:
+    """A contact: a material, or an edge with a mass; with donors, a Fermi energy, or neither."""
+
+    material: str | None = None
+    edge_eV: float | None = None
+    mass: float | None = None
+    donors_cm3: float | None = None
+    fermi_eV: float | None = None
+    permittivity: float | None = None
+
+
+@dataclass(frozen=True)
+class LayerEntry:
+    """A layer: a material, or an edge with a mass; a thickness in nm or in monolayers."""
+
+    label: str = ""
+    material: str | None = None
+    edge_eV: float | None = None
+    mass: float | None = None
+    thickness_nm: float | None = None
+    thickness_ml: float | None = None
+    donors_cm3: float = 0.0
+    permittivity: float | None = None
+    to_material: str | None = None
+    to_edge_eV: float | None = None
+    to_mass: float | None = None
+
+
+@dataclass(frozen=True)
+class MaterialEntry:
+    """A user's own material; its edge is on the scale of the session's other edges."""
+
+    name: str
+    edge_eV: float
+    mass: float
+    permittivity: float | None = None
+    monolayer_nm: float | None = None
+
+
+@dataclass(frozen=True)
+class Session:
+    """A whole session text."""
+
+    title: str = ""
+    notes: str = ""
+    conditions: Conditions = field(default_factory=Conditions)
+    left: ContactEntry = field(default_factory=ContactEntry)
+    layers: tuple[LayerEntry, ...] = ()
+    right: ContactEntry = field(default_factory=ContactEntry)
+    materials: tuple[MaterialEntry, ...] = ()
