@@ -57,7 +57,7 @@ class Profile:
         return float(max(self.edge_left_eV.max(), self.edge_right_eV.max(), *self.contact_edge_eV))
 
     def edge_eV(self, position_nm: NDArray[np.float64]) -> NDArray[np.float64]:
-        """Band edge at each position, shape of ``position_nm``; at a face, the piece to its right."""
+        """Band edge at each position, in the shape given; at a face, the piece to its right."""
         x = np.asarray(position_nm, dtype=np.float64)
         piece = np.searchsorted(self.position_nm, x, side="right") - 1
         inside = np.clip(piece, 0, self.edge_left_eV.size - 1)

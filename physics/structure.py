@@ -51,7 +51,7 @@ class Contact:
 
 @dataclass(frozen=True)
 class Layer:
-    """One layer; with ``to_edge_eV`` or ``to_mass`` a linear grade from its left to its right face."""
+    """One layer; with ``to_edge_eV`` or ``to_mass`` a linear grade from left face to right face."""
 
     thickness_nm: float
     edge_eV: float

@@ -1,0 +1,245 @@
+"""Levels: complex poles of the scattering matrix, complete and proved so.
+
+A level is a zero E_r - i Gamma / 2 of the outgoing-wave condition (`outgoing`). The window is cut
+at the contacts' edges, between which the sheet is fixed. Below both edges the levels are bound and
+Sturm's theorem counts them exactly. Elsewhere the closed stack's eigenvalues, found by counting
+nodes and hence blind to no width, start Aberth's iteration, and the argument principle proves the
+result complete or finds what is missing (`rootfinding`). Widths come from the flux (`leaving`).
+"""
+
+from __future__ import annotations
+
+import itertools
+import math
+from dataclasses import dataclass
+from typing import Literal
+
+import numpy as np
+from numpy.typing import NDArray
+
+from physics.constants import HBAR_EV_S
+from physics.errors import EnergyError
+from physics.field import Profile
+from physics.leaving import STOPS, Leaving, leaving_states
+from physics.outgoing import Sheet, mismatch, states_below
+from physics.rootfinding import Rectangle, zeros_in
+from physics.sectors import Sectors, cut
+
+ComplexArray = NDArray[np.complex128]
+FloatArray = NDArray[np.float64]
+
+DEFAULT_MAX_WIDTH_EV = 0.1
+SECTION = 32
+"""Energies tried in each bracket at once while it is narrowed."""
+STRONG = 0.02
+"""Share of the largest density from which a wave counts as strong."""
+COARSE, FINE = 1e-7, 1e-16
+"""Bracket widths in eV: enough to start a complex iteration; as far as a double goes."""
+MARGIN = 0.15
+"""Share of a window's span that starting points are gathered from beyond its ends."""
+LEVELS_AT_ONCE = 4_000_000
+"""Matrix elements held at once while states are computed."""
+WINDOW_LIMIT_EV = 200.0
+THRESHOLD_EV = 1e-11
+"""The contour stays this far from the ends of a strip, where a contact's edge may branch."""
+REAL_AXIS_EV = 1e-9
+"""Rounding that lifts a narrow level's pole above the real axis."""
+
+
+@dataclass(frozen=True)
+class Level:
+    """One level of the stack."""
+
+    energy_eV: float
+    width_eV: float
+    """Full width Gamma; 0 for a bound level, or where it underflows a double."""
+    log10_width_eV: float
+    """Its decadic logarithm, good however narrow; -inf for a bound level."""
+    left_width_eV: float
+    right_width_eV: float
+    lifetime_s: float
+    """hbar / Gamma; inf for a bound level."""
+    peak_transmission: float
+    """4 Gamma_L Gamma_R / Gamma^2 (Ricco and Azbel, Phys. Rev. B 29, 1970 (1984)), 0 if closed."""
+    kind: Literal["bound", "quasi-bound"]
+    nodes: int
+    """Nodes of the wave, the weak outgoing ends left out."""
+    share_by_layer: tuple[float, ...]
+    """Probability in each layer; the rest of 1 is in the tails in closed contacts."""
+
+
+@dataclass(frozen=True)
+class LevelSet:
+    """The levels of a window."""
+
+    levels: tuple[Level, ...]
+    """Sorted by energy."""
+    complete: bool
+    """Whether the count was proved and met."""
+    counted: int
+    """Levels in the window by the count; -1 where it could not be done."""
+    from_eV: float
+    to_eV: float
+    max_width_eV: float
+
+
+@dataclass(frozen=True, eq=False)
+class _Strip:
+    """Poles found between two neighbouring contact edges."""
+
+    sheet: Sheet
+    poles: ComplexArray
+    missing: int
+    proved: bool
+
+
+def find_levels(
+    profile: Profile, from_eV: float, to_eV: float, max_width_eV: float = DEFAULT_MAX_WIDTH_EV
+) -> LevelSet:
+    """Find every level with its energy in a window and its width up to a limit.
+
+    Parameters
+    ----------
+    profile : Profile
+        Edges and masses over position.
+    from_eV, to_eV : float
+        The window of the levels' energy.
+    max_width_eV : float
+        Largest width.
+
+    Raises
+    ------
+    EnergyError
+        The window is empty, or beyond `WINDOW_LIMIT_EV`, or the width limit is not positive.
+    StructureError
+        The stack is too thick for these energies.
+    """
+    _check_window(from_eV, to_eV, max_width_eV)
+    levels: list[Level] = []
+    counted, complete = 0, True
+    for low, high in _strips(profile, from_eV, to_eV):
+        strip = _find_poles(profile, low, high, max_width_eV)
+        found = [level for level in _describe(profile, strip) if level.width_eV <= max_width_eV]
+        levels += found
+        counted += len(found) + strip.missing
+        complete = complete and strip.proved
+    levels.sort(key=lambda level: level.energy_eV)
+    return LevelSet(
+        tuple(levels), complete, counted if complete else -1, from_eV, to_eV, max_width_eV
+    )
+
+
+def _check_window(from_eV: float, to_eV: float, max_width_eV: float) -> None:
+    if not (abs(from_eV) <= WINDOW_LIMIT_EV and abs(to_eV) <= WINDOW_LIMIT_EV):
+        raise EnergyError(f"an energy lies between -{WINDOW_LIMIT_EV:g} and {WINDOW_LIMIT_EV:g} eV")
+    if not from_eV < to_eV:
+        raise EnergyError(f"the window from {from_eV:g} to {to_eV:g} eV is empty")
+    if not 0.0 < max_width_eV <= WINDOW_LIMIT_EV:
+        raise EnergyError(f"the largest width is {max_width_eV:g} eV; it has to be above 0")
+
+
+def _strips(profile: Profile, from_eV: float, to_eV: float) -> list[tuple[float, float]]:
+    edges = sorted({edge for edge in profile.contact_edge_eV if from_eV < edge < to_eV})
+    ends = [from_eV, *edges, to_eV]
+    return list(itertools.pairwise(ends))
+
+
+def _find_poles(profile: Profile, low: float, high: float, max_width_eV: float) -> _Strip:
+    middle = 0.5 * (low + high)
+    sheet = Sheet(middle > profile.contact_edge_eV[0], middle > profile.contact_edge_eV[1])
+    if sheet.closed:
+        sectors = cut(profile, low, high)
+        bound = closed_stack_energies(profile, sectors, sheet, (low, high), FINE)
+        return _Strip(sheet, bound.astype(np.complex128), 0, proved=True)
+    depth = 0.5 * max_width_eV * (1.0 + 1e-9)
+    height = max(depth, 0.1 * (high - low))
+    margin = MARGIN * (high - low)
+    wide = (low - margin, high + margin)
+    sectors = cut(profile, *wide, depth_eV=max(depth, height))
+    starts = closed_stack_energies(profile, sectors, sheet, wide, COARSE)
+    box = Rectangle(low + THRESHOLD_EV, high - THRESHOLD_EV, -depth, height)
+    zeros = zeros_in(
+        lambda energy: mismatch(profile, sectors, sheet, energy), box, starts.astype(np.complex128)
+    )
+    inside = Rectangle(low, high, -np.inf, REAL_AXIS_EV).holds(zeros.points)
+    missing = 0 if zeros.counted < 0 else zeros.counted - int(box.holds(zeros.points).sum())
+    return _Strip(sheet, zeros.points[inside], max(missing, 0), zeros.proved)
+
+
+def closed_stack_energies(
+    profile: Profile, sectors: Sectors, sheet: Sheet, window: tuple[float, float], width_eV: float
+) -> FloatArray:
+    """Eigenvalues of the closed stack between two energies, shape (N,), by counting nodes.
+
+    The brackets of all eigenvalues are narrowed together, each tried at `SECTION` energies at
+    once, until they are ``width_eV`` wide or as narrow as a double allows.
+    """
+    first, last = states_below(profile, sectors, sheet, np.array(window))
+    rank = np.arange(first, last)
+    lower, upper = (np.full(rank.size, end) for end in window)
+    share = np.linspace(0.0, 1.0, SECTION + 1)[1:-1]
+    while rank.size and np.any(upper - lower > np.maximum(width_eV, 2.0 * np.spacing(upper))):
+        trial = lower[:, None] + (upper - lower)[:, None] * share
+        count = states_below(profile, sectors, sheet, trial.ravel()).reshape(trial.shape)
+        passed = (count <= rank[:, None]).sum(axis=1)
+        walls = np.concatenate([lower[:, None], trial, upper[:, None]], axis=1)
+        row = np.arange(rank.size)
+        narrowed = walls[row, passed + 1] - walls[row, passed] < upper - lower
+        lower, upper = walls[row, passed], walls[row, passed + 1]
+        if not narrowed.any():
+            break
+    middle: FloatArray = 0.5 * (lower + upper)
+    return middle
+
+
+def _describe(profile: Profile, strip: _Strip) -> list[Level]:
+    if strip.poles.size == 0:
+        return []
+    depth = float(np.abs(strip.poles.imag).max())
+    low, high = float(strip.poles.real.min()), float(strip.poles.real.max())
+    sectors = cut(profile, low, high, depth_eV=depth, stops=STOPS)
+    chunk = max(1, LEVELS_AT_ONCE // (len(STOPS) * 4 * sectors.count))
+    levels: list[Level] = []
+    for first in range(0, strip.poles.size, chunk):
+        poles = strip.poles[first : first + chunk]
+        states = leaving_states(profile, sectors, strip.sheet, poles)
+        levels += [_level(profile, sectors, states, n) for n in range(poles.size)]
+    return levels
+
+
+def _level(profile: Profile, sectors: Sectors, states: Leaving, n: int) -> Level:
+    log_left, log_right = (float(log) for log in states.log_width_eV[:, n])
+    log_width = float(np.logaddexp(log_left, log_right))
+    width = math.exp(log_width)
+    layers = profile.layer_index[sectors.piece_index]
+    share = np.bincount(layers, weights=states.content[:, n])
+    energy = float(states.energy_eV[n].real)
+    bound = states.sheet.closed
+    balance = -math.inf if bound else log_left + log_right - 2.0 * log_width
+    return Level(
+        energy_eV=energy,
+        width_eV=width,
+        log10_width_eV=log_width / math.log(10.0),
+        left_width_eV=math.exp(log_left),
+        right_width_eV=math.exp(log_right),
+        lifetime_s=HBAR_EV_S / width if width > 0.0 else math.inf,
+        peak_transmission=min(1.0, 4.0 * math.exp(balance)),
+        kind="bound" if bound else "quasi-bound",
+        nodes=_nodes(profile, sectors, states.psi[:, n], energy),
+        share_by_layer=tuple(float(value) for value in share),
+    )
+
+
+def _nodes(profile: Profile, sectors: Sectors, psi: ComplexArray, energy_eV: float) -> int:
+    """Sign changes of the wave where it is forbidden or strong, and everywhere in between.
+
+    The outgoing wave in a spacer turns its phase and has no nodes to speak of; it is left out
+    as long as it is weak.
+    """
+    forbidden = np.maximum(profile.edge_left_eV, profile.edge_right_eV) > energy_eV
+    density = np.abs(psi) ** 2
+    strong = np.maximum(density[1:], density[:-1]) >= STRONG * density.max()
+    places = np.flatnonzero(forbidden[sectors.piece_index] | strong)
+    signs = np.sign(psi[places[0] : places[-1] + 2].real)
+    signs = signs[signs != 0.0]
+    return int(np.count_nonzero(signs[1:] != signs[:-1]))

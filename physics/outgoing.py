@@ -1,0 +1,113 @@
+"""The outgoing-wave condition whose zeros are the levels.
+
+A level is a complex energy at which a wave exists that only leaves: outgoing in an open contact,
+decaying in a closed one (A. J. F. Siegert, Phys. Rev. 56, 750 (1939)). With the state of the right
+contact carried to the left face by the matrices of `sectors`, that is the zero of::
+
+    F(E) = f(0) + g_left(E) psi(0)
+
+where ``g`` is the outward f / psi that a contact imposes. F has no pole and, on one
+sheet, no branch cut: it is what the argument principle wants. The sheet is a matter of which
+contacts are open, hence the same everywhere between two neighbouring contact edges.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from physics.constants import HBAR2_OVER_2M0_EV_NM2 as C_EV_NM2
+from physics.field import Profile
+from physics.scattering import NODE_GUARD
+from physics.sectors import Sectors, matrices, matrices_and_slopes
+
+ComplexArray = NDArray[np.complex128]
+FloatArray = NDArray[np.float64]
+
+RESCALE_EVERY = 8
+"""Sectors between rescalings; a wave grows by at most exp(2 * 1.5 * 8) = 3e10 in between."""
+
+
+@dataclass(frozen=True)
+class Sheet:
+    """Which contacts are open, for energies between two neighbouring contact edges."""
+
+    left_open: bool
+    right_open: bool
+
+    @property
+    def closed(self) -> bool:
+        """Whether nothing can leave, so that every level is bound."""
+        return not (self.left_open or self.right_open)
+
+
+def outward_ratio_eV_nm(
+    profile: Profile, side: int, is_open: bool, energy_eV: ComplexArray
+) -> ComplexArray:
+    """Outward f / psi of the wave that leaves (open) or decays (closed) in a contact.
+
+    Parameters
+    ----------
+    side : int
+        0 for the left contact, 1 for the right one.
+    energy_eV : ndarray, shape (E,)
+        Complex energies on the sheet that ``is_open`` names.
+    """
+    above = energy_eV - profile.contact_edge_eV[side]
+    scale = C_EV_NM2 / profile.contact_mass[side]
+    return 1j * np.sqrt(scale * above) if is_open else -np.sqrt(-scale * above)
+
+
+def mismatch(
+    profile: Profile, sectors: Sectors, sheet: Sheet, energy_eV: ComplexArray
+) -> tuple[ComplexArray, ComplexArray]:
+    """Evaluate F and dF/dE, both over one positive factor per energy, each of shape (E,)."""
+    g = outward_ratio_eV_nm(profile, 1, sheet.right_open, energy_eV)
+    psi, flux = np.ones_like(energy_eV), g
+    psi_slope = np.zeros_like(energy_eV)
+    flux_slope = 0.5 * g / (energy_eV - profile.contact_edge_eV[1])
+    for index, (a, b, c, d), (da, db, dc, dd) in matrices_and_slopes(sectors, energy_eV):
+        psi_slope, flux_slope = (
+            dd * psi - db * flux + d * psi_slope - b * flux_slope,
+            da * flux - dc * psi + a * flux_slope - c * psi_slope,
+        )
+        psi, flux = d * psi - b * flux, a * flux - c * psi
+        if index % RESCALE_EVERY == 0:
+            scale = 1.0 / (np.abs(psi) + np.abs(flux))
+            psi, flux = psi * scale, flux * scale
+            psi_slope, flux_slope = psi_slope * scale, flux_slope * scale
+    g = outward_ratio_eV_nm(profile, 0, sheet.left_open, energy_eV)
+    g_slope = 0.5 * g / (energy_eV - profile.contact_edge_eV[0])
+    return flux + g * psi, flux_slope + g * psi_slope + g_slope * psi
+
+
+def states_below(
+    profile: Profile, sectors: Sectors, sheet: Sheet, energy_eV: FloatArray
+) -> NDArray[np.int64]:
+    """Count the eigenvalues of the closed stack below each real energy, shape (E,).
+
+    Sturm's oscillation theorem: the nodes of the state that satisfies the right end's condition.
+    A closed contact lets it decay; an open one is replaced by a wall with f = 0, so that on an
+    open sheet these are starting points for the levels, not the levels.
+    """
+    ends = [
+        _closed_ratio(profile, side, is_open, energy_eV)
+        for side, is_open in enumerate((sheet.left_open, sheet.right_open))
+    ]
+    x = -ends[1]
+    count = np.zeros(energy_eV.shape, dtype=np.int64)
+    for _, (a, b, c, d) in matrices(sectors, energy_eV):
+        w = d - b * x + NODE_GUARD * d
+        x = (a * x - c) / w
+        count += w < 0.0
+    return count + (x > ends[0])
+
+
+def _closed_ratio(profile: Profile, side: int, is_open: bool, energy_eV: FloatArray) -> FloatArray:
+    """Inward f / psi of the decaying wave in a closed contact; 0 for the wall of an open one."""
+    if is_open:
+        return np.zeros_like(energy_eV)
+    below = np.maximum(profile.contact_edge_eV[side] - energy_eV, 0.0)
+    return np.sqrt(C_EV_NM2 / profile.contact_mass[side] * below)

@@ -1,0 +1,206 @@
+"""Density of scattering states and levels, and the local density of states."""
+
+from __future__ import annotations
+
+import math
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from physics.errors import EnergyError, StructureError
+from physics.field import Profile
+from physics.leaving import STOPS, carry_from, leaving_states
+from physics.levels import Level
+from physics.outgoing import Sheet
+from physics.scattering import NODE_GUARD, contact_flux_eV_nm
+from physics.sectors import Sectors, cut, energy_powers, matrices
+
+ComplexArray = NDArray[np.complex128]
+FloatArray = NDArray[np.float64]
+
+FROM_LEFT = "incident from the left"
+FROM_RIGHT = "incident from the right"
+ONE_ELECTRON = "one electron in the stack"
+
+
+@dataclass(frozen=True, eq=False)
+class Density:
+    """Probability density of one state over position; arrays have shape (X,)."""
+
+    x_nm: FloatArray
+    edge_eV: FloatArray
+    density_per_nm: FloatArray
+    energy_eV: float
+    norm: str
+    """`FROM_LEFT` / `FROM_RIGHT`: unit density of the incident wave; `ONE_ELECTRON`: unit integral
+    (a closed contact's tail included)."""
+
+
+def scattering_state(profile: Profile, energy_eV: float, points: int = 400) -> Density:
+    """Density of the wave that comes in from the left, or from the right if the left is closed.
+
+    Parameters
+    ----------
+    energy_eV : float
+        The energy.
+    points : int
+        Least number of positions; they are spread evenly over each sector.
+
+    Raises
+    ------
+    EnergyError
+        Both contacts are closed at this energy: there is no scattering state.
+    """
+    energy = np.array([energy_eV])
+    q_left, q_right = (float(contact_flux_eV_nm(profile, side, energy)[0]) for side in (0, 1))
+    if q_left <= 0.0 and q_right <= 0.0:
+        lowest = min(profile.contact_edge_eV)
+        raise EnergyError(
+            f"both contacts are closed at {energy_eV:g} eV; waves come in above {lowest:g} eV"
+        )
+    sectors = _cut_for_points(profile, energy_eV, energy_eV, 0.0, points)
+    from_left = q_left > 0.0
+    leaving, q_in = (q_right, q_left) if from_left else (q_left, q_right)
+    out = complex(0.0, leaving) if leaving > 0.0 else complex(leaving, 0.0)
+    psi, flux, log_scale = carry_from(
+        sectors, energy + 0j, np.array([out if from_left else -out]), from_right=from_left
+    )
+    face = 0 if from_left else -1
+    inward = 1.0 if from_left else -1.0
+    incident = 0.5 * abs(psi[face, 0] + inward * flux[face, 0] / (1j * q_in))
+    scale = log_scale[:, 0] - log_scale[face, 0] - math.log(incident)
+    return _density(
+        profile,
+        sectors,
+        energy_eV,
+        (psi[:, 0], flux[:, 0], scale),
+        FROM_LEFT if from_left else FROM_RIGHT,
+    )
+
+
+def level_state(profile: Profile, level: Level, points: int = 400) -> Density:
+    """Density of a level, normalised to one electron.
+
+    Parameters
+    ----------
+    level : Level
+        As `find_levels` returned it for this profile.
+    points : int
+        Least number of positions; they are spread evenly over each sector.
+    """
+    half_width = 0.5 * level.width_eV
+    energy = np.array([complex(level.energy_eV, -half_width)])
+    sectors = _cut_for_points(profile, level.energy_eV, level.energy_eV, half_width, points)
+    sheet = Sheet(*(level.energy_eV > edge for edge in profile.contact_edge_eV))
+    states = leaving_states(profile, sectors, sheet, energy)
+    zero = np.zeros(states.psi.shape[0])
+    return _density(
+        profile, sectors, energy[0], (states.psi[:, 0], states.flux[:, 0], zero), ONE_ELECTRON
+    )
+
+
+def local_density_of_states(
+    profile: Profile, x_nm: FloatArray, energy_eV: FloatArray
+) -> FloatArray:
+    """Local density of states of the open contacts' waves, per spin, in 1 / (eV nm).
+
+    ``-Im G(x, x; E) / pi`` with ``G = 1 / (eta_right - eta_left)`` from the ratios f / psi of the
+    two leaving solutions (E. N. Economou, Green's Functions in Quantum Physics, ch. 1, from
+    memory).
+    Bound levels, which no wave reaches, are not part of it.
+
+    Parameters
+    ----------
+    x_nm : ndarray, shape (X,)
+        Positions in the stack.
+    energy_eV : ndarray, shape (E,)
+        Energies.
+
+    Returns
+    -------
+    ndarray, shape (X, E)
+
+    Raises
+    ------
+    StructureError
+        A position outside the stack.
+    """
+    x = np.asarray(x_nm, dtype=np.float64)
+    energy = np.atleast_1d(np.asarray(energy_eV, dtype=np.float64))
+    if x.size == 0 or not (x.min() >= 0.0 and x.max() <= profile.length_nm):
+        allowed = f"positions lie between 0 and {profile.length_nm:g} nm"
+        raise StructureError("profile", "x_nm", x.tolist()[:3], allowed)
+    sectors = cut(profile, float(energy.min()), float(energy.max()), marks_nm=x)
+    face = _nearest_face(sectors, x)
+    right = _ratios(profile, sectors, energy, face, from_right=True)
+    left = _ratios(profile, sectors, energy, face, from_right=False)
+    real, imag = right[0] - left[0], right[1] - left[1]
+    size = real**2 + imag**2
+    with np.errstate(invalid="ignore", divide="ignore"):
+        return np.where(imag > 0.0, imag / size, 0.0) / np.pi
+
+
+def _ratios(
+    profile: Profile,
+    sectors: Sectors,
+    energy: FloatArray,
+    face: NDArray[np.int64],
+    *,
+    from_right: bool,
+) -> tuple[FloatArray, FloatArray]:
+    """Real and imaginary part of f / psi of a leaving solution at given faces, each (X, E)."""
+    sign = 1.0 if from_right else -1.0
+    q = contact_flux_eV_nm(profile, 1 if from_right else 0, energy)
+    x, y = sign * np.where(q < 0.0, q, 0.0), sign * np.where(q > 0.0, q, 0.0)
+    real, imag = np.empty((face.size, energy.size)), np.empty((face.size, energy.size))
+    start = sectors.count if from_right else 0
+    real[face == start], imag[face == start] = x, y
+    for index, (a, b, c, d) in matrices(sectors, energy, forward=not from_right):
+        if from_right:
+            a, b, c, d = d, -b, -c, a  # noqa: PLW2901  the inverse matrix
+        w = a + b * x + NODE_GUARD * a
+        size = w * w + (b * y) ** 2
+        x, y = ((c + d * x) * w + b * d * y * y) / size, y / size
+        here = face == (index if from_right else index + 1)
+        real[here], imag[here] = x, y
+    return real, imag
+
+
+def _nearest_face(sectors: Sectors, x: FloatArray) -> NDArray[np.int64]:
+    after = np.clip(np.searchsorted(sectors.position_nm, x), 1, sectors.count)
+    before_is_nearer = x - sectors.position_nm[after - 1] < sectors.position_nm[after] - x
+    return np.where(before_is_nearer, after - 1, after)
+
+
+def _cut_for_points(
+    profile: Profile, low: float, high: float, depth: float, points: int
+) -> Sectors:
+    """Cut with as many even stops a sector as the wanted number of positions needs."""
+    plain = cut(profile, low, high, depth_eV=depth)
+    number = max(1, math.ceil(points / plain.count))
+    even = tuple((n + 1) / number for n in range(number))
+    return cut(profile, low, high, depth_eV=depth, stops=(*STOPS[:-1], *even))
+
+
+def _density(
+    profile: Profile,
+    sectors: Sectors,
+    energy: complex,
+    wave: tuple[ComplexArray, ComplexArray, FloatArray],
+    norm: str,
+) -> Density:
+    """Evaluate a wave, known with its flux at the faces, at the even stops of every sector."""
+    psi, flux, log_scale = wave
+    powers = energy_powers(sectors, np.array([energy]))[0]
+    even = sectors.coefficients[len(STOPS) - 1 :] @ powers  # (P, 4, S, 1)
+    inside = even[:, 0, :, 0] * psi[:-1] + even[:, 1, :, 0] * flux[:-1]  # (P, S)
+    density = np.abs(inside) ** 2 * np.exp(2.0 * log_scale[:-1])
+    first = abs(psi[0]) ** 2 * math.exp(2.0 * float(log_scale[0]))
+    stops = sectors.stops[len(STOPS) - 1 :]
+    x = sectors.position_nm[:-1] + stops[:, None] * sectors.length_nm
+    x = np.append(0.0, x.T.ravel())
+    x[-1] = profile.length_nm
+    return Density(
+        x, profile.edge_eV(x), np.append(first, density.T.ravel()), float(np.real(energy)), norm
+    )
