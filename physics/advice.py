@@ -1,0 +1,198 @@
+"""What a careful colleague would add to the answer.
+
+Each note names what was seen and what it means for the numbers. None of them changes a number.
+"""
+
+from __future__ import annotations
+
+import math
+from dataclasses import dataclass
+
+import numpy as np
+
+from physics.constants import BOLTZMANN_EV_PER_K
+from physics.field import ASSUMED_PERMITTIVITY, Profile
+from physics.levels import LevelSet
+from physics.scattering import Scattering
+from physics.structure import Layer, Structure
+
+THIN_MONOLAYERS = 2.0
+"""Below this an effective mass and a sharp edge mean little (common practice)."""
+STRAINED = 1e-3
+"""Mismatch to the substrate from which a layer is called strained."""
+FLUX_TOLERANCE = 1e-10
+"""Largest |T + R - 1| that is put down to rounding."""
+MOST_WRITTEN_OUT = 4
+"""Level numbers in one note before a range says as much."""
+PHONON_EV = 0.036
+"""Energy of the longitudinal optical phonon of GaAs (handbook value, from memory)."""
+SCATTERING_AT_0K_EV = 2e-4
+"""Broadening left at low temperature by interfaces and impurities (common practice)."""
+PHONON_COUPLING_EV = 7e-3
+"""Broadening per phonon present: order of magnitude after S. Rudin, T. L. Reinecke and B. Segall,
+Phys. Rev. B 42, 11218 (1990), from memory."""
+
+
+@dataclass(frozen=True)
+class Advice:
+    """One note with the answer."""
+
+    topic: str
+    """One of: side valley, thin layer, strain, coherence, flux, permittivity, proof."""
+    text: str
+    layer: int | None = None
+    """Number of the layer it speaks of, counted from 1; None where it is about the whole."""
+
+
+def advise(
+    structure: Structure,
+    profile: Profile,
+    temperature_K: float,
+    levels: LevelSet,
+    spectrum: Scattering,
+) -> tuple[Advice, ...]:
+    """Collect the notes on one answer.
+
+    Parameters
+    ----------
+    structure : Structure
+        The stack, with side valleys and lattice constants where they are known.
+    profile : Profile
+        The same with its field.
+    temperature_K : float
+        Lattice and carrier temperature.
+    levels, spectrum
+        The answer.
+    """
+    notes = [
+        *_proof(levels),
+        *_flux(spectrum),
+        *_side_valleys(structure, profile, levels, float(spectrum.energy_eV.max())),
+        *_thin(structure),
+        *_strain(structure),
+        *_coherence(levels, temperature_K),
+        *_permittivity(structure, profile),
+    ]
+    return tuple(notes)
+
+
+def scattering_width_eV(temperature_K: float) -> float:
+    """Broadening that scattering adds to a level at a temperature; an order of magnitude."""
+    phonons = 1.0 / math.expm1(PHONON_EV / (BOLTZMANN_EV_PER_K * temperature_K))
+    return SCATTERING_AT_0K_EV + PHONON_COUPLING_EV * phonons
+
+
+def _proof(levels: LevelSet) -> list[Advice]:
+    if levels.complete:
+        return []
+    return [Advice("proof", "the count of the levels could not be proved; some may be missing")]
+
+
+def _flux(spectrum: Scattering) -> list[Advice]:
+    worst = float(np.max(np.abs(spectrum.transmission + spectrum.reflection - 1.0)))
+    if worst <= FLUX_TOLERANCE:
+        return []
+    return [
+        Advice("flux", f"T + R differs from 1 by up to {worst:.1e}; trust no digit beyond that")
+    ]
+
+
+def _side_valleys(
+    structure: Structure, profile: Profile, levels: LevelSet, top_eV: float
+) -> list[Advice]:
+    """One note a material and valley, on its lowest layer in energy."""
+    lowest: dict[tuple[str, str], tuple[float, int]] = {}
+    for number, layer in enumerate(structure.layers, start=1):
+        lowered = _lowered_eV(layer, profile, number - 1)
+        for valley, edge in (("X", layer.x_edge_eV), ("L", layer.l_edge_eV)):
+            if edge is None or edge - lowered >= top_eV:
+                continue
+            key = (valley, layer.name)
+            lowest[key] = min(lowest.get(key, (math.inf, 0)), (edge - lowered, number))
+    return [
+        Advice("side valley", _side_valley_text(valley, name, edge, number, levels), number)
+        for (valley, name), (edge, number) in lowest.items()
+    ]
+
+
+def _lowered_eV(layer: Layer, profile: Profile, index: int) -> float:
+    """How far the field lowers a layer, at the face where it does so most."""
+    pieces = profile.layer_index == index
+    left = layer.edge_eV - float(profile.edge_left_eV[pieces][0])
+    right = layer.right_edge_eV - float(profile.edge_right_eV[pieces][-1])
+    return max(left, right)
+
+
+def _side_valley_text(valley: str, name: str, edge_eV: float, number: int, levels: LevelSet) -> str:
+    above = [n for n, level in enumerate(levels.levels, start=1) if level.energy_eV > edge_eV]
+    who = f"level {above[0]} and up lie above it" if above else "no level lies above it"
+    where = f"layer {number}" + (f" ({name})" if name else "")
+    return f"{where}: {valley} edge at {edge_eV:.3f} eV; {who}; only the Gamma band is computed"
+
+
+def _thin(structure: Structure) -> list[Advice]:
+    notes = []
+    for number, layer in enumerate(structure.layers, start=1):
+        if layer.monolayer_nm is None:
+            continue
+        monolayers = layer.thickness_nm / layer.monolayer_nm
+        if monolayers < THIN_MONOLAYERS * (1.0 - 1e-9):
+            text = (
+                f"layer {number} is {monolayers:.2f} monolayers thick; below two, a band edge and "
+                "an effective mass mean little"
+            )
+            notes.append(Advice("thin layer", text, number))
+    return notes
+
+
+def _strain(structure: Structure) -> list[Advice]:
+    substrate = structure.left.lattice_nm
+    if substrate is None:
+        return []
+    notes: dict[str, Advice] = {}
+    for number, layer in enumerate(structure.layers, start=1):
+        if layer.lattice_nm is None:
+            continue
+        mismatch = layer.lattice_nm / substrate - 1.0
+        if abs(mismatch) >= STRAINED:
+            sense = "compressed" if mismatch > 0.0 else "stretched"
+            text = (
+                f"layer {number} ({layer.name}) is {sense} by {100 * abs(mismatch):.2f} % on the "
+                "left contact's lattice; its edge is the unstrained one"
+            )
+            notes.setdefault(layer.name, Advice("strain", text, number))
+    return list(notes.values())
+
+
+def _coherence(levels: LevelSet, temperature_K: float) -> list[Advice]:
+    limit = scattering_width_eV(temperature_K)
+    narrow = [
+        number
+        for number, level in enumerate(levels.levels, start=1)
+        if level.kind == "quasi-bound" and level.width_eV < limit
+    ]
+    if not narrow:
+        return []
+    text = (
+        f"narrower than scattering allows at {temperature_K:g} K (about {1e3 * limit:.2g} meV): "
+        f"level {_numbers(narrow)}; a measured line is wider and its peak lower"
+    )
+    return [Advice("coherence", text)]
+
+
+def _numbers(numbers: list[int]) -> str:
+    """Write a few numbers out, many as a range."""
+    if len(numbers) <= MOST_WRITTEN_OUT:
+        return ", ".join(str(number) for number in numbers)
+    return f"{numbers[0]} to {numbers[-1]} ({len(numbers)} of them)"
+
+
+def _permittivity(structure: Structure, profile: Profile) -> list[Advice]:
+    dropped = profile.contact_edge_eV[1] != structure.right.edge_eV
+    stated = {layer.permittivity for layer in structure.layers}
+    if not dropped or None not in stated or stated <= {None, ASSUMED_PERMITTIVITY}:
+        return []
+    text = (
+        f"layers that state no permittivity share the field as if it were {ASSUMED_PERMITTIVITY:g}"
+    )
+    return [Advice("permittivity", text)]
