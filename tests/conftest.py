@@ -1,0 +1,6 @@
+"""Paths that several test folders share."""
+
+import sys
+from pathlib import Path
+
+sys.path.insert(0, str(Path(__file__).parent))

@@ -1,0 +1,1 @@
+"""Independent answers, slow and of many digits, that the tests hold winze against."""
