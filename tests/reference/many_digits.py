@@ -13,6 +13,7 @@ from dataclasses import dataclass
 import mpmath as mp
 
 DIGITS = 50
+mp.mp.dps = DIGITS
 
 
 @dataclass(frozen=True)
@@ -107,7 +108,7 @@ def _airy(d: mp.mpf, v: mp.mpf, to_v: mp.mpf, m: mp.mpf, energy: mp.mpc) -> mp.m
     return fundamental(stop) * inverse
 
 
-def _taylor(
+def _taylor(  # noqa: PLR0917
     d: mp.mpf, v: mp.mpf, to_v: mp.mpf, m: mp.mpf, to_m: mp.mpf, energy: mp.mpc
 ) -> mp.matrix:
     c, steps = constant(), 8 + int(4 * d)
