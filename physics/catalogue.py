@@ -7,11 +7,9 @@ compounds, at the points Gamma, X and L; what an alloy makes of them is the busi
 from __future__ import annotations
 
 import math
-import tomllib
 from collections.abc import Mapping
 from dataclasses import dataclass, fields
 from functools import cache
-from importlib import resources
 from typing import Any, Literal
 
 from physics.errors import MaterialError
@@ -91,8 +89,10 @@ class Catalogue:
 @cache
 def catalogue() -> Catalogue:
     """Read the package's own catalogue; the same object at every call."""
-    text = resources.files("physics").joinpath(FILE_NAME).read_text(encoding="utf-8")
-    return read_catalogue(text)
+    # Imported at use: it costs more than the rest of this module, and many calls need no material.
+    from pathlib import Path
+
+    return read_catalogue(Path(__file__).with_name(FILE_NAME).read_text(encoding="utf-8"))
 
 
 def read_catalogue(text: str) -> Catalogue:
@@ -109,6 +109,8 @@ def read_catalogue(text: str) -> Catalogue:
         The text is no TOML, a compound or a value is missing, a key or a source is unknown, or a
         number is out of the question.
     """
+    import tomllib  # at use, as above
+
     try:
         tables = tomllib.loads(text)
     except tomllib.TOMLDecodeError as error:

@@ -85,11 +85,7 @@ def _entries(formula: str, text: str) -> list[_Entry]:
         item = _ITEM.match(text, position)
         if item is None:
             found = f"can't read {_shown(text[position:])}"
-            raise _refusal(
-                formula,
-                found,
-                f"write elements and their fractions, {_EXAMPLE}",
-            )
+            raise _refusal(formula, found, f"write elements and their fractions, {_EXAMPLE}")
         entries.append(_entry(formula, item))
         position = item.end()
     return entries

@@ -89,11 +89,7 @@ def material(formula: str, temperature_K: float = REFERENCE_TEMPERATURE_K) -> Ma
     MaterialError
         The formula can't be read, the temperature is outside its range, or no gap is left at it.
     """
-    if not 0.0 <= temperature_K <= MAX_TEMPERATURE_K:
-        raise MaterialError(
-            f"temperature_K is {temperature_K!r}; a temperature lies from 0 to "
-            f"{MAX_TEMPERATURE_K:g} K"
-        )
+    _require_temperature(temperature_K)
     mixture = _mixture(parse_formula(formula))
     gamma = _mixed(mixture, "gamma_gap_eV", lambda row: gap_eV(row.gamma_gap_eV, temperature_K))
     x = _mixed(mixture, "x_gap_eV", lambda row: gap_eV(row.x_gap_eV, temperature_K))
@@ -101,11 +97,7 @@ def material(formula: str, temperature_K: float = REFERENCE_TEMPERATURE_K) -> Ma
     valence = _mixed(mixture, "valence_offset_eV", lambda row: row.valence_offset_eV.value)
     lattice = _mixed(mixture, "lattice_nm", lambda row: row.lattice_nm.value)
     slope = _mixed(mixture, "lattice_slope_nm_per_K", lambda row: row.lattice_slope_nm_per_K.value)
-    if gamma <= 0.0:
-        raise MaterialError(
-            f"material {mixture.name!r}: its gap at {temperature_K:g} K is {gamma:.3g} eV; "
-            "a conduction band needs a gap above 0, so take a lower temperature"
-        )
+    _require_gap(mixture.name, temperature_K, gamma)
     return Material(
         name=mixture.name,
         edge_eV=valence + gamma,
@@ -117,6 +109,21 @@ def material(formula: str, temperature_K: float = REFERENCE_TEMPERATURE_K) -> Ma
         x_edge_eV=valence + x,
         l_edge_eV=valence + l_gap,
     )
+
+
+def _require_temperature(temperature_K: float) -> None:
+    # Written so that nan, which compares false with everything, is refused.
+    if not 0.0 <= temperature_K <= MAX_TEMPERATURE_K:
+        allowed = f"a temperature lies from 0 to {MAX_TEMPERATURE_K:g} K"
+        raise MaterialError(f"temperature_K is {temperature_K!r}; {allowed}")
+
+
+def _require_gap(name: str, temperature_K: float, gap: float) -> None:
+    if gap <= 0.0:
+        raise MaterialError(
+            f"material {name!r}: its gap at {temperature_K:g} K is {gap:.3g} eV; "
+            "a conduction band needs a gap above 0, so take a lower temperature"
+        )
 
 
 @dataclass(frozen=True)

@@ -46,6 +46,8 @@ SOMMERFELD_TERMS = 12
 MIN_TEMPERATURE_K, MAX_TEMPERATURE_K = 0.01, 2000.0
 MIN_MASS, MAX_MASS = 1e-4, 100.0
 MAX_DONORS_CM3 = 1e22
+BOLTZMANN_BELOW = 1e-20
+"""Filling n / Nc below which F is exp(eta) sqrt(pi) / 2 to rounding, and may underflow."""
 MAX_NEWTON_STEPS = 60
 NEWTON_TOLERANCE = 1e-8
 """Relative step after which the next one, quadratically smaller, is below rounding."""
@@ -210,8 +212,11 @@ def fermi_from_donors(donors_cm3: float, mass: float, temperature_K: float) -> f
     if not 0.0 < donors_cm3 <= MAX_DONORS_CM3:
         allowed = f"donors lie above 0 and at most at {MAX_DONORS_CM3:g} cm^-3"
         raise StructureError("contact", "donors_cm3", donors_cm3, allowed)
-    target = donors_cm3 / density * (0.5 * math.sqrt(math.pi))
-    return _reduced_fermi(target) * BOLTZMANN_EV_PER_K * temperature_K
+    if donors_cm3 < BOLTZMANN_BELOW * density:
+        eta = math.log(donors_cm3) - math.log(density)
+    else:
+        eta = _reduced_fermi(donors_cm3 / density * (0.5 * math.sqrt(math.pi)))
+    return eta * BOLTZMANN_EV_PER_K * temperature_K
 
 
 def _reduced_fermi(target: float) -> float:
