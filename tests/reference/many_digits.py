@@ -8,6 +8,7 @@ psi' = (m/c) f, f' = (V - E) psi is summed as its Taylor series on short steps.
 
 from __future__ import annotations
 
+from collections.abc import Callable
 from dataclasses import dataclass
 
 import mpmath as mp
@@ -111,7 +112,7 @@ def _airy(d: mp.mpf, v: mp.mpf, to_v: mp.mpf, m: mp.mpf, energy: mp.mpc) -> mp.m
 def _taylor(  # noqa: PLR0917
     d: mp.mpf, v: mp.mpf, to_v: mp.mpf, m: mp.mpf, to_m: mp.mpf, energy: mp.mpc
 ) -> mp.matrix:
-    c, steps = constant(), 8 + int(4 * d)
+    c, steps = constant(), 1 + int(d)
     total = mp.eye(2)
     for n in range(steps):
         h = d / steps
@@ -154,8 +155,16 @@ def transmission(stack: Stack, energy: float) -> tuple[mp.mpf, mp.mpf]:
 
 def pole(stack: Stack, guess: complex) -> mp.mpc:
     """Complex energy at which a wave exists that only leaves, nearest to a guess."""
+    condition = only_leaves(stack, guess.real)
+    start = mp.mpc(guess)
+    near = (start, start * (1 + mp.mpf(10) ** -9))
+    return mp.findroot(condition, near, tol=mp.mpf(10) ** (10 - mp.mp.dps))
+
+
+def only_leaves(stack: Stack, energy: float) -> Callable[[mp.mpc], mp.mpc]:
+    """Give the function that vanishes at the poles on the sheet of a real energy."""
     c = constant()
-    open_left, open_right = (mp.re(guess) > mp.mpf(v) for v, _ in (stack.left, stack.right))
+    open_left, open_right = (energy > mp.mpf(v) for v, _ in (stack.left, stack.right))
 
     def outward(contact: tuple[float, float], is_open: bool, energy: mp.mpc) -> mp.mpc:
         above = (energy - mp.mpf(contact[0])) * c / mp.mpf(contact[1])
@@ -168,5 +177,4 @@ def pole(stack: Stack, guess: complex) -> mp.mpc:
         psi, flux = big[0, 0] - left * big[0, 1], big[1, 0] - left * big[1, 1]
         return flux - right * psi
 
-    start = mp.mpc(guess)
-    return mp.findroot(condition, (start, start * (1 + mp.mpf(10) ** -9)), tol=mp.mpf(10) ** -60)
+    return condition
