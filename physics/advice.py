@@ -38,7 +38,8 @@ class Advice:
     """One note with the answer."""
 
     topic: str
-    """One of: side valley, thin layer, strain, coherence, flux, permittivity, proof."""
+    """One of: side valley, thin layer, strain, coherence, flux, permittivity, proof,
+    accuracy."""
     text: str
     layer: int | None = None
     """Number of the layer it speaks of, counted from 1; None where it is about the whole."""
@@ -66,6 +67,7 @@ def advise(
     """
     notes = [
         *_proof(levels),
+        *_pairs(levels),
         *_flux(spectrum),
         *_side_valleys(structure, profile, levels, float(spectrum.energy_eV.max())),
         *_thin(structure),
@@ -86,6 +88,22 @@ def _proof(levels: LevelSet) -> list[Advice]:
     if levels.complete:
         return []
     return [Advice("proof", "the count of the levels could not be proved; some may be missing")]
+
+
+def _pairs(levels: LevelSet) -> list[Advice]:
+    if levels.accurate:
+        return []
+    numbers = [
+        number
+        for number, level in enumerate(levels.levels, start=1)
+        if level.width_error > levels.STATED_WIDTH_ERROR
+    ]
+    worst = max(level.width_error for level in levels.levels)
+    text = (
+        f"levels {_numbers(numbers)} all but coincide: how they share their wells, and with it "
+        f"their widths, is known to about {min(worst, 1.0):.0e} only"
+    )
+    return [Advice("accuracy", text)]
 
 
 def _flux(spectrum: Scattering) -> list[Advice]:
