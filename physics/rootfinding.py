@@ -57,6 +57,11 @@ class Rectangle:
         inside = (points.real >= self.left) & (points.real <= self.right)
         return inside & (points.imag >= self.bottom) & (points.imag <= self.top)
 
+    def spread(self) -> Rectangle:
+        """Widen to twice the size; iterates that leave it are given up."""
+        across, up = 0.5 * (self.right - self.left), 0.5 * (self.top - self.bottom)
+        return Rectangle(self.left - across, self.right + across, self.bottom - up, self.top + up)
+
     def halves(self) -> tuple[Rectangle, Rectangle]:
         """Cut across the longer side, off the middle so that symmetric zeros are not hit."""
         if self.right - self.left >= self.top - self.bottom:
@@ -107,7 +112,7 @@ def zeros_in(function: Function, box: Rectangle, starts: ComplexArray) -> Zeros:
     starts : ndarray, shape (N,)
         Guesses; they decide how soon the search ends, not what it finds.
     """
-    known = distinct(polish(function, starts, np.empty(0, dtype=np.complex128)))
+    known = distinct(polish(function, starts, np.empty(0, dtype=np.complex128), box.spread()))
     known, missing = _search(function, box, known, 0)
     inside = int(box.holds(known).sum())
     if missing is None:
@@ -127,7 +132,7 @@ def _search(
         return known, missing
     if missing <= MOMENTS_AT_ONCE:
         guesses = from_moments(contour, missing)
-        more = distinct(np.append(known, polish(function, guesses, known)))
+        more = distinct(np.append(known, polish(function, guesses, known, box.spread())))
         if box.holds(more).sum() - box.holds(known).sum() == missing:
             return _search(function, box, more, MAX_DEPTH + 1)
         known = more
@@ -140,7 +145,9 @@ def _search(
     return known, total
 
 
-def polish(function: Function, starts: ComplexArray, fixed: ComplexArray) -> ComplexArray:
+def polish(
+    function: Function, starts: ComplexArray, fixed: ComplexArray, within: Rectangle
+) -> ComplexArray:
     """Drive guesses to zeros together, away from each other and from the fixed ones.
 
     Returns
@@ -165,15 +172,14 @@ def polish(function: Function, starts: ComplexArray, fixed: ComplexArray) -> Com
         stalls[moving] += (size <= NOISE * scale) & (size >= 0.5 * last_step[moving])
         resting[moving] = (size <= ROUNDING * scale) | (stalls[moving] >= STALLS)
         last_step[moving] = size
+        z[~resting & ~within.holds(z)] = np.nan
     return z[resting & np.isfinite(z)]
 
 
 def _pull(z: ComplexArray, moving: NDArray[np.int64], fixed: ComplexArray) -> ComplexArray:
     """Sum of 1 / (distance) to the other guesses and to the fixed zeros."""
     distance = z[moving, None] - z[None, :]
-    distance[np.arange(moving.size), moving] = np.inf
-    distance[:, ~np.isfinite(z)] = np.inf
-    distance[distance == 0.0] = np.inf
+    distance[np.isnan(distance) | (distance == 0.0)] = np.inf  # itself, and the given-up ones
     pull: ComplexArray = (1.0 / distance).sum(axis=1)
     if fixed.size:
         away = z[moving, None] - fixed[None, :]

@@ -105,7 +105,7 @@ def test_winding_counts(zeros: list[complex]) -> None:
 
 def test_polish_leaves_fixed_zeros_alone() -> None:
     function = with_zeros(0.2 + 0j, 0.6 + 0j)
-    found = polish(function, np.array([0.45 + 0.01j]), np.array([0.2 + 0j]))
+    found = polish(function, np.array([0.45 + 0.01j]), np.array([0.2 + 0j]), BOX)
     assert found == pytest.approx([0.6 + 0j], abs=1e-13)
 
 
