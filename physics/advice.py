@@ -87,7 +87,11 @@ def scattering_width_eV(temperature_K: float) -> float:
 def _proof(levels: LevelSet) -> list[Advice]:
     if levels.complete:
         return []
-    return [Advice("proof", "the count of the levels could not be proved; some may be missing")]
+    text = (
+        f"the count of levels up to {levels.max_width_eV:g} eV wide could not be proved, broad "
+        "ones may be missing; a smaller largest width can often be proved"
+    )
+    return [Advice("proof", text)]
 
 
 def _pairs(levels: LevelSet) -> list[Advice]:

@@ -47,6 +47,9 @@ LEVELS_AT_ONCE = 4_000_000
 WINDOW_LIMIT_EV = 200.0
 THRESHOLD_EV = 1e-11
 """The contour stays this far from the ends of a strip, where a contact's edge may branch."""
+HEIGHT = 1.0377
+"""Above the axis the box is as high as deep, but for a factor that keeps the contour's points
+(dyadic fractions of its sides) off the axis: a window may end on a level."""
 REAL_AXIS_EV = 1e-9
 """Rounding that lifts a narrow level's pole above the real axis."""
 
@@ -177,7 +180,7 @@ def _find_poles(profile: Profile, low: float, high: float, max_width_eV: float) 
         bound = closed_stack_energies(profile, sectors, sheet, (low, high), FINE)
         return _Strip(sheet, bound.astype(np.complex128), 0, proved=True)
     depth = 0.5 * max_width_eV * (1.0 + 1e-9)
-    height = max(depth, 0.1 * (high - low))
+    height = HEIGHT * max(depth, 0.1 * (high - low))
     margin = MARGIN * (high - low)
     wide = (low - margin, high + margin)
     sectors = cut(profile, *wide, depth_eV=max(depth, height))

@@ -22,7 +22,8 @@ from numpy.typing import NDArray
 ComplexArray = NDArray[np.complex128]
 FloatArray = NDArray[np.float64]
 Function = Callable[[ComplexArray], tuple[ComplexArray, ComplexArray]]
-"""Energies (E,) to values and derivatives, each (E,), over one positive factor per energy."""
+"""Points (E,) to values and derivatives, each (E,), over one positive factor per point that makes
+the terms a value is the sum of about 1."""
 
 ABERTH_ROUNDS = 60
 STEP_LIMIT = 1.0
@@ -32,6 +33,8 @@ AGREEMENT = 0.25
 FIRST_STEPS = 16
 """Steps a side before refinement."""
 REFINEMENTS = 40
+LOST = 1e-13
+"""A value below this on the contour is rounding: the function's phase is not known there."""
 MAX_CONTOUR_POINTS = 200_000
 MOMENTS_AT_ONCE = 3
 """Zeros taken from the moments of one rectangle; more, and it is halved first."""
@@ -212,10 +215,12 @@ def walk(function: Function, box: Rectangle, known: ComplexArray) -> Contour:
     )
     phase, slope = _deflated(function, point, known)
     for _ in range(REFINEMENTS):
+        if not np.isfinite(slope).all() or point.size > MAX_CONTOUR_POINTS:
+            break
         step = np.append(point[1:], point[0]) - point
         log_step, coarse = _steps(step, phase, slope)
-        if not coarse.any() or point.size > MAX_CONTOUR_POINTS:
-            return Contour(point, slope, log_step, resolved=not coarse.any())
+        if not coarse.any():
+            return Contour(point, slope, log_step, resolved=True)
         at = np.flatnonzero(coarse)
         middle = point[at] + 0.5 * step[at]
         new_phase, new_slope = _deflated(function, middle, known)
@@ -228,12 +233,13 @@ def walk(function: Function, box: Rectangle, known: ComplexArray) -> Contour:
 def _deflated(
     function: Function, point: ComplexArray, known: ComplexArray
 ) -> tuple[ComplexArray, ComplexArray]:
-    """Logarithm (real part arbitrary) and logarithmic derivative, the known zeros divided out."""
+    """Phase factor and logarithmic derivative, the known zeros divided out; inf where lost."""
     value, slope = function(point)
     with np.errstate(divide="ignore", invalid="ignore"):
         away = point[:, None] - known[None, :]
         turn = np.exp(1j * np.angle(value)) * np.exp(-1j * np.angle(away).sum(axis=1))
-        return turn, slope / value - (1.0 / away).sum(axis=1)
+        log_slope = slope / value - (1.0 / away).sum(axis=1)
+        return turn, np.where(np.abs(value) < LOST, np.inf, log_slope)
 
 
 def _steps(
