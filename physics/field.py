@@ -14,7 +14,8 @@ import numpy as np
 from numpy.typing import NDArray
 
 from physics.errors import StructureError
-from physics.structure import MAX_BIAS_V, Structure
+from physics.ranges import BIAS_V
+from physics.structure import Structure
 
 ASSUMED_PERMITTIVITY = 12.9
 """Relative permittivity of a layer that states none (GaAs, static); `advise` says so where used."""
@@ -94,11 +95,10 @@ def uniform_field(structure: Structure, bias_V: float = 0.0) -> Profile:
     Raises
     ------
     StructureError
-        The bias is not a number or beyond ``MAX_BIAS_V``.
+        The bias is not a number or outside `BIAS_V`.
     """
-    if not abs(bias_V) <= MAX_BIAS_V:
-        allowed = f"a bias lies between -{MAX_BIAS_V:g} and {MAX_BIAS_V:g} V"
-        raise StructureError("conditions", "bias_V", bias_V, allowed)
+    if not BIAS_V.holds(bias_V):
+        raise StructureError("conditions", "bias_V", bias_V, BIAS_V.allowed)
     layers = structure.layers
     thickness = np.array([layer.thickness_nm for layer in layers])
     permittivity = np.array(

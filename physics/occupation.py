@@ -28,6 +28,7 @@ from physics.constants import (
     PLANCK_J_S,
 )
 from physics.errors import ConvergenceError, StructureError
+from physics.ranges import CONTACT_DONORS_CM3, MASS, TEMPERATURE_K, Range
 
 FloatArray = NDArray[np.float64]
 
@@ -43,9 +44,6 @@ SOMMERFELD_FROM = 40.0
 """eta from which twelve terms of the series reach 1e-17."""
 SOMMERFELD_TERMS = 12
 
-MIN_TEMPERATURE_K, MAX_TEMPERATURE_K = 0.01, 2000.0
-MIN_MASS, MAX_MASS = 1e-4, 100.0
-MAX_DONORS_CM3 = 1e22
 BOLTZMANN_BELOW = 1e-20
 """Filling n / Nc below which F is exp(eta) sqrt(pi) / 2 to rounding, and may underflow."""
 MAX_NEWTON_STEPS = 60
@@ -146,8 +144,8 @@ def band_density_cm3(mass: float, temperature_K: float) -> float:
     StructureError
         A mass or temperature outside its range.
     """
-    _require("mass", mass, MIN_MASS, MAX_MASS, "m0")
-    _require("temperature_K", temperature_K, MIN_TEMPERATURE_K, MAX_TEMPERATURE_K, "K")
+    _require("mass", mass, MASS)
+    _require("temperature_K", temperature_K, TEMPERATURE_K)
     thermal = 2.0 * math.pi * mass * ELECTRON_MASS_KG * BOLTZMANN_J_PER_K * temperature_K
     return 2.0 * (math.sqrt(thermal) / PLANCK_J_S) ** 3 * 1e-6
 
@@ -209,9 +207,7 @@ def fermi_from_donors(donors_cm3: float, mass: float, temperature_K: float) -> f
         The iteration did not settle.
     """
     density = band_density_cm3(mass, temperature_K)
-    if not 0.0 < donors_cm3 <= MAX_DONORS_CM3:
-        allowed = f"donors lie above 0 and at most at {MAX_DONORS_CM3:g} cm^-3"
-        raise StructureError("contact", "donors_cm3", donors_cm3, allowed)
+    _require("donors_cm3", donors_cm3, CONTACT_DONORS_CM3)
     if donors_cm3 < BOLTZMANN_BELOW * density:
         eta = math.log(donors_cm3) - math.log(density)
     else:
@@ -234,7 +230,6 @@ def _reduced_fermi(target: float) -> float:
     raise ConvergenceError(f"no Fermi energy found for F(eta) = {target:g}; last eta was {eta:g}")
 
 
-def _require(key: str, value: float, low: float, high: float, unit: str) -> None:
-    # Written so that nan, which compares false with everything, is refused.
-    if not low <= value <= high:
-        raise StructureError("contact", key, value, f"it lies from {low:g} to {high:g} {unit}")
+def _require(key: str, value: float, allowed: Range) -> None:
+    if not allowed.holds(value):
+        raise StructureError("contact", key, value, allowed.allowed)

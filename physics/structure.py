@@ -8,20 +8,20 @@ check themselves at birth and never change.
 from __future__ import annotations
 
 import math
-from collections.abc import Callable
 from dataclasses import dataclass
 
 from physics.errors import StructureError
+from physics.ranges import (
+    DONORS_CM3,
+    EDGE_EV,
+    FERMI_EV,
+    MASS,
+    PERMITTIVITY,
+    THICKNESS_NM,
+    Range,
+)
 
 MAX_LAYERS = 20_000
-MAX_THICKNESS_NM = 1e5
-MAX_EDGE_EV = 100.0
-MIN_MASS, MAX_MASS = 1e-4, 100.0
-MAX_DONORS_CM3 = 1e22
-MAX_PERMITTIVITY = 1e4
-MAX_FERMI_EV = 100.0
-MIN_TEMPERATURE_K, MAX_TEMPERATURE_K = 0.01, 2000.0
-MAX_BIAS_V = 50.0
 
 
 @dataclass(frozen=True)
@@ -42,11 +42,11 @@ class Contact:
 
     def check(self, where: str) -> None:
         """Raise `StructureError` where a value lies outside its range."""
-        _require(where, "edge_eV", self.edge_eV, _edge_ok, _EDGE)
-        _require(where, "mass", self.mass, _mass_ok, _MASS)
-        _require(where, "fermi_eV", self.fermi_eV, _fermi_ok, _FERMI)
-        _require(where, "donors_cm3", self.donors_cm3, _donors_ok, _DONORS)
-        _require(where, "permittivity", self.permittivity, _permittivity_ok, _PERMITTIVITY)
+        _require(where, "edge_eV", self.edge_eV, EDGE_EV)
+        _require(where, "mass", self.mass, MASS)
+        _require(where, "fermi_eV", self.fermi_eV, FERMI_EV)
+        _require(where, "donors_cm3", self.donors_cm3, DONORS_CM3)
+        _require(where, "permittivity", self.permittivity, PERMITTIVITY)
 
 
 @dataclass(frozen=True)
@@ -82,13 +82,13 @@ class Layer:
 
     def check(self, where: str) -> None:
         """Raise `StructureError` where a value lies outside its range."""
-        _require(where, "thickness_nm", self.thickness_nm, _thickness_ok, _THICKNESS)
-        _require(where, "edge_eV", self.edge_eV, _edge_ok, _EDGE)
-        _require(where, "mass", self.mass, _mass_ok, _MASS)
-        _require(where, "to_edge_eV", self.to_edge_eV, _edge_ok, _EDGE)
-        _require(where, "to_mass", self.to_mass, _mass_ok, _MASS)
-        _require(where, "permittivity", self.permittivity, _permittivity_ok, _PERMITTIVITY)
-        _require(where, "donors_cm3", self.donors_cm3, _donors_ok, _DONORS)
+        _require(where, "thickness_nm", self.thickness_nm, THICKNESS_NM)
+        _require(where, "edge_eV", self.edge_eV, EDGE_EV)
+        _require(where, "mass", self.mass, MASS)
+        _require(where, "to_edge_eV", self.to_edge_eV, EDGE_EV)
+        _require(where, "to_mass", self.to_mass, MASS)
+        _require(where, "permittivity", self.permittivity, PERMITTIVITY)
+        _require(where, "donors_cm3", self.donors_cm3, DONORS_CM3)
 
 
 @dataclass(frozen=True)
@@ -107,8 +107,8 @@ class Structure:
         for number, layer in enumerate(self.layers, start=1):
             layer.check(f"layer {number}")
         self.right.check("right")
-        if self.thickness_nm > MAX_THICKNESS_NM:
-            allowed = f"a stack is at most {MAX_THICKNESS_NM:g} nm thick"
+        if not THICKNESS_NM.holds(self.thickness_nm):
+            allowed = f"a stack is at most {THICKNESS_NM.high:g} nm thick"
             raise StructureError("stack", "thickness_nm", self.thickness_nm, allowed)
         if (self.left.fermi_eV is None) != (self.right.fermi_eV is None):
             where = "left" if self.left.fermi_eV is None else "right"
@@ -121,45 +121,6 @@ class Structure:
         return math.fsum(layer.thickness_nm for layer in self.layers)
 
 
-def _require(
-    where: str,
-    key: str,
-    value: float | None,
-    accepted: Callable[[float], bool],
-    allowed: str,
-) -> None:
-    # Written so that nan, which compares false with everything, is refused.
-    if value is not None and not accepted(value):
-        raise StructureError(where, key, value, allowed)
-
-
-def _thickness_ok(value: float) -> bool:
-    return 0.0 < value <= MAX_THICKNESS_NM
-
-
-def _edge_ok(value: float) -> bool:
-    return abs(value) <= MAX_EDGE_EV
-
-
-def _mass_ok(value: float) -> bool:
-    return MIN_MASS <= value <= MAX_MASS
-
-
-def _fermi_ok(value: float) -> bool:
-    return abs(value) <= MAX_FERMI_EV
-
-
-def _donors_ok(value: float) -> bool:
-    return 0.0 <= value <= MAX_DONORS_CM3
-
-
-def _permittivity_ok(value: float) -> bool:
-    return 1.0 <= value <= MAX_PERMITTIVITY
-
-
-_THICKNESS = f"a thickness is above 0 and at most {MAX_THICKNESS_NM:g} nm"
-_EDGE = f"a band edge lies between -{MAX_EDGE_EV:g} and {MAX_EDGE_EV:g} eV"
-_MASS = f"a mass lies between {MIN_MASS:g} and {MAX_MASS:g} m0"
-_FERMI = f"a Fermi energy lies between -{MAX_FERMI_EV:g} and {MAX_FERMI_EV:g} eV"
-_DONORS = f"donors lie between 0 and {MAX_DONORS_CM3:g} cm^-3"
-_PERMITTIVITY = f"a relative permittivity lies between 1 and {MAX_PERMITTIVITY:g}"
+def _require(where: str, key: str, value: float | None, allowed: Range) -> None:
+    if value is not None and not allowed.holds(value):
+        raise StructureError(where, key, value, allowed.allowed)

@@ -10,26 +10,21 @@ import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
-from physics import structure
 from physics.constants import BOLTZMANN_EV_PER_K, HBAR2_OVER_2M0_EV_NM2
 from physics.errors import StructureError
 from physics.occupation import (
-    MAX_DONORS_CM3,
-    MAX_MASS,
-    MAX_TEMPERATURE_K,
-    MIN_MASS,
-    MIN_TEMPERATURE_K,
     SOMMERFELD_FROM,
     band_density_cm3,
     donors_from_fermi,
     fermi_dirac_half,
     fermi_from_donors,
 )
+from physics.ranges import DONORS_CM3, MASS, TEMPERATURE_K
 
 DIGITS = 40
 
-masses = st.floats(math.log(MIN_MASS), math.log(MAX_MASS)).map(math.exp)
-temperatures = st.floats(math.log(MIN_TEMPERATURE_K), math.log(MAX_TEMPERATURE_K)).map(math.exp)
+masses = st.floats(math.log(MASS.low), math.log(MASS.high)).map(math.exp)
+temperatures = st.floats(math.log(TEMPERATURE_K.low), math.log(TEMPERATURE_K.high)).map(math.exp)
 donors = st.floats(10.0, 21.99).map(lambda exponent: 10.0**exponent)
 
 
@@ -82,13 +77,6 @@ def test_integral_takes_arrays_of_any_shape() -> None:
 def test_the_two_formulas_meet_and_the_integral_rises(eta: float) -> None:
     here, above = fermi_dirac_half(eta)[0], fermi_dirac_half(eta + 1e-6 * max(1.0, abs(eta)))[0]
     assert 0.0 < here < above
-
-
-def test_limits_are_those_of_the_structure() -> None:
-    assert (MIN_MASS, MAX_MASS) == (structure.MIN_MASS, structure.MAX_MASS)
-    limits = (structure.MIN_TEMPERATURE_K, structure.MAX_TEMPERATURE_K)
-    assert (MIN_TEMPERATURE_K, MAX_TEMPERATURE_K) == limits
-    assert MAX_DONORS_CM3 == structure.MAX_DONORS_CM3
 
 
 def test_band_density_of_free_electrons() -> None:
@@ -151,7 +139,7 @@ def test_few_electrons_follow_boltzmann() -> None:
         assert abs(fermi_from_donors(n, 0.067, 300.0) - expected) < 0.01 * second + 1e-13
 
 
-@given(st.floats(min_value=0.0, max_value=MAX_DONORS_CM3, exclude_min=True), masses, temperatures)
+@given(st.floats(min_value=0.0, max_value=DONORS_CM3.high, exclude_min=True), masses, temperatures)
 def test_any_doping_has_a_fermi_energy(n: float, mass: float, temperature: float) -> None:
     """However few: the Boltzmann limit is a lower bound, since F(eta) < exp(eta) sqrt(pi) / 2."""
     thermal = BOLTZMANN_EV_PER_K * temperature

@@ -1,0 +1,36 @@
+"""What each quantity may be; the one list that described values and session texts are held to."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+
+@dataclass(frozen=True)
+class Range:
+    """What a quantity may be."""
+
+    low: float
+    high: float
+    allowed: str
+    """The range in words."""
+    open_below: bool = False
+    """Whether the lower end itself is left out."""
+
+    def holds(self, value: float) -> bool:
+        """Whether a value lies in the range; nan does not."""
+        return (self.low < value if self.open_below else self.low <= value) and value <= self.high
+
+
+THICKNESS_NM = Range(0.0, 1e5, "a thickness is above 0 and at most 1e5 nm", open_below=True)
+EDGE_EV = Range(-100.0, 100.0, "a band edge lies between -100 and 100 eV")
+MASS = Range(1e-4, 100.0, "a mass lies between 1e-4 and 100 m0")
+FERMI_EV = Range(-100.0, 100.0, "a Fermi energy lies between -100 and 100 eV")
+DONORS_CM3 = Range(0.0, 1e22, "donors lie between 0 and 1e22 cm^-3")
+CONTACT_DONORS_CM3 = Range(
+    0.0, 1e22, "a contact's donors are above 0 and at most 1e22 cm^-3", open_below=True
+)
+PERMITTIVITY = Range(1.0, 1e4, "a relative permittivity lies between 1 and 1e4")
+LATTICE_NM = Range(0.1, 10.0, "a lattice constant lies between 0.1 and 10 nm")
+MONOLAYER_NM = Range(0.05, 5.0, "a monolayer is between 0.05 and 5 nm thick")
+TEMPERATURE_K = Range(0.01, 2000.0, "a temperature lies between 0.01 and 2000 K")
+BIAS_V = Range(-50.0, 50.0, "a bias lies between -50 and 50 V")
