@@ -10,6 +10,8 @@ from __future__ import annotations
 from dataclasses import dataclass, field
 from typing import Literal
 
+from physics.levels import DEFAULT_MAX_WIDTH_EV
+
 FieldModel = Literal["uniform"]
 
 
@@ -63,6 +65,17 @@ class MaterialEntry:
 
 
 @dataclass(frozen=True)
+class View:
+    """What is looked at: the energy window and the broadest level of interest."""
+
+    from_eV: float | None = None
+    """None: the lowest band edge."""
+    to_eV: float | None = None
+    """None: the highest band edge."""
+    max_width_eV: float = DEFAULT_MAX_WIDTH_EV
+
+
+@dataclass(frozen=True)
 class Session:
     """A whole session text."""
 
@@ -73,3 +86,4 @@ class Session:
     layers: tuple[LayerEntry, ...] = ()
     right: ContactEntry = field(default_factory=ContactEntry)
     materials: tuple[MaterialEntry, ...] = ()
+    view: View = field(default_factory=View)

@@ -1,0 +1,71 @@
+"""Where in a session text tables and keys stand.
+
+A light scan of TOML's structure, line by line: table headers, keys at the start of a line, and
+strings over several lines, which hide what is in them. Keys inside inline tables are found by the
+line of the table.
+"""
+
+from __future__ import annotations
+
+import re
+from collections.abc import Iterator
+
+KeyPath = tuple[str | int, ...]
+"""Table names, for ``[[layer]]`` the index from 0 as well, then the key."""
+
+_NAME = r"""(?:[A-Za-z0-9_-]+|"[^"\n]*"|'[^'\n]*')"""
+_DOTTED = rf"{_NAME}(?:\s*\.\s*{_NAME})*"
+_HEADER = re.compile(rf"^\s*(?:\[\s*({_DOTTED})\s*\]|\[\[\s*({_DOTTED})\s*\]\])\s*(?:#.*)?$")
+_KEY = re.compile(rf"^\s*({_DOTTED})\s*=")
+_PART = re.compile(_NAME)
+_QUOTES = ('"""', "'''")
+
+
+def line_of(text: str, path: KeyPath) -> int | None:
+    """Line of a key or table, counted from 1; of its table where the key itself is not found."""
+    places: dict[KeyPath, int] = {}
+    table: KeyPath = ()
+    for number, header, key in _scan(text):
+        if header is not None:
+            table = header
+            places.setdefault(table, number)
+        else:
+            places.setdefault((*table, *key), number)
+    for length in range(len(path), 0, -1):
+        if path[:length] in places:
+            return places[path[:length]]
+    return None
+
+
+def headers(text: str) -> list[tuple[int, KeyPath]]:
+    """Line and name of every table header, in order."""
+    return [(number, header) for number, header, _ in _scan(text) if header is not None]
+
+
+def _scan(text: str) -> Iterator[tuple[int, KeyPath | None, KeyPath]]:
+    """Yield line, table name (at a header) and key (at a key)."""
+    counts: dict[KeyPath, int] = {}
+    quote = ""
+    for number, line in enumerate(text.split("\n"), start=1):
+        if quote:
+            quote = "" if line.count(quote) % 2 else quote
+            continue
+        header, key = _HEADER.match(line), _KEY.match(line)
+        if header:
+            yield number, _numbered(header, counts), ()
+        elif key:
+            yield number, None, _parts(key[1])
+        quote = next((q for q in _QUOTES if line.count(q) % 2), "")
+
+
+def _numbered(header: re.Match[str], counts: dict[KeyPath, int]) -> KeyPath:
+    """Name of a table; one of an array of tables has its index at the end."""
+    if header[1]:
+        return _parts(header[1])
+    name = _parts(header[2])
+    counts[name] = counts.get(name, -1) + 1
+    return (*name, counts[name])
+
+
+def _parts(dotted: str) -> KeyPath:
+    return tuple(part.strip("\"'") for part in _PART.findall(dotted))

@@ -1,0 +1,225 @@
+"""From a session as written to the numbers that ``physics`` works with.
+
+Every edge in a session is on one scale, whose zero is the left contact's edge. A catalogue material
+enters as its edge above the left contact's; where the left contact is no catalogue material that
+height is unknown, and the material is refused rather than guessed.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from functools import lru_cache
+
+from physics.errors import MaterialError, PhysicsError, StructureError
+from physics.materials import Material, material
+from physics.occupation import fermi_from_donors
+from physics.structure import Contact, Layer, Structure
+from tui.session.lines import KeyPath
+from tui.session.model import ContactEntry, LayerEntry, MaterialEntry, Session
+from tui.session.refusal import SessionError, printable, shown
+
+AGREEMENT = 1e-6
+"""Relative difference up to which two ways of saying one thing agree."""
+GROWTH_TEMPERATURE_K = 300.0
+"""Monolayers are counted at room temperature, whatever the conditions are."""
+
+
+@dataclass(frozen=True)
+class Medium:
+    """What a contact or one face of a layer is made of, on the session's scale."""
+
+    name: str
+    edge_eV: float
+    mass: float
+    permittivity: float | None = None
+    lattice_nm: float | None = None
+    monolayer_nm: float | None = None
+    x_edge_eV: float | None = None
+    l_edge_eV: float | None = None
+
+
+@dataclass(frozen=True)
+class Scale:
+    """How materials get their edge in one session."""
+
+    own: dict[str, MaterialEntry]
+    temperature_K: float
+    zero_eV: float | None
+    """Catalogue edge of the left contact; None where it is no catalogue material."""
+
+
+def resolve(session: Session) -> Structure:
+    """Resolve materials and thicknesses at the session's temperature.
+
+    Raises
+    ------
+    SessionError
+        A material that is not known, or statements that do not fit together; `SessionError.path`
+        says where.
+    """
+    scale = scale_of(session)
+    left = _contact(session.left, "left", scale, session.conditions.temperature_K)
+    layers = tuple(_layer(entry, n, scale) for n, entry in enumerate(session.layers))
+    right = _contact(session.right, "right", scale, session.conditions.temperature_K)
+    try:
+        return Structure(left, layers, right)
+    except StructureError as error:
+        raise _from_structure(error) from error
+
+
+def scale_of(session: Session) -> Scale:
+    """Find the scale that a session's catalogue materials are on."""
+    own = {entry.name: entry for entry in session.materials}
+    temperature = session.conditions.temperature_K
+    name = session.left.material
+    if name is None or name in own:
+        return Scale(own, temperature, None)
+    zero = _catalogue(name, temperature, ("left", "material")).edge_eV
+    return Scale(own, temperature, zero)
+
+
+def medium_of(name: str, scale: Scale, path: KeyPath) -> Medium:
+    """Look a material up: the user's own first, then the catalogue's."""
+    if name in scale.own:
+        entry = scale.own[name]
+        return Medium(
+            printable(name), entry.edge_eV, entry.mass, entry.permittivity, None, entry.monolayer_nm
+        )
+    known = _catalogue(name, scale.temperature_K, path)
+    if scale.zero_eV is None:
+        allowed = (
+            "its edge above the left contact is not known; name the left contact's material, "
+            "or give edge_eV and mass here"
+        )
+        raise SessionError(_said(path), f"is {shown(name)}", allowed, path=path)
+    zero = scale.zero_eV
+    return Medium(
+        name=known.name,
+        edge_eV=known.edge_eV - zero,
+        mass=known.mass,
+        permittivity=known.permittivity,
+        lattice_nm=known.lattice_nm,
+        monolayer_nm=known.monolayer_nm,
+        x_edge_eV=None if known.x_edge_eV is None else known.x_edge_eV - zero,
+        l_edge_eV=None if known.l_edge_eV is None else known.l_edge_eV - zero,
+    )
+
+
+def thickness_nm(entry: LayerEntry, medium: Medium, path: KeyPath) -> float:
+    """Thickness of a layer in nm, however it is stated."""
+    if entry.thickness_ml is None:
+        if entry.thickness_nm is None:
+            raise SessionError(
+                _said(path), "has no thickness", "give thickness_nm or thickness_ml", path=path
+            )
+        return entry.thickness_nm
+    path = (*path, "thickness_ml")
+    if medium.monolayer_nm is None:
+        allowed = "give thickness_nm, or a material whose monolayer is known"
+        raise SessionError(_said(path), "has no monolayer to count in", allowed, path=path)
+    counted = entry.thickness_ml * medium.monolayer_nm
+    _require_agreement(entry.thickness_nm, counted, (*path[:-1], "thickness_nm"), "thickness_ml")
+    return counted
+
+
+def _layer(entry: LayerEntry, index: int, scale: Scale) -> Layer:
+    path: KeyPath = ("layer", index)
+    medium = _medium(entry.material, entry.edge_eV, entry.mass, scale, path)
+    to_edge, to_mass = entry.to_edge_eV, entry.to_mass
+    if entry.to_material is not None:
+        end = medium_of(entry.to_material, scale, (*path, "to_material"))
+        _require_agreement(to_edge, end.edge_eV, (*path, "to_edge_eV"), "to_material")
+        _require_agreement(to_mass, end.mass, (*path, "to_mass"), "to_material")
+        to_edge, to_mass = end.edge_eV, end.mass
+    stated = medium.permittivity if entry.permittivity is None else entry.permittivity
+    return Layer(
+        thickness_nm=thickness_nm(entry, medium, path),
+        edge_eV=medium.edge_eV,
+        mass=medium.mass,
+        to_edge_eV=to_edge,
+        to_mass=to_mass,
+        permittivity=stated,
+        donors_cm3=entry.donors_cm3,
+        label=entry.label,
+        name=medium.name,
+        lattice_nm=medium.lattice_nm,
+        monolayer_nm=medium.monolayer_nm,
+        x_edge_eV=medium.x_edge_eV,
+        l_edge_eV=medium.l_edge_eV,
+    )
+
+
+def _contact(entry: ContactEntry, side: str, scale: Scale, temperature_K: float) -> Contact:
+    path: KeyPath = (side,)
+    medium = _medium(entry.material, entry.edge_eV, entry.mass, scale, path)
+    fermi = entry.fermi_eV
+    if entry.donors_cm3 is not None:
+        try:
+            filled = fermi_from_donors(entry.donors_cm3, medium.mass, temperature_K)
+        except PhysicsError as error:
+            raise _at((*path, "donors_cm3"), entry.donors_cm3, str(error)) from error
+        _require_agreement(fermi, filled, (*path, "fermi_eV"), "donors_cm3")
+        fermi = filled
+    return Contact(
+        edge_eV=medium.edge_eV,
+        mass=medium.mass,
+        fermi_eV=fermi,
+        name=medium.name,
+        donors_cm3=entry.donors_cm3,
+        permittivity=medium.permittivity if entry.permittivity is None else entry.permittivity,
+        lattice_nm=medium.lattice_nm,
+    )
+
+
+def _medium(
+    name: str | None, edge_eV: float | None, mass: float | None, scale: Scale, path: KeyPath
+) -> Medium:
+    if name is None:
+        if edge_eV is None or mass is None:
+            allowed = "give a material, or edge_eV with mass"
+            raise SessionError(_said(path), "has no material", allowed, path=path)
+        return Medium("", edge_eV, mass)
+    medium = medium_of(name, scale, (*path, "material"))
+    _require_agreement(edge_eV, medium.edge_eV, (*path, "edge_eV"), "material")
+    _require_agreement(mass, medium.mass, (*path, "mass"), "material")
+    return medium
+
+
+def _require_agreement(stated: float | None, other: float, path: KeyPath, by: str) -> None:
+    if stated is None or abs(stated - other) <= AGREEMENT * max(abs(stated), abs(other)):
+        return
+    found = f"is {stated:g}, but {by} makes it {other:.6g}"
+    raise SessionError(_said(path), found, f"keep one of the two, {path[-1]} or {by}", path=path)
+
+
+@lru_cache(maxsize=1024)
+def _known(name: str, temperature_K: float) -> Material:
+    # A stack names few materials many times, and looking one up is pure.
+    return material(name, temperature_K)
+
+
+def _catalogue(name: str, temperature_K: float, path: KeyPath) -> Material:
+    try:
+        return _known(name, temperature_K)
+    except MaterialError as error:
+        raise _at(path, name, f"{error}; or define [material.NAME]") from error
+
+
+def _at(path: KeyPath, value: object, allowed: str) -> SessionError:
+    return SessionError(_said(path), f"is {shown(value)}", printable(allowed), path=path)
+
+
+def _said(path: KeyPath) -> str:
+    """Say a path as a reader counts: layers from 1."""
+    return " ".join(str(part + 1) if isinstance(part, int) else str(part) for part in path)
+
+
+def _from_structure(error: StructureError) -> SessionError:
+    """Say a structure's refusal in the session's terms."""
+    words = error.where.split()
+    path: KeyPath = (words[0], int(words[1]) - 1) if len(words) > 1 else (words[0],)
+    if error.where == "stack":
+        path = ("layer",)
+    found = "is missing" if error.found is None else f"is {shown(error.found)}"
+    key = error.key if error.where == "stack" else f"{error.where} {error.key}"
+    return SessionError(key, found, error.allowed, path=(*path, error.key))

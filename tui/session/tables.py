@@ -1,0 +1,92 @@
+"""The keys of a session text: for each table, what may stand there, in the order it is written.
+
+One list serves the reader, which refuses everything else, and the writer.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+from physics import ranges
+from physics.ranges import Range
+
+ENERGY_EV = Range(-200.0, 200.0, "an energy lies between -200 and 200 eV")
+WIDTH_EV = Range(0.0, 200.0, "a largest width is above 0 and at most 200 eV", open_below=True)
+MONOLAYERS = Range(0.0, 1e6, "a number of monolayers is above 0", open_below=True)
+
+NAME_RULE = "a text on one line without control characters, in quotation marks"
+TEXT_RULE = "a text without control characters, in quotation marks"
+
+FIELD_MODELS = ("uniform",)
+FIELD_RULE = 'this version computes field = "uniform" only'
+
+
+@dataclass(frozen=True)
+class Text:
+    """A text value; on one line unless ``lines``."""
+
+    lines: bool = False
+
+
+Entry = Range | Text
+Table = dict[str, Entry]
+
+LINE_TEXT = Text()
+
+CONDITIONS: Table = {
+    "temperature_K": ranges.TEMPERATURE_K,
+    "bias_V": ranges.BIAS_V,
+    "field": LINE_TEXT,
+}
+CONTACT: Table = {
+    "material": LINE_TEXT,
+    "edge_eV": ranges.EDGE_EV,
+    "mass": ranges.MASS,
+    "donors_cm3": ranges.CONTACT_DONORS_CM3,
+    "fermi_eV": ranges.FERMI_EV,
+    "permittivity": ranges.PERMITTIVITY,
+}
+LAYER: Table = {
+    "label": LINE_TEXT,
+    "material": LINE_TEXT,
+    "edge_eV": ranges.EDGE_EV,
+    "mass": ranges.MASS,
+    "to_material": LINE_TEXT,
+    "to_edge_eV": ranges.EDGE_EV,
+    "to_mass": ranges.MASS,
+    "thickness_nm": ranges.THICKNESS_NM,
+    "thickness_ml": MONOLAYERS,
+    "donors_cm3": ranges.DONORS_CM3,
+    "permittivity": ranges.PERMITTIVITY,
+}
+MATERIAL: Table = {
+    "edge_eV": ranges.EDGE_EV,
+    "mass": ranges.MASS,
+    "permittivity": ranges.PERMITTIVITY,
+    "monolayer_nm": ranges.MONOLAYER_NM,
+}
+VIEW: Table = {
+    "from_eV": ENERGY_EV,
+    "to_eV": ENERGY_EV,
+    "max_width_eV": WIDTH_EV,
+}
+TOP_TEXTS: Table = {"title": LINE_TEXT, "notes": Text(lines=True)}
+TOP_TABLES = ("conditions", "left", "layer", "right", "material", "view")
+TOP_KEYS = ("format", *TOP_TEXTS, *TOP_TABLES)
+
+UNITLESS = {
+    "thickness": "thickness_nm or thickness_ml",
+    "temperature": "temperature_K",
+    "bias": "bias_V",
+    "edge": "edge_eV",
+    "to_edge": "to_edge_eV",
+    "donors": "donors_cm3",
+    "doping": "donors_cm3",
+    "fermi": "fermi_eV",
+    "monolayer": "monolayer_nm",
+    "width": "thickness_nm or thickness_ml",
+    "from": "from_eV",
+    "to": "to_eV",
+    "max_width": "max_width_eV",
+}
+"""Keys that people write without the unit, and what they mean."""

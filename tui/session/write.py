@@ -1,0 +1,188 @@
+"""From `Session` back to text.
+
+Where the user's own text is known, its comments, the order of its keys and the spelling of every
+value that did not change survive (`blocks`).
+"""
+
+from __future__ import annotations
+
+import difflib
+from dataclasses import asdict
+from typing import Any
+
+from tui.session import tables
+from tui.session.lines import KeyPath
+from tui.session.model import LayerEntry, Session
+from tui.session.read import FORMAT, read_session
+from tui.session.refusal import SessionError
+
+Values = dict[str, Any]
+UNSAID: Values = {"donors_cm3": 0.0, "label": "", "title": "", "notes": ""}
+"""Values that a fresh text leaves out."""
+
+
+def write_session(session: Session, original_text: str | None = None) -> str:
+    """Write a session as text.
+
+    Parameters
+    ----------
+    session : Session
+        What the text is to say.
+    original_text : str, optional
+        The text it came from; kept but for what changed.
+
+    Returns
+    -------
+    str
+        A text that `read_session` reads back to the same session.
+
+    Raises
+    ------
+    SessionError
+        The session holds what no session text may say.
+    """
+    if original_text is not None:
+        text = _rewritten(session, original_text)
+        if _says(text, session):
+            return text
+        # Laid out in a way that blocks cannot follow (inline layers, dotted keys): say it afresh.
+        fresh = "".join(f"{line}\n" for line in _comments(original_text)) + _fresh(session)
+        if _says(fresh, session):
+            return fresh
+    text = _fresh(session)
+    if read_session(text, "the text to be saved") != session:
+        raise SessionError("", "the session cannot be said in a session text", "undo the last edit")
+    return text
+
+
+def _says(text: str, session: Session) -> bool:
+    try:
+        return read_session(text, "") == session
+    except SessionError:
+        return False
+
+
+def _rewritten(session: Session, original: str) -> str:
+    """Change the original's blocks where they say something else."""
+    from tui.session import blocks
+
+    before = read_session(original, "the original text")
+    pieces = blocks.split(original)
+    old, new = _tables(before), _tables(session)
+    layer_pieces = [piece for piece in pieces if piece.name[:1] == ("layer",)]
+    if len(layer_pieces) != len(before.layers):
+        return original
+    layers = [
+        blocks.changed(layer_pieces[source], _layer(before.layers[source]), _layer(layer))
+        if source is not None
+        else blocks.Block(("layer",), _table_text(("layer",), _layer(layer)), fresh=True)
+        for layer, source in zip(
+            session.layers, _sources(before.layers, session.layers), strict=True
+        )
+    ]
+    result: list[blocks.Block] = []
+    for piece in pieces:
+        if piece.name[:1] == ("layer",):
+            result += layers
+            layers = []
+        elif piece.name not in old or piece.name in new:
+            result.append(blocks.changed(piece, old.get(piece.name, {}), new.get(piece.name, {})))
+    written = {piece.name for piece in pieces}
+    result += [
+        blocks.Block(name, _table_text(name, values), fresh=True)
+        for name, values in new.items()
+        if name not in written and values != old.get(name)
+    ]
+    return blocks.join(result)
+
+
+def _sources(before: tuple[LayerEntry, ...], after: tuple[LayerEntry, ...]) -> list[int | None]:
+    """Find the old layer each new one came from: kept, edited or moved; None for a new one."""
+    sources: list[int | None] = [None] * len(after)
+    matcher = difflib.SequenceMatcher(None, before, after, autojunk=False)
+    edited: list[tuple[int, int]] = []
+    for tag, i1, i2, j1, j2 in matcher.get_opcodes():
+        if tag == "equal":
+            sources[j1:j2] = range(i1, i2)
+        elif tag == "replace":
+            edited += zip(range(i1, i2), range(j1, j2), strict=False)
+    free = set(range(len(before))) - {source for source in sources if source is not None}
+    for new, layer in enumerate(after):
+        moved = next((old for old in sorted(free) if before[old] == layer), None)
+        if sources[new] is None and moved is not None:
+            sources[new] = moved
+            free.discard(moved)
+    for old, new in edited:
+        if sources[new] is None and old in free:
+            sources[new] = old
+            free.discard(old)
+    return sources
+
+
+def _tables(session: Session) -> dict[KeyPath, Values]:
+    """Every table but the layers', by name; a key that is not there has None."""
+    result: dict[KeyPath, Values] = {
+        (): {"format": FORMAT, "title": session.title, "notes": session.notes},
+        ("conditions",): asdict(session.conditions),
+        ("left",): asdict(session.left),
+        ("right",): asdict(session.right),
+    }
+    for entry in session.materials:
+        values = asdict(entry)
+        result["material", values.pop("name")] = values
+    result["view",] = asdict(session.view)
+    return result
+
+
+def _layer(entry: LayerEntry) -> Values:
+    return {key: getattr(entry, key) for key in tables.LAYER}
+
+
+def _fresh(session: Session) -> str:
+    """Write the text of a session without an original, in the order of the keys' list."""
+    parts = _tables(session)
+    text = f"format = {FORMAT}\n"
+    for key in ("title", "notes"):
+        if parts[()][key]:
+            text += f"{key} = {_said(parts[()][key])}\n"
+    pieces = [
+        _table_text(("conditions",), parts["conditions",]),
+        _table_text(("left",), parts["left",]),
+    ]
+    pieces += [_table_text(("layer",), _layer(layer)) for layer in session.layers]
+    pieces.append(_table_text(("right",), parts["right",]))
+    pieces += [_table_text(name, parts[name]) for name in parts if name[:1] == ("material",)]
+    if session.view != type(session.view)():
+        pieces.append(_table_text(("view",), parts["view",]))
+    return "\n".join([text, *pieces])
+
+
+def _table_text(name: KeyPath, values: Values) -> str:
+    header = ".".join(_name(str(part)) for part in name)
+    lines = [f"[[{header}]]" if name == ("layer",) else f"[{header}]"]
+    lines += [
+        f"{key} = {_said(value)}"
+        for key, value in values.items()
+        if value is not None and value != UNSAID.get(key)
+    ]
+    return "\n".join(lines) + "\n"
+
+
+def _said(value: float | int | str) -> str:
+    if isinstance(value, str):
+        return _quoted(value)
+    return repr(value)
+
+
+def _quoted(text: str) -> str:
+    escaped = text.replace("\\", "\\\\").replace('"', '\\"').replace("\t", "\\t")
+    return f'"""\n{escaped}"""' if "\n" in text else f'"{escaped}"'
+
+
+def _name(part: str) -> str:
+    bare = part and all(c.isascii() and (c.isalnum() or c in "_-") for c in part)
+    return part if bare else _quoted(part)
+
+
+def _comments(text: str) -> list[str]:
+    return [line.strip() for line in text.split("\n") if line.lstrip().startswith("#")]
