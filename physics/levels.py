@@ -31,7 +31,7 @@ FloatArray = NDArray[np.float64]
 DEFAULT_MAX_WIDTH_EV = 0.1
 SECTION = 32
 """Energies tried in each bracket at once while it is narrowed."""
-STRONG = 0.02
+STRONG = 0.25
 """Share of the largest density from which a wave counts as strong."""
 COARSE, FINE = 1e-7, 1e-16
 """Bracket widths in eV: enough to start a complex iteration; as far as a double goes."""

@@ -1,0 +1,152 @@
+"""The options that commands share, and what they share in doing."""
+
+from __future__ import annotations
+
+import argparse
+import sys
+from argparse import ArgumentParser, Namespace
+from collections.abc import Callable
+from dataclasses import replace
+from pathlib import Path
+
+from physics import ranges
+from physics.ranges import Range
+from tui.diagnostics import DONE, INACCURATE, say
+from tui.report.objects import Object, document
+from tui.session import tables
+from tui.session.model import Session
+from tui.session.read import MAX_BYTES, decode, load, read_session
+from tui.session.refusal import SessionError, printable
+from tui.session.save import save
+from tui.study import Request, Study
+
+STANDARD_INPUT = "standard input"
+NUMBERS = ("--from", "--to", "--energy", "--bias", "--temperature", "--max-width")
+"""Options whose value may begin with a minus sign."""
+
+
+def number_in(allowed: Range) -> Callable[[str], float]:
+    """Give a converter that argparse can use: a number in a range."""
+
+    def convert(text: str) -> float:
+        try:
+            value = float(text)
+        except ValueError:
+            value = float("nan")
+        if not allowed.holds(value):
+            raise argparse.ArgumentTypeError(f"{printable(text)!r} is refused: {allowed.allowed}")
+        return value
+
+    return convert
+
+
+def count_up_to(most: int) -> Callable[[str], int]:
+    """Give a converter for a whole number from 1 on."""
+
+    def convert(text: str) -> int:
+        value = int(text) if text.isascii() and text.isdigit() and len(text) <= 12 else 0
+        if not 1 <= value <= most:
+            allowed = f"a whole number from 1 to {most}"
+            raise argparse.ArgumentTypeError(f"{printable(text)!r} is refused: {allowed}")
+        return value
+
+    return convert
+
+
+def add_common(parser: ArgumentParser) -> None:
+    """Add FILE and the options that every command takes."""
+    parser.add_argument("file", metavar="FILE", help="session text; - for standard input")
+    parser.add_argument(
+        "--bias", metavar="V", type=number_in(ranges.BIAS_V), help="override the bias, in V"
+    )
+    parser.add_argument(
+        "--temperature",
+        metavar="K",
+        type=number_in(ranges.TEMPERATURE_K),
+        help="override the temperature, in K",
+    )
+    parser.add_argument("--json", action="store_true", help="one JSON object instead of a table")
+    parser.add_argument("-o", dest="output", metavar="PATH", help="write to a file")
+
+
+def add_window(parser: ArgumentParser, *, max_width: bool) -> None:
+    """Add the energy window."""
+    energy = number_in(tables.ENERGY_EV)
+    parser.add_argument(
+        "--from", dest="from_eV", metavar="E", type=energy, help="window's lower end, in eV"
+    )
+    parser.add_argument(
+        "--to", dest="to_eV", metavar="E", type=energy, help="window's upper end, in eV"
+    )
+    if max_width:
+        parser.add_argument(
+            "--max-width",
+            dest="max_width_eV",
+            metavar="W",
+            type=number_in(tables.WIDTH_EV),
+            help="broadest level of interest, in eV",
+        )
+
+
+def request_of(options: Namespace) -> Request:
+    """Read the session that a command names, with its overrides.
+
+    Raises
+    ------
+    SessionError
+        The file is refused.
+    """
+    options.text, session = read(options.file)
+    conditions = session.conditions
+    if options.bias is not None:
+        conditions = replace(conditions, bias_V=options.bias)
+    if options.temperature is not None:
+        conditions = replace(conditions, temperature_K=options.temperature)
+    return Request(
+        replace(session, conditions=conditions),
+        getattr(options, "from_eV", None),
+        getattr(options, "to_eV", None),
+        getattr(options, "max_width_eV", None),
+    )
+
+
+def read(file: str) -> tuple[str, Session]:
+    """Read a session, text and meaning, from a file or from standard input."""
+    if file != "-":
+        return load(Path(file))
+    text = decode(sys.stdin.buffer.read(MAX_BYTES + 1), STANDARD_INPUT)
+    return text, read_session(text, STANDARD_INPUT)
+
+
+def source_of(file: str) -> str:
+    """Name a session's source for the reader."""
+    return STANDARD_INPUT if file == "-" else printable(file)
+
+
+def locate(options: Namespace, error: SessionError) -> SessionError:
+    """Give a refusal that came after reading its place in the text."""
+    return error if error.source else error.located(options.text, source_of(options.file))
+
+
+def put(options: Namespace, text: str) -> None:
+    """Write a result to where the call wants it."""
+    if options.output in (None, "-"):
+        sys.stdout.write(text)
+    else:
+        save(Path(options.output), text)
+
+
+def put_either(options: Namespace, session: Session, table: str, content: Object) -> None:
+    """Write a result as a table, or as JSON where that is asked for."""
+    put(options, document(options.command, session, content) if options.json else table)
+
+
+def say_notes(study: Study) -> None:
+    """Say the notes of an answer beside a table, which has no room for them."""
+    for note in study.advice:
+        say(f"note: {note.topic}: {note.text}")
+
+
+def status_of(study: Study) -> int:
+    """Say whether the answer reached what it states."""
+    return DONE if study.reached else INACCURATE

@@ -1,0 +1,1 @@
+"""Results as CSV, JSON and text for a reader."""

@@ -1,0 +1,111 @@
+"""The core of both front ends: a frozen request in, a frozen answer out."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+from physics.advice import Advice, advise
+from physics.errors import EnergyError
+from physics.field import Profile, uniform_field
+from physics.levels import LevelSet, find_levels
+from physics.scattering import Scattering
+from physics.spectrum import adaptive_spectrum
+from physics.structure import Structure
+from tui.session.model import Session
+from tui.session.resolve import resolve
+
+FLAT_EV = 1e-3
+"""A stack whose edges differ by less has no barrier to take a window from."""
+ABOVE_FLAT_EV = 0.5
+"""Then the window reaches this far above the edge."""
+
+
+@dataclass(frozen=True)
+class Request:
+    """What is asked. None: as the session's view says, or else as the band edges suggest."""
+
+    session: Session
+    from_eV: float | None = None
+    to_eV: float | None = None
+    max_width_eV: float | None = None
+
+
+@dataclass(frozen=True, eq=False)
+class Scene:
+    """A session resolved: its numbers, the field over them, and the window."""
+
+    request: Request
+    structure: Structure
+    profile: Profile
+    from_eV: float
+    to_eV: float
+    max_width_eV: float
+
+
+@dataclass(frozen=True, eq=False)
+class Study:
+    """The answer: levels, spectrum and notes for a scene."""
+
+    scene: Scene
+    levels: LevelSet
+    spectrum: Scattering
+    advice: tuple[Advice, ...]
+
+    @property
+    def profile(self) -> Profile:
+        """Edges and masses over position."""
+        return self.scene.profile
+
+    @property
+    def reached(self) -> bool:
+        """Whether the count was proved and every stated accuracy met."""
+        return self.levels.complete and self.levels.accurate
+
+
+def set_scene(request: Request) -> Scene:
+    """Resolve a session and fix the energy window.
+
+    Raises
+    ------
+    SessionError, PhysicsError
+        The session does not describe something that can be computed.
+    """
+    structure = resolve(request.session)
+    profile = uniform_field(structure, request.session.conditions.bias_V)
+    low, high = energy_window(profile)
+    view = request.session.view
+    start = _first(request.from_eV, view.from_eV, low)
+    stop = _first(request.to_eV, view.to_eV, high)
+    if not start < stop:
+        raise EnergyError(
+            f"the energy window from {start:g} to {stop:g} eV is empty; "
+            f"the band edges reach from {low:g} to {high:g} eV"
+        )
+    width = _first(request.max_width_eV, view.max_width_eV)
+    return Scene(request, structure, profile, start, stop, width)
+
+
+def solve(request: Request) -> Study:
+    """Answer a request.
+
+    Raises
+    ------
+    SessionError, PhysicsError
+        As `set_scene`.
+    """
+    scene = set_scene(request)
+    levels = find_levels(scene.profile, scene.from_eV, scene.to_eV, scene.max_width_eV)
+    spectrum = adaptive_spectrum(scene.profile, scene.from_eV, scene.to_eV, levels)
+    temperature = request.session.conditions.temperature_K
+    notes = advise(scene.structure, scene.profile, temperature, levels, spectrum)
+    return Study(scene, levels, spectrum, notes)
+
+
+def energy_window(profile: Profile) -> tuple[float, float]:
+    """Give the window that shows a profile: from its lowest to its highest edge, in eV."""
+    low, high = profile.lowest_eV, profile.highest_eV
+    return low, high if high - low >= FLAT_EV else high + ABOVE_FLAT_EV
+
+
+def _first(*values: float | None) -> float:
+    return next(value for value in values if value is not None)
