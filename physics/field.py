@@ -8,6 +8,7 @@ displacement field is continuous, so each layer's field is proportional to 1/per
 
 from __future__ import annotations
 
+from collections.abc import Callable
 from dataclasses import dataclass
 
 import numpy as np
@@ -19,6 +20,10 @@ from physics.structure import Structure
 
 ASSUMED_PERMITTIVITY = 12.9
 """Relative permittivity of a layer that states none (GaAs, static); `advise` says so where used."""
+
+
+def go_on() -> None:
+    """Let the work go on: what `Profile.watch` is where nobody watches."""
 
 
 @dataclass(frozen=True, eq=False)
@@ -41,6 +46,8 @@ class Profile:
     """Band edge in the left and in the right contact, bias included."""
     contact_mass: tuple[float, float]
     """Mass in the left and in the right contact, in m0."""
+    watch: Callable[[], None] = go_on
+    """Called again and again while something is computed; by raising it ends the work."""
 
     @property
     def length_nm(self) -> float:

@@ -230,6 +230,7 @@ def _describe(profile: Profile, strip: _Strip) -> list[Level]:
     mixing = _mixing(strip.poles)
     levels: list[Level] = []
     for first in range(0, strip.poles.size, chunk):
+        profile.watch()
         poles = strip.poles[first : first + chunk]
         states = leaving_states(profile, sectors, strip.sheet, poles)
         levels += [

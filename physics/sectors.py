@@ -16,7 +16,7 @@ edge, and no difference between flat, tilted and graded layers.
 
 from __future__ import annotations
 
-from collections.abc import Iterator, Sequence
+from collections.abc import Callable, Iterator, Sequence
 from dataclasses import dataclass
 from typing import Any
 
@@ -65,6 +65,8 @@ class Sectors:
     """Shape (P, 4, S, DEGREE + 1): stop, element (a, b, c, d), sector, power of the energy."""
     stops: FloatArray
     """Where in each sector the matrices end, as fractions of its length, shape (P,)."""
+    watch: Callable[[], None]
+    """`Profile.watch`, called once a block of sectors."""
 
     @property
     def count(self) -> int:
@@ -130,7 +132,7 @@ def cut(
             reach=reach,
             stops=stop_array,
         )
-    return Sectors(position, piece, centre, reach, coefficients, stop_array)
+    return Sectors(position, piece, centre, reach, coefficients, stop_array, profile.watch)
 
 
 def matrices(
@@ -179,6 +181,7 @@ def _blocks(sectors: Sectors, energies: int, *, forward: bool) -> Iterator[tuple
     size = max(1, BLOCK_ELEMENTS // (4 * max(1, energies)))
     starts = range(0, sectors.count, size)
     for start in starts if forward else reversed(starts):
+        sectors.watch()
         yield start, np.ascontiguousarray(table[:, start : start + size])
 
 

@@ -2,11 +2,12 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from collections.abc import Callable
+from dataclasses import dataclass, replace
 
 from physics.advice import Advice, advise
 from physics.errors import EnergyError
-from physics.field import Profile, uniform_field
+from physics.field import Profile, go_on, uniform_field
 from physics.levels import LevelSet, find_levels
 from physics.scattering import Scattering
 from physics.spectrum import adaptive_spectrum
@@ -62,8 +63,15 @@ class Study:
         return self.levels.complete and self.levels.accurate
 
 
-def set_scene(request: Request) -> Scene:
+def set_scene(request: Request, watch: Callable[[], None] = go_on) -> Scene:
     """Resolve a session and fix the energy window.
+
+    Parameters
+    ----------
+    request : Request
+        What is asked.
+    watch : callable
+        Called again and again while the scene is computed on; by raising it ends the work.
 
     Raises
     ------
@@ -72,6 +80,7 @@ def set_scene(request: Request) -> Scene:
     """
     structure = resolve(request.session)
     profile = uniform_field(structure, request.session.conditions.bias_V)
+    profile = replace(profile, watch=watch)
     low, high = energy_window(profile)
     view = request.session.view
     start = _first(request.from_eV, view.from_eV, low)
@@ -85,15 +94,15 @@ def set_scene(request: Request) -> Scene:
     return Scene(request, structure, profile, start, stop, width)
 
 
-def solve(request: Request) -> Study:
-    """Answer a request.
+def solve(request: Request, watch: Callable[[], None] = go_on) -> Study:
+    """Answer a request; see `set_scene` for ``watch``.
 
     Raises
     ------
     SessionError, PhysicsError
         As `set_scene`.
     """
-    scene = set_scene(request)
+    scene = set_scene(request, watch)
     levels = find_levels(scene.profile, scene.from_eV, scene.to_eV, scene.max_width_eV)
     spectrum = adaptive_spectrum(scene.profile, scene.from_eV, scene.to_eV, levels)
     temperature = request.session.conditions.temperature_K
