@@ -1,6 +1,6 @@
 """Curves into cells, by plotext; and the one map from values to rows and columns.
 
-Each drawing has a plotext figure of its own: the module's global one is shared by all threads. Sizes
+Each drawing has a plotext figure of its own: the global one is shared by all threads. Sizes
 and limits are explicit, axes and frame are off (they are drawn beside, so that two panels can share
 one), and the scale is always linear: a logarithm is taken before.
 """
@@ -87,7 +87,7 @@ def thinned(x: FloatArray, y: FloatArray, columns: int) -> tuple[FloatArray, Flo
 
     Many thousand points become a few hundred, and look the same.
     """
-    if x.size <= POINTS_A_COLUMN * columns:
+    if x.size <= POINTS_A_COLUMN * columns or not x[-1] > x[0]:
         return x, y
     column = np.minimum((x - x[0]) / (x[-1] - x[0]) * columns, columns - 1).astype(np.int64)
     order = np.lexsort((y, column))

@@ -1,0 +1,109 @@
+"""The design that is being worked on: its past and future, its file, and whether it is saved."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, field
+from pathlib import Path
+
+from tui.session.demo import DEMO_NAME, demo_text
+from tui.session.model import ContactEntry, LayerEntry, Session
+from tui.session.read import decode, load, read_session
+from tui.session.refusal import SessionError
+from tui.session.save import save
+from tui.session.write import write_session
+
+NEW_SESSION = Session(
+    title="",
+    left=ContactEntry(material="GaAs"),
+    layers=(LayerEntry(material="Al0.3Ga0.7As", thickness_nm=3.0),),
+    right=ContactEntry(material="GaAs"),
+)
+"""What a new design begins as: one barrier."""
+
+
+@dataclass
+class Document:
+    """One design with its history; sessions are frozen, so that history costs a pointer a step."""
+
+    session: Session
+    path: Path | None = None
+    name: str = "new design"
+    text: str | None = None
+    """The text as it was last read or written; comments are kept from it."""
+    saved: Session | None = None
+    """The session that the file holds; None where there is no file yet and nothing to lose."""
+    past: list[Session] = field(default_factory=list)
+    future: list[Session] = field(default_factory=list)
+
+    @property
+    def is_changed(self) -> bool:
+        """Whether leaving would lose something."""
+        return self.session != self.saved
+
+    def become(self, session: Session) -> None:
+        """Take an edit; the one before can be had back."""
+        if session == self.session:
+            return
+        self.past.append(self.session)
+        self.future.clear()
+        self.session = session
+
+    def undo(self) -> bool:
+        """Go one edit back; say whether there was one."""
+        return self._shift(self.past, self.future)
+
+    def redo(self) -> bool:
+        """Go one edit forth; say whether there was one."""
+        return self._shift(self.future, self.past)
+
+    def changed_on_disk(self) -> bool:
+        """Whether the file holds something else than was last read from it or written to it."""
+        if self.path is None or self.text is None or not self.path.exists():
+            return False
+        try:
+            return decode(self.path.read_bytes(), str(self.path)) != self.text
+        except (OSError, SessionError):
+            return True
+
+    def save_to(self, path: Path) -> None:
+        """Write the design to a file and go on with that file.
+
+        Raises
+        ------
+        SessionError
+            It could not be written; nothing changed, here or there.
+        """
+        text = write_session(self.session, self.text)
+        save(path, text)
+        self.path, self.name, self.text, self.saved = path, path.name, text, self.session
+
+    def _shift(self, source: list[Session], target: list[Session]) -> bool:
+        if not source:
+            return False
+        target.append(self.session)
+        self.session = source.pop()
+        return True
+
+
+def opened(path: Path) -> Document:
+    """Open a file.
+
+    Raises
+    ------
+    SessionError
+        It cannot be read.
+    """
+    text, session = load(path)
+    return Document(session, path, path.name, text, session)
+
+
+def demo() -> Document:
+    """Open the demo design, which belongs to no file."""
+    text = demo_text()
+    session = read_session(text, DEMO_NAME)
+    return Document(session, None, f"{DEMO_NAME} (demo)", text, session)
+
+
+def fresh() -> Document:
+    """Begin a new design."""
+    return Document(NEW_SESSION, saved=NEW_SESSION)

@@ -1,0 +1,152 @@
+"""Layers added, copied, moved, split, turned and mirrored. From one session to the next."""
+
+from __future__ import annotations
+
+from dataclasses import replace
+
+from physics.structure import Layer, Structure
+from tui.session.model import ContactEntry, LayerEntry, Session
+from tui.workbench.typed import Refusal
+from tui.workbench.values import explicit, short, with_entry
+
+NEW_THICKNESS_NM = 3.0
+
+
+def add_layer(session: Session, after: int) -> Session:
+    """Add a layer behind the one given (-1: in front of all), like it or like the left contact."""
+    source = session.layers[after] if after >= 0 else None
+    medium: LayerEntry | ContactEntry = session.left if source is None else source
+    fresh = LayerEntry(
+        material=medium.material,
+        edge_eV=medium.edge_eV,
+        mass=medium.mass,
+        permittivity=medium.permittivity,
+        thickness_nm=NEW_THICKNESS_NM,
+    )
+    return _with(session, (*session.layers[: after + 1], fresh, *session.layers[after + 1 :]))
+
+
+def duplicate_layer(session: Session, at: int) -> Session:
+    """Put a copy behind a layer."""
+    layers = session.layers
+    return _with(session, (*layers[: at + 1], layers[at], *layers[at + 1 :]))
+
+
+def delete_layer(session: Session, at: int) -> Session:
+    """Take a layer out.
+
+    Raises
+    ------
+    Refusal
+        It is the last one.
+    """
+    if len(session.layers) == 1:
+        raise Refusal("a stack has at least one layer")
+    return _with(session, (*session.layers[:at], *session.layers[at + 1 :]))
+
+
+def move_layer(session: Session, at: int, by: int) -> Session:
+    """Exchange a layer with its neighbour.
+
+    Raises
+    ------
+    Refusal
+        There is none on that side.
+    """
+    to = at + by
+    if not 0 <= to < len(session.layers):
+        raise Refusal("the layer is at the end of the stack")
+    layers = list(session.layers)
+    layers[at], layers[to] = layers[to], layers[at]
+    return _with(session, tuple(layers))
+
+
+def split_layer(session: Session, at: int, structure: Structure | None) -> Session:
+    """Cut a layer into two halves; of a grade each half keeps its part.
+
+    Raises
+    ------
+    Refusal
+        The layer is graded between materials and not resolved yet.
+    """
+    layer = session.layers[at]
+    half = replace(
+        layer,
+        thickness_nm=None if layer.thickness_nm is None else 0.5 * layer.thickness_nm,
+        thickness_ml=None if layer.thickness_ml is None else 0.5 * layer.thickness_ml,
+    )
+    first = second = half
+    if _is_graded(layer):
+        if structure is None:
+            raise Refusal("the layer's grade is not known yet; mend the design first")
+        first, second = _halves(half, structure.layers[at])
+    return _with(session, (*session.layers[:at], first, second, *session.layers[at + 1 :]))
+
+
+def turn_layer(session: Session, at: int, structure: Structure | None) -> Session:
+    """Turn a graded layer round.
+
+    Raises
+    ------
+    Refusal
+        It is not graded, or not resolved yet.
+    """
+    layer = session.layers[at]
+    if not _is_graded(layer):
+        raise Refusal("the layer has no grade to turn")
+    return with_entry(session, ("layer", at), _turned(layer, at, structure))
+
+
+def mirror(session: Session, about: int, structure: Structure | None) -> Session:
+    """Make the stack symmetric: what is left of a layer is repeated, mirrored, on its right."""
+    before = [_turned(layer, n, structure) for n, layer in enumerate(session.layers[:about])]
+    return _with(session, (*session.layers[: about + 1], *reversed(before)))
+
+
+def _with(session: Session, layers: tuple[LayerEntry, ...]) -> Session:
+    return replace(session, layers=layers)
+
+
+def _is_graded(layer: LayerEntry) -> bool:
+    return not (layer.to_material is None and layer.to_edge_eV is None and layer.to_mass is None)
+
+
+def _turned(layer: LayerEntry, at: int, structure: Structure | None) -> LayerEntry:
+    if not _is_graded(layer):
+        return layer
+    if layer.material is not None and layer.to_material is not None:
+        return replace(layer, material=layer.to_material, to_material=layer.material)
+    if structure is None:
+        raise Refusal("the layer's grade is not known yet; mend the design first")
+    part = structure.layers[at]
+    changes = explicit(layer, ("layer", at), structure)
+    changes |= {
+        "material": None,
+        "to_material": None,
+        "edge_eV": short(part.right_edge_eV),
+        "mass": short(part.right_mass),
+        "to_edge_eV": short(part.edge_eV),
+        "to_mass": short(part.mass),
+    }
+    return replace(layer, **changes)
+
+
+def _halves(half: LayerEntry, part: Layer) -> tuple[LayerEntry, LayerEntry]:
+    """Two halves of a graded layer, said in numbers."""
+    edge = short(0.5 * (part.edge_eV + part.right_edge_eV))
+    mass = short(0.5 * (part.mass + part.right_mass))
+    thickness = short(0.5 * part.thickness_nm)
+    plain = replace(
+        half,
+        material=None,
+        to_material=None,
+        thickness_nm=thickness,
+        thickness_ml=None,
+        permittivity=part.permittivity,
+    )
+    first = replace(
+        plain, edge_eV=short(part.edge_eV), mass=part.mass, to_edge_eV=edge, to_mass=mass
+    )
+    last_edge, last_mass = short(part.right_edge_eV), part.right_mass
+    second = replace(plain, edge_eV=edge, mass=mass, to_edge_eV=last_edge, to_mass=last_mass)
+    return first, second
