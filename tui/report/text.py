@@ -100,13 +100,14 @@ def _window(study: Study) -> str:
 
 def _levels(study: Study) -> str:
     rows = [
-        _level_row(number, level, study.scene.structure.layers)
+        level_row(number, level, study.scene.structure.layers)
         for number, level in enumerate(study.levels.levels, start=1)
     ]
     return columns(LEVEL_HEAD, rows, left_aligned=(8,)) if rows else "none\n"
 
 
-def _level_row(number: int, level: Level, layers: Sequence[Layer]) -> list[str]:
+def level_row(number: int, level: Level, layers: Sequence[Layer]) -> list[str]:
+    """Write one level's row of the table under `LEVEL_HEAD`."""
     at, share = main_layer(level.share_by_layer)
     label = layers[at - 1].label or layers[at - 1].name
     place = f"layer {at}" + (f" {label}" if label else "") + f", {100.0 * share:.0f} %"

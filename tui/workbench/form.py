@@ -8,8 +8,6 @@ from physics.structure import Contact, Layer, Structure
 from tui.session.model import ContactEntry, LayerEntry, Session
 from tui.workbench.values import Place
 
-LONG_DASH = "-"
-
 
 @dataclass(frozen=True)
 class Column:
@@ -42,12 +40,13 @@ CONTACT_KEYS = ("material", "edge_eV", "mass", "donors_cm3", "fermi_eV", "permit
 class Field:
     """One field: what it shows and what it stands for."""
 
+    place: Place
     key: str
     text: str
     width: int
     head: str
     stated: bool = True
-    """Whether the user wrote it; what follows from a material is shown in brackets of style."""
+    """Whether the user wrote it; what follows from a material is shown fainter."""
     left_aligned: bool = False
     open: bool = True
     """Whether it can be changed."""
@@ -57,11 +56,13 @@ class Field:
 class Row:
     """One row of the form."""
 
-    place: Place
     name: str
     fields: tuple[Field, ...]
-    headed: bool = False
-    """Whether each field carries its own heading."""
+
+    @property
+    def place(self) -> Place:
+        """The part of the session that the row stands for."""
+        return self.fields[0].place
 
 
 def rows_of(session: Session, structure: Structure | None) -> list[Row]:
@@ -72,7 +73,7 @@ def rows_of(session: Session, structure: Structure | None) -> list[Row]:
     structure : Structure, optional
         The session resolved, for the numbers that follow from materials.
     """
-    rows = [_conditions(session), _window(session)]
+    rows = [_conditions(session)]
     left = None if structure is None else structure.left
     right = None if structure is None else structure.right
     rows.append(_contact(("left", 0), "left contact", session.left, left))
@@ -84,23 +85,16 @@ def rows_of(session: Session, structure: Structure | None) -> list[Row]:
 
 
 def _conditions(session: Session) -> Row:
-    conditions = session.conditions
+    conditions, view = session.conditions, session.view
+    given, seen = ("conditions", 0), ("view", 0)
     fields = (
-        Field("temperature_K", f"{conditions.temperature_K:g}", 7, "temperature K"),
-        Field("bias_V", f"{conditions.bias_V:g}", 8, "bias V"),
-        Field("field", conditions.field, 8, "field", left_aligned=True, open=False),
+        Field(given, "temperature_K", f"{conditions.temperature_K:g}", 6, "temp. K"),
+        Field(given, "bias_V", f"{conditions.bias_V:g}", 7, "bias V"),
+        Field(seen, "from_eV", _number(view.from_eV, "auto"), 6, "from eV"),
+        Field(seen, "to_eV", _number(view.to_eV, "auto"), 6, "to eV"),
+        Field(seen, "max_width_eV", f"{view.max_width_eV:.3g}", 6, "widest eV"),
     )
-    return Row(("conditions", 0), "", fields, headed=True)
-
-
-def _window(session: Session) -> Row:
-    view = session.view
-    fields = (
-        Field("from_eV", _number(view.from_eV, "auto"), 7, "window from eV"),
-        Field("to_eV", _number(view.to_eV, "auto"), 7, "to"),
-        Field("max_width_eV", f"{view.max_width_eV:g}", 7, "levels up to eV wide"),
-    )
-    return Row(("view", 0), "", fields, headed=True)
+    return Row("", fields)
 
 
 def _contact(place: Place, name: str, entry: ContactEntry, part: Contact | None) -> Row:
@@ -108,24 +102,25 @@ def _contact(place: Place, name: str, entry: ContactEntry, part: Contact | None)
     for column in COLUMNS:
         if column.key not in CONTACT_KEYS:
             text = name if column.key == "label" else ""
-            fields.append(_field(column, text, stated=False, is_open=False))
+            fields.append(_field(place, column, text, stated=False, is_open=False))
             continue
         value = getattr(entry, column.key)
         follows = None if part is None else getattr(part, column.key, None)
-        fields.append(_field(column, _text(column.key, value, follows), stated=value is not None))
-    return Row(place, place[0][0].upper(), tuple(fields))
+        text = _text(column.key, value, follows)
+        fields.append(_field(place, column, text, stated=value is not None))
+    return Row(place[0][0].upper(), tuple(fields))
 
 
 def _layer(index: int, entry: LayerEntry, part: Layer | None) -> Row:
-    fields = []
+    place, fields = ("layer", index), []
     for column in COLUMNS:
         if column.key == "fermi_eV":
-            fields.append(_field(column, "", stated=False, is_open=False))
+            fields.append(_field(place, column, "", stated=False, is_open=False))
             continue
         value = getattr(entry, column.key)
-        follows = _follows(column.key, part)
-        fields.append(_field(column, _text(column.key, value, follows), stated=value is not None))
-    return Row(("layer", index), str(index + 1), tuple(fields))
+        text = _text(column.key, value, _follows(column.key, part))
+        fields.append(_field(place, column, text, stated=value is not None))
+    return Row(str(index + 1), tuple(fields))
 
 
 def _follows(key: str, part: Layer | None) -> float | None:
@@ -138,8 +133,10 @@ def _follows(key: str, part: Layer | None) -> float | None:
     return value if isinstance(value, (int, float)) else None
 
 
-def _field(column: Column, text: str, *, stated: bool, is_open: bool = True) -> Field:
-    return Field(column.key, text, column.width, column.head, stated, column.left_aligned, is_open)
+def _field(place: Place, column: Column, text: str, *, stated: bool, is_open: bool = True) -> Field:
+    return Field(
+        place, column.key, text, column.width, column.head, stated, column.left_aligned, is_open
+    )
 
 
 def _text(key: str, value: float | str | None, follows: float | None) -> str:

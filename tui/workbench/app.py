@@ -1,0 +1,56 @@
+"""The workbench: start it, and leave the terminal as it was, however it ends."""
+
+from __future__ import annotations
+
+import asyncio
+import os
+import signal
+from pathlib import Path
+
+# Before Textual is imported, which reads them once: few frames on a slow link, no animation, and
+# the terminal's own colours, so that NO_COLOR sends none and light backgrounds stay light.
+os.environ.setdefault("TEXTUAL_FPS", "15")
+os.environ.setdefault("TEXTUAL_ANIMATIONS", "none")
+os.environ.setdefault("TEXTUAL_SMOOTH_SCROLL", "0")
+os.environ["TEXTUAL_THEME"] = "ansi-dark"
+
+from tui.workbench import document as documents
+from tui.workbench.energy_actions import EnergyActions
+from tui.workbench.file_actions import FileActions
+from tui.workbench.form_actions import FormActions
+from tui.workbench.look import glyphs_for_terminal
+
+SIGNALLED = 128
+
+
+class Workbench(FormActions, EnergyActions, FileActions):
+    """The whole application."""
+
+    def on_mount(self) -> None:
+        """Begin, and leave on signals in good order."""
+        super().on_mount()
+        loop = asyncio.get_running_loop()
+        for number in (signal.SIGTERM, signal.SIGHUP):
+            loop.add_signal_handler(number, self._end, number)
+
+    def _end(self, number: int) -> None:
+        self.exit(SIGNALLED + number)
+
+
+def run(path: Path | None) -> int:
+    """Open a file, or the demo design, in the workbench.
+
+    Returns
+    -------
+    int
+        The exit status.
+
+    Raises
+    ------
+    SessionError
+        The file is refused.
+    """
+    document = documents.demo() if path is None else documents.opened(path)
+    app = Workbench(document, glyphs_for_terminal())
+    status = app.run(mouse=False)
+    return app.return_code or 1 if status is None else status

@@ -1,0 +1,267 @@
+"""The bench: the design in hand, its answer, and the panes that show both.
+
+Actions live in modules of their own (`form_actions`, `energy_actions`, `file_actions`) on top of
+this class; what they decide is decided by pure functions.
+"""
+
+from __future__ import annotations
+
+import time
+from collections.abc import Callable
+from typing import Any, ClassVar
+
+from textual import events
+from textual.app import App, ComposeResult
+from textual.binding import Binding, BindingType
+from textual.containers import Container
+from textual.message import Message
+from textual.timer import Timer
+
+from physics.errors import PhysicsError
+from physics.structure import Structure
+from tui.figures.cells import PLAIN, Glyphs
+from tui.reading import Reading
+from tui.session.model import Session
+from tui.session.refusal import SessionError
+from tui.session.resolve import resolve
+from tui.study import Request, Study
+from tui.workbench.document import Document
+from tui.workbench.form import Field, Row, rows_of
+from tui.workbench.keys import KEYS
+from tui.workbench.panes import FigurePane, Pane
+from tui.workbench.prompt import Accept, Prompt
+from tui.workbench.readout import level_lines, reading_lines
+from tui.workbench.screens import Question
+from tui.workbench.sheet import Cursor, field_at, moved, sheet_lines
+from tui.workbench.solver import Hand, Outcome, Solver, Task
+
+WIDE_FROM, WIDE_HEIGHT = 150, 30
+TALL_FROM = 32
+SMALLEST = (60, 18)
+RESIZE_PAUSE_S = 0.08
+SLOW_S = 0.3
+HINT = "? keys   Enter change   + - step   n p level   a d x layer   w save   q quit"
+
+
+class Bench(App[int], inherit_bindings=False):
+    """State and panes of the workbench."""
+
+    CSS_PATH = "bench.tcss"
+    ENABLE_COMMAND_PALETTE = False
+    BINDINGS: ClassVar[list[BindingType]] = [
+        Binding(key.keys, key.action, key.text, show=False) for key in KEYS
+    ]
+
+    class Answered(Message):
+        """The solver has an outcome."""
+
+        def __init__(self, outcome: Outcome) -> None:
+            super().__init__()
+            self.outcome = outcome
+
+    def __init__(self, document: Document, glyphs: Glyphs) -> None:
+        super().__init__()
+        self.document = document
+        self.glyphs = glyphs
+        self.cursor = Cursor()
+        self.hand = Hand()
+        self.structure: Structure | None = None
+        self.study: Study | None = None
+        self.reading: Reading | None = None
+        self.trouble = ""
+        self.asked: Task | None = None
+        self._asked_at = 0.0
+        self._resizing: Timer | None = None
+        self.solver = Solver(self._deliver)
+
+    def compose(self) -> ComposeResult:
+        """Lay out the panes."""
+        yield Pane(id="title")
+        with Container(id="body"):
+            with Container(id="answer"):
+                yield FigurePane(self.glyphs, id="figure")
+                yield Pane(id="reading")
+            with Container(id="side"):
+                yield Pane(id="sheet")
+                yield Pane(id="levels")
+                yield Pane(id="notes")
+        yield Pane(id="small")
+        yield Prompt(id="prompt")
+
+    def on_mount(self) -> None:
+        """Begin with what was opened."""
+        if self.glyphs is PLAIN:
+            self.add_class("plain")
+        self.call_after_refresh(self.take_document)
+        self.set_interval(SLOW_S, self._show_progress)
+
+    def on_unmount(self) -> None:
+        """End the computing thread."""
+        self.solver.close()
+
+    # What is on the bench
+
+    @property
+    def session(self) -> Session:
+        """The session as it is now."""
+        return self.document.session
+
+    @property
+    def rows(self) -> list[Row]:
+        """The form's rows."""
+        return rows_of(self.session, self.structure)
+
+    @property
+    def field(self) -> Field:
+        """The field at the form's cursor."""
+        return field_at(self.cursor, self.rows)
+
+    def take_document(self) -> None:
+        """Show a document that was just opened or begun."""
+        self.hand = Hand()
+        self.session_changed()
+        self.say(HINT)
+
+    def become(self, session: Session) -> None:
+        """Take an edit."""
+        self.document.become(session)
+        self.session_changed()
+
+    def session_changed(self) -> None:
+        """Resolve what is there now, show the form at once, and ask for the answer."""
+        try:
+            self.structure, self.trouble = resolve(self.session), ""
+        except (SessionError, PhysicsError) as error:
+            self.structure, self.trouble = None, str(error)
+        self.cursor = moved(self.cursor, self.rows, 0, 0)
+        self.show_form()
+        self.compute()
+
+    def compute(self) -> None:
+        """Ask the solver for the answer to what is there now."""
+        self.asked = Task(Request(self.session), self.hand)
+        self._asked_at = time.monotonic()
+        self.solver.ask(self.asked)
+        self.show_title()
+
+    def on_bench_answered(self, message: Answered) -> None:
+        """Show an outcome, unless something newer has been asked for."""
+        outcome = message.outcome
+        if outcome.task is not self.asked:
+            return
+        self.asked = None
+        self.trouble = outcome.trouble
+        if outcome.study is not None:
+            self.study, self.reading = outcome.study, outcome.reading
+        self.show_answer()
+
+    def _deliver(self, outcome: Outcome) -> None:
+        # Called in the solver's thread; posting is what a thread may do.
+        self.post_message(self.Answered(outcome))
+
+    # Showing
+
+    def show_form(self) -> None:
+        """Show the form."""
+        pane = self.query_one("#sheet", Pane)
+        width, height = pane.content_size
+        if width and height:
+            pane.show(sheet_lines(self.rows, self.cursor, width, height))
+
+    def show_answer(self) -> None:
+        """Show figure, read-out, levels and notes."""
+        self.show_title()
+        study, reading = self.study, self.reading
+        if study is None or reading is None:
+            self.query_one("#figure", Pane).show([[("", "")], [(f" {self.trouble}", "trouble")]])
+            return
+        self.query_one("#figure", FigurePane).draw(study, reading)
+        pane = self.query_one("#reading", Pane)
+        pane.show(reading_lines(study, reading, pane.size.width))
+        pane = self.query_one("#levels", Pane)
+        pane.show(level_lines(study, reading, pane.size.height))
+        self.show_notes()
+
+    def show_notes(self) -> None:
+        """Show the notes in their pane."""
+        pane = self.query_one("#notes", Pane)
+        room = pane.content_size.width
+        lines: list[list[tuple[str, str]]] = [[("notes on this answer", "head")]]
+        for note in self.notes():
+            lines += [[(part, "")] for part in wrapped(note, room)]
+        pane.show(lines if len(lines) > 1 else [[("no notes on this answer", "faint")]])
+
+    def notes(self) -> list[str]:
+        """Give the notes on the answer."""
+        advice = () if self.study is None else self.study.advice
+        return [f"{note.topic}: {note.text}" for note in advice]
+
+    def show_title(self) -> None:
+        """Show what is in hand, and how its answer stands."""
+        document, pane = self.document, self.query_one("#title", Pane)
+        mark = "*" if document.is_changed else ""
+        left = f" {document.name}{mark}  {self.session.title}"
+        right = f" {self._state()} "
+        room = max(0, pane.size.width - len(right))
+        role = "trouble" if self.trouble else "bar"
+        pane.show([[(left[:room].ljust(room), "bar"), (right, role)]])
+
+    def _state(self) -> str:
+        if self.asked is not None and time.monotonic() - self._asked_at > SLOW_S:
+            return f"computing {time.monotonic() - self._asked_at:.0f} s; old answer shown"
+        if self.trouble:
+            return "old answer shown" if self.study is not None else "no answer"
+        count = len(self.notes())
+        return "" if count == 0 else f"{count} note{'s' * (count > 1)}: i"
+
+    def _show_progress(self) -> None:
+        if self.asked is not None:
+            self.show_title()
+
+    # Asking and telling
+
+    def say(self, text: str, role: str = "faint") -> None:
+        """Show a message on the lowest line; a design that does not compute has precedence."""
+        if self.trouble and role == "faint":
+            text, role = self.trouble, "trouble"
+        self.query_one("#prompt", Prompt).say(f" {text}", role)
+
+    def ask(self, label: str, initial: str, accept: Accept) -> None:
+        """Ask for a line of text on the lowest line."""
+        self.query_one("#prompt", Prompt).ask(f" {label} ", initial, accept)
+
+    def choose(self, question: str, answers: dict[str, str], then: Callable[[str], Any]) -> None:
+        """Ask a question; ``then`` is called with the key of an answer, not when it is left."""
+        self.push_screen(Question(question, answers), lambda key: then(key) if key else None)
+
+    @property
+    def is_asking(self) -> bool:
+        """Whether a line of text is being typed."""
+        return self.query_one("#prompt", Prompt).is_open
+
+    # Size
+
+    def on_resize(self, event: events.Resize) -> None:
+        """Choose the layout; draw once the resizing has paused."""
+        width, height = event.size
+        self.set_class(width >= WIDE_FROM and height >= WIDE_HEIGHT, "wide")
+        self.set_class(height >= TALL_FROM, "tall")
+        self.set_class(width < SMALLEST[0] or height < SMALLEST[1], "small")
+        if self._resizing is not None:
+            self._resizing.stop()
+        self._resizing = self.set_timer(RESIZE_PAUSE_S, self.show_all)
+
+    def show_all(self) -> None:
+        """Show everything again."""
+        width, height = self.size
+        need = f"winze needs {SMALLEST[0]} x {SMALLEST[1]} cells; this is {width} x {height}"
+        self.query_one("#small", Pane).show([[(need, "strong")]])
+        self.show_form()
+        self.show_answer()
+
+
+def wrapped(text: str, width: int) -> list[str]:
+    """Break a note into lines, the later ones indented."""
+    import textwrap
+
+    return textwrap.wrap(text, max(20, width), initial_indent="- ", subsequent_indent="  ")

@@ -1,0 +1,144 @@
+"""What keys do with files, history and screens."""
+
+from __future__ import annotations
+
+from pathlib import Path
+
+from tui.session.refusal import SessionError
+from tui.workbench import document as documents
+from tui.workbench.bench import Bench, wrapped
+from tui.workbench.document import Document
+from tui.workbench.keys import help_lines
+from tui.workbench.screens import Reader
+
+
+class FileActions(Bench):
+    """Actions on the design as a whole."""
+
+    def action_undo(self) -> None:
+        """Undo."""
+        self._history(self.document.undo(), "nothing to undo")
+
+    def action_redo(self) -> None:
+        """Redo."""
+        self._history(self.document.redo(), "nothing to redo")
+
+    def action_save(self) -> None:
+        """Save to the design's file; ask for one where there is none."""
+        path = self.document.path
+        if path is None:
+            self.action_save_as()
+        elif self.document.changed_on_disk():
+            self.choose(
+                f"{path.name} was changed by another program since it was read here.",
+                {"o": "overwrite it", "a": "save under another name"},
+                lambda key: self._save(path) if key == "o" else self.action_save_as(),
+            )
+        else:
+            self._save(path)
+
+    def action_save_as(self) -> None:
+        """Save under another name."""
+        here = self.document.path
+        self.ask("save as:", str(here or "design.toml"), self._save_as)
+
+    def action_open(self) -> None:
+        """Open a file."""
+
+        def accept(text: str) -> str:
+            try:
+                document = documents.opened(Path(text.strip()).expanduser())
+            except SessionError as error:
+                return str(error)
+            self._show(document)
+            return ""
+
+        self._guarded("open another design", lambda: self.ask("open:", "", accept))
+
+    def action_new(self) -> None:
+        """Begin a new design."""
+        self._guarded("begin a new design", lambda: self._show(documents.fresh()))
+
+    def action_leave(self) -> None:
+        """Quit."""
+        self._guarded("quit", lambda: self.exit(0))
+
+    def action_help(self) -> None:
+        """List all keys."""
+        self.push_screen(Reader("Keys", "\n".join(help_lines())))
+
+    def action_notes(self) -> None:
+        """Show the notes in full."""
+        lines = [line for note in self.notes() for line in [*wrapped(note, 70), ""]]
+        if self.trouble:
+            lines = [*wrapped(self.trouble, 70), "", *lines]
+        self.push_screen(Reader("Notes on this answer", "\n".join(lines) or "none"))
+
+    def action_redraw(self) -> None:
+        """Draw the whole screen anew."""
+        self.refresh(repaint=True, layout=True)
+        self.show_all()
+
+    def _history(self, moved: bool, otherwise: str) -> None:
+        if moved:
+            self.session_changed()
+            self.say("")
+        else:
+            self.say(otherwise)
+
+    def _guarded(self, what: str, then: object) -> None:
+        """Do what would lose unsaved work only after asking."""
+        if not callable(then):
+            raise TypeError(then)
+        if not self.document.is_changed:
+            then()
+            return
+
+        def answered(key: str) -> None:
+            if key == "s":
+                self._save_and(then)
+            else:
+                then()
+
+        answers = {"s": "save first", "d": f"{what}, the changes are lost"}
+        self.choose(f"{self.document.name} has unsaved changes.", answers, answered)
+
+    def _save_and(self, then: object) -> None:
+        path = self.document.path
+        if path is None:
+            self.action_save_as()
+        elif self._save(path) and callable(then):
+            then()
+
+    def _save(self, path: Path) -> bool:
+        try:
+            self.document.save_to(path)
+        except SessionError as error:
+            self.say(str(error), "trouble")
+            return False
+        self.show_title()
+        self.say(f"saved {path}", "strong")
+        return True
+
+    def _save_as(self, text: str) -> str:
+        path = Path(text.strip()).expanduser()
+        if not text.strip():
+            return "a file name is needed"
+        if path.exists() and path != self.document.path and not path.is_dir():
+            self.choose(
+                f"{path.name} exists already.",
+                {"o": "overwrite it"},
+                lambda _: self._save(path),
+            )
+            return ""
+        try:
+            self.document.save_to(path)
+        except SessionError as error:
+            return str(error)
+        self.show_title()
+        self.call_after_refresh(self.say, f"saved {path}", "strong")
+        return ""
+
+    def _show(self, document: Document) -> None:
+        self.document = document
+        self.take_document()

@@ -1,0 +1,41 @@
+"""How roles look: colours that a colour-blind eye tells apart, and never colour alone.
+
+The palette is Okabe and Ito's (Color Universal Design, 2008; from memory), in its middle tones,
+which read on dark and on light backgrounds. All else is in the terminal's own colours.
+"""
+
+from __future__ import annotations
+
+import os
+import sys
+
+from rich.style import Style
+
+from tui.figures.cells import PLAIN, RICH, Glyphs
+
+STYLES: dict[str, Style] = {
+    "": Style(),
+    "axis": Style(dim=True),
+    "edge": Style(bold=True),
+    "density": Style(color="#3a96dd"),
+    "fill": Style(color="#3a96dd", dim=True),
+    "level": Style(color="#e69f00", bold=True),
+    "curve": Style(color="#009e73", bold=True),
+    "line": Style(color="#d55e00"),
+    "pointer": Style(color="#d55e00", reverse=True),
+    "head": Style(dim=True, underline=True),
+    "faint": Style(dim=True),
+    "strong": Style(bold=True),
+    "here": Style(bold=True),
+    "cursor": Style(reverse=True, bold=True),
+    "bar": Style(reverse=True),
+    "trouble": Style(color="#d55e00", bold=True),
+}
+
+
+def glyphs_for_terminal() -> Glyphs:
+    """Choose characters that the terminal can show."""
+    encoding = (getattr(sys.__stdout__, "encoding", "") or "").lower().replace("-", "")
+    if encoding != "utf8" or os.environ.get("TERM", "") == "linux":
+        return PLAIN
+    return RICH

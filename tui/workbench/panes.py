@@ -1,0 +1,79 @@
+"""Thin widgets: they hold lines that were made elsewhere and hand them out as strips."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+
+from rich.segment import Segment
+from textual.geometry import Size
+from textual.strip import Strip
+from textual.widget import Widget
+
+from tui.figures.cells import Glyphs
+from tui.figures.energy_figure import MIN_HEIGHT, MIN_WIDTH, Base, base_figure, figure
+from tui.reading import Reading
+from tui.study import Study
+from tui.workbench.look import STYLES
+
+StyledLines = Sequence[Sequence[tuple[str, str]]]
+
+
+class Pane(Widget):
+    """A widget that shows styled lines as they are."""
+
+    can_focus = False
+
+    def __init__(self, *, id: str) -> None:  # noqa: A002  Textual's own name
+        super().__init__(id=id)
+        self._strips: list[Strip] = []
+
+    def show(self, lines: StyledLines) -> None:
+        """Show these lines; the screen is touched only where they differ from what is there."""
+        strips = [
+            Strip([Segment(text, STYLES[role]) for text, role in line if text]) for line in lines
+        ]
+        changed = [
+            n
+            for n in range(max(len(strips), len(self._strips)))
+            if n >= len(strips) or n >= len(self._strips) or strips[n] != self._strips[n]
+        ]
+        self._strips = strips
+        if changed:
+            from textual.geometry import Region
+
+            width = max(1, self.size.width)
+            self.refresh(*(Region(0, n, width, 1) for n in changed))
+
+    def render_line(self, y: int) -> Strip:
+        """Hand a line out, filled up to the pane's width."""
+        strip = self._strips[y] if y < len(self._strips) else Strip.blank(0)
+        return strip.adjust_cell_length(self.size.width)
+
+    def get_content_height(self, container: Size, viewport: Size, width: int) -> int:  # noqa: ARG002
+        """As many lines as are shown."""
+        return len(self._strips)
+
+
+class FigurePane(Pane):
+    """The figure; what does not depend on the energy in hand is drawn once and kept."""
+
+    def __init__(self, glyphs: Glyphs, *, id: str) -> None:  # noqa: A002
+        super().__init__(id=id)
+        self.glyphs = glyphs
+        self.base: Base | None = None
+
+    def draw(self, study: Study, reading: Reading | None) -> None:
+        """Draw an answer."""
+        width, height = self.size
+        if width < MIN_WIDTH or height < MIN_HEIGHT:
+            self.base = None
+            self.show([[(f"the figure needs {MIN_WIDTH} x {MIN_HEIGHT} cells", "faint")]])
+            return
+        base = self.base
+        if base is None or base.study is not study or self._size_of(base) != (width, height):
+            base = self.base = base_figure(study, width, height, self.glyphs)
+        self.show(figure(base, reading).lines())
+
+    @staticmethod
+    def _size_of(base: Base) -> tuple[int, int]:
+        return base.cells.width, base.cells.height

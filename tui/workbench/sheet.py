@@ -1,0 +1,134 @@
+"""The form's lines: fields in columns, a cursor, and what fits into the room there is."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+from tui.workbench.form import COLUMNS, Field, Row
+
+StyledLine = list[tuple[str, str]]
+NAME_WIDTH = 3
+FIXED_LINES = 2
+"""Conditions and column heads stay in sight."""
+
+
+@dataclass(frozen=True)
+class Cursor:
+    """Where the form's cursor is."""
+
+    row: int = 2
+    column: int = 2
+
+
+def moved(cursor: Cursor, rows: list[Row], down: int, right: int) -> Cursor:
+    """Move the cursor by rows and open fields, inside the form."""
+    row = min(max(cursor.row + down, 0), len(rows) - 1)
+    fields = rows[row].fields
+    column = min(cursor.column, len(fields) - 1)
+    if right:
+        ahead = [n for n in range(len(fields)) if fields[n].open and (n - column) * right > 0]
+        column = min(ahead, key=lambda n: abs(n - column), default=column)
+    if not fields[column].open:
+        open_fields = [n for n in range(len(fields)) if fields[n].open]
+        column = min(open_fields, key=lambda n: abs(n - column))
+    return Cursor(row, column)
+
+
+def field_at(cursor: Cursor, rows: list[Row]) -> Field:
+    """Find the field under the cursor."""
+    inside = moved(cursor, rows, 0, 0)
+    return rows[inside.row].fields[inside.column]
+
+
+def sheet_lines(rows: list[Row], cursor: Cursor, width: int, height: int) -> list[StyledLine]:
+    """Lay the form out in a given room, scrolled so that the cursor is in sight.
+
+    Parameters
+    ----------
+    rows : list of Row
+        Conditions first, then contacts and layers.
+    width, height : int
+        The room, in cells.
+    """
+    first, last = _columns_in_sight(cursor, width)
+    room = max(1, height - FIXED_LINES)
+    stack = rows[1:]
+    top = _top(cursor.row - 1, len(stack), room)
+    lines = [_conditions(rows[0], cursor), _heads(first, last)]
+    for n in range(top, min(top + room, len(stack))):
+        at = cursor.column if cursor.row == n + 1 else -1
+        lines.append(_stack_line(stack[n], at, first, last))
+    _mark_more(lines, top, len(stack) - top - room, width)
+    return [_fitted(line, width) for line in lines]
+
+
+def _top(row: int, count: int, room: int) -> int:
+    """First row in sight: the cursor's in the middle where there is more than fits."""
+    return max(0, min(row - room // 2, count - room))
+
+
+def _columns_in_sight(cursor: Cursor, width: int) -> tuple[int, int]:
+    """First column, and the one behind the last, that fit with the cursor's among them."""
+    wanted = cursor.column if cursor.row > 0 else 0
+    room = width - NAME_WIDTH
+    first = 0
+    while sum(column.width + 1 for column in COLUMNS[first : wanted + 1]) > room and first < wanted:
+        first += 1
+    last, used = first, 0
+    while last < len(COLUMNS) and used + COLUMNS[last].width + 1 <= room:
+        used += COLUMNS[last].width + 1
+        last += 1
+    return first, max(last, first + 1)
+
+
+def _conditions(row: Row, cursor: Cursor) -> StyledLine:
+    line: StyledLine = []
+    for n, field in enumerate(row.fields):
+        line.append((f" {field.head} ", "faint"))
+        here = cursor.row == 0 and min(cursor.column, len(row.fields) - 1) == n
+        line.append((f" {field.text} ", "cursor" if here else "strong"))
+    return line
+
+
+def _heads(first: int, last: int) -> StyledLine:
+    line: StyledLine = [(" " * NAME_WIDTH, "head")]
+    for column in COLUMNS[first:last]:
+        line.append((" " + _aligned(column.head, column.width, column.left_aligned), "head"))
+    return line
+
+
+def _stack_line(row: Row, at: int, first: int, last: int) -> StyledLine:
+    line: StyledLine = [(row.name.rjust(NAME_WIDTH), "here" if at >= 0 else "faint")]
+    for n in range(first, min(last, len(row.fields))):
+        field = row.fields[n]
+        text = _aligned(field.text, field.width, field.left_aligned)
+        role = "cursor" if n == at else "" if field.stated else "faint"
+        line += [(" ", ""), (text, role)]
+    return line
+
+
+def _aligned(text: str, width: int, left_aligned: bool) -> str:
+    if len(text) > width:
+        return text[: width - 1] + "~"
+    return text.ljust(width) if left_aligned else text.rjust(width)
+
+
+def _mark_more(lines: list[StyledLine], above: int, below: int, width: int) -> None:
+    """Say at the right how many rows are out of sight."""
+    for at, count, word in ((FIXED_LINES, above, "above"), (len(lines) - 1, below, "below")):
+        if count > 0 and at < len(lines):
+            mark = f" {count} more {word}"
+            used = sum(len(text) for text, _ in lines[at])
+            if used + len(mark) <= width:
+                lines[at].append((" " * (width - used - len(mark)) + mark, "faint"))
+
+
+def _fitted(line: StyledLine, width: int) -> StyledLine:
+    fitted: StyledLine = []
+    room = width
+    for text, role in line:
+        if room <= 0:
+            break
+        fitted.append((text[:room], role))
+        room -= len(text)
+    return fitted
