@@ -272,17 +272,17 @@ def _series(
     psi, flux = np.zeros(size), np.zeros(size)
     psi[0, :, 0], flux[1, :, 0] = 1.0, 1.0
     psi_before, flux_before = np.zeros(size), np.zeros(size)
-    total = np.empty((stops.size, 4, length.size, DEGREE + 1))
-    total[:, 0], total[:, 1], total[:, 2], total[:, 3] = psi[0], psi[1], flux[0], flux[1]
+    orders = np.empty((SERIES_TERMS + 1, 4, length.size, DEGREE + 1))
+    orders[0, :2], orders[0, 2:] = psi, flux
     for k in range(SERIES_TERMS):
         psi_next = (m0 * flux + m1 * flux_before) / (k + 1)
         flux_next = v0 * psi + v1 * psi_before
         flux_next[..., 1:] -= reach * h * psi[..., :-1]
         flux_next /= k + 1
         psi_before, flux_before, psi, flux = psi, flux, psi_next, flux_next
-        for stop, weight in enumerate(stops ** (k + 1)):
-            total[stop, 0:2] += weight * psi
-            total[stop, 2:4] += weight * flux
+        orders[k + 1, :2], orders[k + 1, 2:] = psi, flux
+    powers = stops[:, None] ** np.arange(SERIES_TERMS + 1)
+    total: FloatArray = np.tensordot(powers, orders, axes=(1, 0))
     return total
 
 

@@ -76,6 +76,15 @@ def row_of(value: float, limits: Limits, height: int, glyphs: Glyphs) -> int:
     return height - 1 - int(share * (dots * height - 1) + 0.5) // dots
 
 
+def band_of(limits: Limits, height: int, glyphs: Glyphs, first: int, last: int) -> Limits:
+    """Limits that draw rows ``first`` to ``last`` alone just as the whole drawing has them."""
+    dots = glyphs.marker_rows
+    scale = (limits.top - limits.bottom) / (dots * height - 1)
+    bottom = limits.bottom + scale * dots * (height - 1 - last)
+    top = limits.bottom + scale * (dots * (height - first) - 1)
+    return Limits(limits.left, limits.right, bottom, top)
+
+
 def column_of(value: float, limits: Limits, width: int) -> int:
     """Column in which a value is drawn."""
     share = (value - limits.left) / (limits.right - limits.left)

@@ -14,7 +14,7 @@ from numpy.typing import NDArray
 
 from physics.field import Profile
 from tui.figures.cells import Cells, Glyphs
-from tui.figures.curves import Curve, Limits, column_of, draw, row_of, thinned
+from tui.figures.curves import Curve, Limits, band_of, column_of, draw, row_of, thinned
 from tui.figures.ticks import round_ticks, tick_text
 from tui.reading import Reading
 from tui.study import Study
@@ -86,10 +86,13 @@ def base_figure(study: Study, width: int, height: int, glyphs: Glyphs) -> Base:
         position_width,
         room - position_width,
     )
-    edge = draw([_edge(study.profile, base)], base.position, position_width, rows, glyphs)
-    base.cells.paste(edge, 0, base.position_column)
-    curve = draw([_transmission(base)], base.log10_t, base.log10_t_width, rows, glyphs)
-    base.cells.paste(curve, 0, base.log10_t_column)
+    # One drawing across both panels, x counted in columns: plotext costs by the drawing.
+    both = Limits(0.0, room, base.position.bottom, base.position.top)
+    curves = [
+        _in_columns(_edge(study.profile, base), base.position, position_width, 0),
+        _in_columns(_transmission(base), base.log10_t, base.log10_t_width, position_width + 1),
+    ]
+    base.cells.paste(draw(curves, both, room + 1, rows, glyphs), 0, base.position_column)
     _axes(base)
     _levels(base)
     return base
@@ -146,6 +149,12 @@ def _transmission(base: Base) -> Curve:
     dots = base.rows * base.glyphs.marker_rows
     energy, log10 = thinned(spectrum.energy_eV[finite], spectrum.log10_transmission[finite], dots)
     return Curve(log10, energy, "curve")
+
+
+def _in_columns(curve: Curve, limits: Limits, width: int, start: int) -> Curve:
+    """Say a curve's x in columns of a panel, clipped to it."""
+    share = np.clip((curve.x - limits.left) / (limits.right - limits.left), 0.0, 1.0)
+    return Curve(start + share * (width - 1), curve.y, curve.role)
 
 
 def _axes(base: Base) -> None:
@@ -208,13 +217,16 @@ def _density(base: Base, cells: Cells, reading: Reading, row: int) -> None:
         return
     heights = _heights(density.density_per_nm, base, reading.energy_eV)
     x, y = thinned(density.x_nm, heights, base.position_width)
+    top, bottom = base.row_of(float(y.max())), min(base.row_of(float(y.min())), base.rows - 1)
+    top = max(top, 0)
+    band = band_of(base.position, base.rows, base.glyphs, top, bottom)
     curve = Curve(x, y, "density")
-    drawn = draw([curve], base.position, base.position_width, base.rows, base.glyphs)
-    cells.paste(drawn, 0, base.position_column)
+    drawn = draw([curve], band, base.position_width, bottom - top + 1, base.glyphs)
+    cells.paste(drawn, top, base.position_column)
     for column in range(base.position_width):
-        marked = [n for n in range(base.rows) if not drawn.is_blank(n, column)]
+        marked = [n for n in range(drawn.height) if not drawn.is_blank(n, column)]
         if marked:
-            for n in range(marked[0] + 1, row):
+            for n in range(top + marked[0] + 1, row):
                 at = base.position_column + column
                 cells.put(n, at, base.glyphs.fill, "fill", over=False)
 

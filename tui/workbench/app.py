@@ -3,13 +3,15 @@
 from __future__ import annotations
 
 import asyncio
+import gc
 import os
 import signal
+import sys
 from pathlib import Path
 
 # Before Textual is imported, which reads them once: few frames on a slow link, no animation, and
 # the terminal's own colours, so that NO_COLOR sends none and light backgrounds stay light.
-os.environ.setdefault("TEXTUAL_FPS", "15")
+os.environ.setdefault("TEXTUAL_FPS", "30")
 os.environ.setdefault("TEXTUAL_ANIMATIONS", "none")
 os.environ.setdefault("TEXTUAL_SMOOTH_SCROLL", "0")
 os.environ["TEXTUAL_THEME"] = "ansi-dark"
@@ -29,6 +31,9 @@ class Workbench(FormActions, EnergyActions, FileActions):
     def on_mount(self) -> None:
         """Begin, and leave on signals in good order."""
         super().on_mount()
+        # What is loaded by now stays: looking through it again and again would cost frames.
+        gc.collect()
+        gc.freeze()
         loop = asyncio.get_running_loop()
         for number in (signal.SIGTERM, signal.SIGHUP):
             loop.add_signal_handler(number, self._end, number)
@@ -50,6 +55,8 @@ def run(path: Path | None) -> int:
     SessionError
         The file is refused.
     """
+    # The solver's thread gives way within a millisecond: keys and drawing don't wait for it.
+    sys.setswitchinterval(1e-3)
     document = documents.demo() if path is None else documents.opened(path)
     app = Workbench(document, glyphs_for_terminal())
     status = app.run(mouse=False)

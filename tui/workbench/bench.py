@@ -32,11 +32,13 @@ from tui.workbench.panes import FigurePane, Pane
 from tui.workbench.prompt import Accept, Prompt
 from tui.workbench.readout import level_lines, reading_lines
 from tui.workbench.screens import Question
-from tui.workbench.sheet import Cursor, field_at, moved, sheet_lines
+from tui.workbench.sheet import FIXED_LINES, Cursor, field_at, moved, sheet_lines
 from tui.workbench.solver import Hand, Outcome, Solver, Task
 
 WIDE_FROM, WIDE_HEIGHT = 150, 30
 TALL_FROM = 32
+SHEET_SHARE = 0.5
+"""Most of the height that the form takes beside the figure."""
 SMALLEST = (60, 18)
 RESIZE_PAUSE_S = 0.08
 SLOW_S = 0.3
@@ -48,6 +50,7 @@ class Bench(App[int], inherit_bindings=False):
 
     CSS_PATH = "bench.tcss"
     ENABLE_COMMAND_PALETTE = False
+    AUTO_FOCUS = None
     BINDINGS: ClassVar[list[BindingType]] = [
         Binding(key.keys, key.action, key.text, show=False) for key in KEYS
     ]
@@ -165,8 +168,11 @@ class Bench(App[int], inherit_bindings=False):
         """Show the form."""
         pane = self.query_one("#sheet", Pane)
         width, height = pane.content_size
+        rows = self.rows
+        if self.has_class("wide"):
+            height = min(len(rows) + FIXED_LINES - 1, int(SHEET_SHARE * self.size.height))
         if width and height:
-            pane.show(sheet_lines(self.rows, self.cursor, width, height))
+            pane.show(sheet_lines(rows, self.cursor, width, height))
 
     def show_answer(self) -> None:
         """Show figure, read-out, levels and notes."""
@@ -179,7 +185,7 @@ class Bench(App[int], inherit_bindings=False):
         pane = self.query_one("#reading", Pane)
         pane.show(reading_lines(study, reading, pane.size.width))
         pane = self.query_one("#levels", Pane)
-        pane.show(level_lines(study, reading, pane.size.height))
+        pane.show(level_lines(study, reading, pane.content_size.height))
         self.show_notes()
 
     def show_notes(self) -> None:

@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Sequence
 
 from rich.segment import Segment
-from textual.geometry import Size
+from textual.geometry import Region, Size
 from textual.strip import Strip
 from textual.widget import Widget
 
@@ -37,10 +37,11 @@ class Pane(Widget):
             for n in range(max(len(strips), len(self._strips)))
             if n >= len(strips) or n >= len(self._strips) or strips[n] != self._strips[n]
         ]
+        grown = len(strips) != len(self._strips)
         self._strips = strips
-        if changed:
-            from textual.geometry import Region
-
+        if grown and self.styles.height is not None and self.styles.height.is_auto:
+            self.refresh(layout=True)
+        elif changed:
             width = max(1, self.size.width)
             self.refresh(*(Region(0, n, width, 1) for n in changed))
 

@@ -34,6 +34,7 @@ class Prompt(Horizontal):
         super().__init__(id=id)
         self._accept: Accept | None = None
         self._label = ""
+        self._idle = ("", "faint")
 
     def compose(self) -> ComposeResult:
         """Lay out label, line and remark."""
@@ -47,6 +48,7 @@ class Prompt(Horizontal):
 
     def say(self, text: str, role: str = "faint") -> None:
         """Show a message where no line is being typed."""
+        self._idle = (text, role)
         if not self.is_open:
             self._show_label(text, role, wide=True)
 
@@ -65,7 +67,7 @@ class Prompt(Horizontal):
         self._accept = None
         self.remove_class("asking")
         self.screen.set_focus(None)
-        self.say("")
+        self.say(*self._idle)
 
     def on_input_submitted(self, event: Input.Submitted) -> None:
         """Offer what was typed to whoever asked."""

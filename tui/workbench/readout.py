@@ -22,7 +22,8 @@ def reading_lines(study: Study, reading: Reading, width: int) -> list[Styled]:
         lines.append([("no level in the window", "faint")])
     else:
         number = study.levels.levels.index(near) + 1
-        lines += _about_level(study, near, number, is_in_hand=reading.level is not None)
+        in_hand = reading.level is not None
+        lines += _about_level(study, near, number, width, is_in_hand=in_hand)
     return [_cut(line, width) for line in lines]
 
 
@@ -62,7 +63,9 @@ def _at_energy(study: Study, reading: Reading) -> Styled:
     return said
 
 
-def _about_level(study: Study, level: Level, number: int, *, is_in_hand: bool) -> list[Styled]:
+def _about_level(
+    study: Study, level: Level, number: int, width: int, *, is_in_hand: bool
+) -> list[Styled]:
     name = f" level {number}" + ("" if is_in_hand else " (nearest)")
     first: Styled = [
         (f"{name} ", "level"),
@@ -86,17 +89,22 @@ def _about_level(study: Study, level: Level, number: int, *, is_in_hand: bool) -
         ]
     else:
         second.append(("bound", "strong"))
-    second += [("  in ", "faint"), (_places(level, study.scene.structure), "strong")]
+    second.append(("  in ", "faint"))
+    room = width - sum(len(text) for text, _ in second)
+    second.append((_places(level, study.scene.structure, room), "strong"))
     return [first, second]
 
 
-def _places(level: Level, structure: Structure) -> str:
+def _places(level: Level, structure: Structure, room: int) -> str:
+    """Name the layers that hold most of a level, as many as there is room for."""
     ranked = sorted(enumerate(level.share_by_layer), key=lambda item: -item[1])
     named = [
         f"{_layer_name(n, structure.layers[n])} {100.0 * share:.0f} %"
         for n, share in ranked[:4]
         if share >= SHARE_FROM
     ]
+    while len(named) > 1 and len(", ".join(named)) > room:
+        named.pop()
     return ", ".join(named) or "many layers"
 
 
