@@ -24,7 +24,7 @@ from physics.sectors import Sectors, cut
 
 FloatArray = NDArray[np.float64]
 
-BASE_POINTS = 97
+BASE_POINTS = 161
 """Evenly spaced energies to begin with."""
 LINE_POINTS = 13
 """Energies through one level's line, evenly spaced in theta."""
@@ -32,7 +32,7 @@ DECADE_POINTS = 2
 """Energies a decade of distance from a level, on each side."""
 STRAIGHT = 0.02
 """Departure of log10 T from a straight line, in decades, up to which a step is left alone."""
-HALVINGS = 7
+HALVINGS = 4
 MAX_POINTS = 20_000
 NARROW_EV = 1e-8
 """Width below which T near the level is taken from its line."""

@@ -23,8 +23,10 @@ from physics.ranges import DONORS_CM3, MASS, TEMPERATURE_K
 
 DIGITS = 40
 
-masses = st.floats(math.log(MASS.low), math.log(MASS.high)).map(math.exp)
-temperatures = st.floats(math.log(TEMPERATURE_K.low), math.log(TEMPERATURE_K.high)).map(math.exp)
+masses = st.floats(math.log(1.001 * MASS.low), math.log(0.999 * MASS.high)).map(math.exp)
+temperatures = st.floats(
+    math.log(1.001 * TEMPERATURE_K.low), math.log(0.999 * TEMPERATURE_K.high)
+).map(math.exp)
 donors = st.floats(10.0, 21.99).map(lambda exponent: 10.0**exponent)
 
 
