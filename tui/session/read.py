@@ -49,18 +49,24 @@ def load(path: Path) -> tuple[str, Session]:
     """
     source = str(path)
     try:
-        if path.is_dir():
-            raise SessionError("", "it is a folder", "name a session file in it", source=source)
-        if path.stat().st_size > MAX_BYTES:
-            raise SessionError(
-                "", f"it is larger than {MAX_BYTES} bytes", "no session text is", source=source
-            )
-        data = path.read_bytes()
-    except OSError as error:
-        reason = error.strerror or type(error).__name__
+        objection = _objection(path)
+        data = b"" if objection else path.read_bytes()
+    except (OSError, ValueError) as error:  # ValueError: a NUL in the name
+        reason = getattr(error, "strerror", None) or str(error)
         raise SessionError("", "it cannot be read", reason.lower(), source=source) from error
+    if objection:
+        raise SessionError("", objection, "name a session text", source=source)
     text = decode(data, source)
     return text, read_session(text, source)
+
+
+def _objection(path: Path) -> str:
+    """Say why a file is not worth reading."""
+    if path.is_dir():
+        return "it is a folder"
+    if path.exists() and not path.is_file():  # a pipe would wait for its writer
+        return "it is no regular file"
+    return f"it is larger than {MAX_BYTES} bytes" if path.stat().st_size > MAX_BYTES else ""
 
 
 def decode(data: bytes, source: str) -> str:

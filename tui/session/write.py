@@ -185,4 +185,5 @@ def _name(part: str) -> str:
 
 
 def _comments(text: str) -> list[str]:
-    return [line.strip() for line in text.split("\n") if line.lstrip().startswith("#")]
+    """Collect what stands behind a # on every line; rather too much than too little."""
+    return [line[line.index("#") :].strip() for line in text.split("\n") if "#" in line]

@@ -1,0 +1,128 @@
+"""From what was written to numbers: scales, monolayers, Fermi energies, and what disagrees."""
+
+from __future__ import annotations
+
+from dataclasses import replace
+from typing import Any
+
+import pytest
+
+from physics.materials import material
+from physics.occupation import fermi_from_donors
+from tui.session.demo import demo_text
+from tui.session.model import ContactEntry, LayerEntry, MaterialEntry, Session
+from tui.session.read import read_session
+from tui.session.refusal import SessionError
+from tui.session.resolve import resolve
+
+DEMO = read_session(demo_text(), "demo")
+PLAIN = ContactEntry(edge_eV=0.0, mass=0.067)
+
+
+def with_layer(**values: Any) -> Session:
+    return replace(DEMO, layers=(LayerEntry(**({"thickness_nm": 3.0} | values)),))
+
+
+def refusal(session: Session) -> SessionError:
+    with pytest.raises(SessionError) as caught:
+        resolve(session)
+    return caught.value
+
+
+def test_catalogue_materials_are_measured_from_the_left_contact() -> None:
+    structure = resolve(DEMO)
+    barrier, contact = material("Al0.4Ga0.6As", 300.0), material("GaAs", 300.0)
+    assert structure.left.edge_eV == 0.0
+    assert structure.layers[1].edge_eV == pytest.approx(barrier.edge_eV - contact.edge_eV)
+    assert structure.layers[1].mass == barrier.mass
+    assert structure.layers[1].x_edge_eV == pytest.approx(
+        (barrier.x_edge_eV or 0) - contact.edge_eV
+    )
+
+
+def test_monolayers() -> None:
+    """Half a lattice constant each (common practice): 10 of Al0.4Ga0.6As."""
+    layer = resolve(DEMO).layers[1]
+    assert layer.thickness_nm == pytest.approx(10 * 0.5 * (0.4 * 0.56611 + 0.6 * 0.565325))
+
+
+def test_donors_set_the_fermi_energy_at_the_temperature() -> None:
+    for kelvin in (4.0, 300.0):
+        session = replace(DEMO, conditions=replace(DEMO.conditions, temperature_K=kelvin))
+        contact = resolve(session).left
+        assert contact.fermi_eV == fermi_from_donors(2e17, contact.mass, kelvin)
+
+
+def test_own_materials_are_on_the_session_scale() -> None:
+    mine = MaterialEntry("Mine", 0.21, 0.085, 12.1, 0.283)
+    session = replace(
+        with_layer(material="Mine", thickness_nm=None, thickness_ml=10), materials=(mine,)
+    )
+    layer = resolve(session).layers[0]
+    assert (layer.edge_eV, layer.mass, layer.permittivity) == (0.21, 0.085, 12.1)
+    assert layer.thickness_nm == pytest.approx(2.83)
+    left = replace(session, left=ContactEntry(material="Mine"), right=PLAIN)
+    assert resolve(left).left.edge_eV == 0.21
+
+
+def test_a_catalogue_material_has_no_place_on_an_unknown_scale() -> None:
+    session = replace(with_layer(material="AlAs"), left=PLAIN, right=PLAIN)
+    error = refusal(session)
+    assert error.key == "layer 1 material"
+    assert "left contact's material" in error.allowed
+
+
+def test_grades() -> None:
+    session = with_layer(material="GaAs", to_material="Al0.3Ga0.7As")
+    layer = resolve(session).layers[0]
+    end = material("Al0.3Ga0.7As", 300.0)
+    assert layer.edge_eV == pytest.approx(0.0)
+    assert layer.to_edge_eV == pytest.approx(end.edge_eV - material("GaAs", 300.0).edge_eV)
+    assert layer.to_mass == end.mass
+
+
+@pytest.mark.parametrize(
+    ("values", "key"),
+    [
+        ({"material": "AlAs", "edge_eV": 0.5}, "layer 1 edge_eV"),
+        ({"material": "AlAs", "mass": 0.5}, "layer 1 mass"),
+        ({"material": "AlAs", "thickness_ml": 3}, "layer 1 thickness_nm"),
+        ({"material": "GaAs", "to_material": "AlAs", "to_edge_eV": 0.1}, "layer 1 to_edge_eV"),
+        ({"material": "Al1.3Ga0.7As"}, "layer 1 material"),
+        ({"material": "Unobtainium"}, "layer 1 material"),
+        ({"material": "\x1b[2J"}, "layer 1 material"),
+        (
+            {"edge_eV": 0.3, "mass": 0.09, "thickness_nm": None, "thickness_ml": 3},
+            "layer 1 thickness_ml",
+        ),
+    ],
+)
+def test_what_disagrees_or_is_unknown(values: dict[str, Any], key: str) -> None:
+    error = refusal(with_layer(**values))
+    assert error.key == key
+    assert "\x1b" not in str(error)
+
+
+def test_what_agrees_is_taken() -> None:
+    known = material("AlAs", 300.0)
+    edge = known.edge_eV - material("GaAs", 300.0).edge_eV
+    session = with_layer(material="AlAs", mass=known.mass, edge_eV=edge)
+    assert resolve(session).layers[0].mass == known.mass
+
+
+def test_fermi_energies() -> None:
+    filled = fermi_from_donors(1e18, 0.067, 300.0)
+    both = ContactEntry(material="GaAs", donors_cm3=1e18, fermi_eV=filled)
+    assert resolve(replace(DEMO, left=both)).left.fermi_eV == filled
+    wrong = replace(both, fermi_eV=0.2)
+    assert refusal(replace(DEMO, left=wrong)).key == "left fermi_eV"
+    one_sided = replace(DEMO, right=ContactEntry(material="GaAs"))
+    error = refusal(one_sided)
+    assert "both contacts" in error.allowed
+
+
+def test_the_line_is_found_afterwards() -> None:
+    text = demo_text().replace("Al0.4Ga0.6As", "Al1.4Ga0.6As", 1)
+    error = refusal(read_session(text, "d")).located(text, "d.toml")
+    wanted = 1 + text[: text.index("Al1.4")].count("\n")
+    assert (error.source, error.line) == ("d.toml", wanted)
