@@ -35,7 +35,7 @@ from tui.workbench.screens import Question
 from tui.workbench.sheet import FIXED_LINES, Cursor, field_at, moved, sheet_lines
 from tui.workbench.solver import Hand, Outcome, Solver, Task
 
-WIDE_FROM, WIDE_HEIGHT = 150, 30
+WIDE_FROM, WIDE_HEIGHT = 160, 30
 TALL_FROM = 32
 SHEET_SHARE = 0.5
 """Most of the height that the form takes beside the figure."""

@@ -8,6 +8,7 @@ from __future__ import annotations
 
 import os
 import sys
+from collections.abc import Mapping
 
 from rich.style import Style
 
@@ -38,4 +39,17 @@ def glyphs_for_terminal() -> Glyphs:
     encoding = (getattr(sys.__stdout__, "encoding", "") or "").lower().replace("-", "")
     if encoding != "utf8" or os.environ.get("TERM", "") == "linux":
         return PLAIN
-    return RICH
+    return RICH if _locale_is_utf8(os.environ) else PLAIN
+
+
+def _locale_is_utf8(environment: Mapping[str, str]) -> bool:
+    """Whether the user's locale says UTF-8; Python itself writes UTF-8 even where it does not.
+
+    In the C locale Python sets LC_CTYPE=C.UTF-8 for itself, which tells nothing of the terminal.
+    """
+    language = environment.get("LANG", "")
+    ctype = environment.get("LC_CTYPE", "")
+    if ctype == "C.UTF-8" and language in ("", "C", "POSIX"):
+        ctype = ""
+    named = environment.get("LC_ALL", "") or ctype or language
+    return named.lower().replace("-", "").endswith("utf8")

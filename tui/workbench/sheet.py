@@ -54,7 +54,7 @@ def sheet_lines(rows: list[Row], cursor: Cursor, width: int, height: int) -> lis
     room = max(1, height - FIXED_LINES)
     stack = rows[1:]
     top = _top(cursor.row - 1, len(stack), room)
-    lines = [_conditions(rows[0], cursor), _heads(first, last)]
+    lines = [_conditions(rows[0], cursor, width), _heads(first, last)]
     for n in range(top, min(top + room, len(stack))):
         at = cursor.column if cursor.row == n + 1 else -1
         lines.append(_stack_line(stack[n], at, first, last))
@@ -81,13 +81,18 @@ def _columns_in_sight(cursor: Cursor, width: int) -> tuple[int, int]:
     return first, max(last, first + 1)
 
 
-def _conditions(row: Row, cursor: Cursor) -> StyledLine:
-    line: StyledLine = []
-    for n, field in enumerate(row.fields):
-        line.append((f" {field.head} ", "faint"))
-        here = cursor.row == 0 and min(cursor.column, len(row.fields) - 1) == n
-        line.append((f" {field.text} ", "cursor" if here else "strong"))
-    return line
+def _conditions(row: Row, cursor: Cursor, width: int) -> StyledLine:
+    """Write the conditions; what does not fit gives way from the left."""
+    here = min(cursor.column, len(row.fields) - 1) if cursor.row == 0 else -1
+    parts = [
+        [(f" {field.head} ", "faint"), (f" {field.text} ", "cursor" if n == here else "strong")]
+        for n, field in enumerate(row.fields)
+    ]
+    sizes = [sum(len(text) for text, _ in part) for part in parts]
+    first = 0
+    while first < here and sum(sizes[first : here + 1]) > width:
+        first += 1
+    return [run for part in parts[first:] for run in part]
 
 
 def _heads(first: int, last: int) -> StyledLine:

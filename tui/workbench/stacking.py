@@ -114,11 +114,15 @@ def _is_graded(layer: LayerEntry) -> bool:
 def _turned(layer: LayerEntry, at: int, structure: Structure | None) -> LayerEntry:
     if not _is_graded(layer):
         return layer
-    if layer.material is not None and layer.to_material is not None:
-        return replace(layer, material=layer.to_material, to_material=layer.material)
     if structure is None:
         raise Refusal("the layer's grade is not known yet; mend the design first")
     part = structure.layers[at]
+    if layer.material is not None and layer.to_material is not None:
+        turned = replace(layer, material=layer.to_material, to_material=layer.material)
+        if layer.thickness_ml is None:
+            return turned
+        # The other material's monolayer differs; the thickness is to stay.
+        return replace(turned, thickness_ml=None, thickness_nm=short(part.thickness_nm))
     changes = explicit(layer, ("layer", at), structure)
     changes |= {
         "material": None,
