@@ -36,7 +36,7 @@ from tui.workbench.sheet import FIXED_LINES, Cursor, field_at, moved, sheet_line
 from tui.workbench.solver import Hand, Outcome, Solver, Task
 
 WIDE_FROM, WIDE_HEIGHT = 160, 30
-TALL_FROM = 32
+TALL_FROM, SHORT_BELOW = 32, 22
 SHEET_SHARE = 0.5
 """Most of the height that the form takes beside the figure."""
 SMALLEST = (60, 18)
@@ -133,9 +133,10 @@ class Bench(App[int], inherit_bindings=False):
     def session_changed(self) -> None:
         """Resolve what is there now, show the form at once, and ask for the answer."""
         try:
-            self.structure, self.trouble = resolve(self.session), ""
+            self.structure, trouble = resolve(self.session), ""
         except (SessionError, PhysicsError) as error:
-            self.structure, self.trouble = None, str(error)
+            self.structure, trouble = None, str(error)
+        self._take_trouble(trouble)
         self.cursor = moved(self.cursor, self.rows, 0, 0)
         self.show_form()
         self.compute()
@@ -153,10 +154,16 @@ class Bench(App[int], inherit_bindings=False):
         if outcome.task is not self.asked:
             return
         self.asked = None
-        self.trouble = outcome.trouble
+        self._take_trouble(outcome.trouble)
         if outcome.study is not None:
             self.study, self.reading = outcome.study, outcome.reading
         self.show_answer()
+
+    def _take_trouble(self, trouble: str) -> None:
+        """Say why a design does not compute, and say no more once it does again."""
+        if trouble != self.trouble:
+            self.trouble = trouble
+            self.say(HINT)
 
     def _deliver(self, outcome: Outcome) -> None:
         # Called in the solver's thread; posting is what a thread may do.
@@ -252,6 +259,7 @@ class Bench(App[int], inherit_bindings=False):
         width, height = event.size
         self.set_class(width >= WIDE_FROM and height >= WIDE_HEIGHT, "wide")
         self.set_class(height >= TALL_FROM, "tall")
+        self.set_class(height < SHORT_BELOW, "short")
         self.set_class(width < SMALLEST[0] or height < SMALLEST[1], "small")
         if self._resizing is not None:
             self._resizing.stop()
