@@ -22,7 +22,7 @@ from physics.errors import EnergyError
 from physics.field import Profile
 from physics.leaving import STOPS, Leaving, leaving_states
 from physics.outgoing import Sheet, mismatch, states_below
-from physics.rootfinding import Rectangle, zeros_in
+from physics.rootfinding import MOST_POINTS, Rectangle, zeros_in
 from physics.sectors import Sectors, cut
 
 ComplexArray = NDArray[np.complex128]
@@ -44,6 +44,11 @@ MIXING_EV = 1e-15
 one state that is taken for the other."""
 LEVELS_AT_ONCE = 4_000_000
 """Matrix elements held at once while states are computed."""
+LEVEL_WORK = 8_000_000
+"""Levels times sectors that are computed, about a minute's work; beyond, a narrower window is asked
+for."""
+CONTOUR_WORK = 400_000_000
+"""Points of a contour times sectors from which the proof is given up."""
 WINDOW_LIMIT_EV = 200.0
 THRESHOLD_EV = 1e-11
 """The contour stays this far from the ends of a strip, where a contact's edge may branch."""
@@ -128,7 +133,8 @@ def find_levels(
     Raises
     ------
     EnergyError
-        The window is empty, or beyond `WINDOW_LIMIT_EV`, or the width limit is not positive.
+        The window is empty, or beyond `WINDOW_LIMIT_EV`, or the width limit is not positive, or
+        more levels lie in it than can be computed in reasonable time.
     StructureError
         The stack is too thick for these energies.
     """
@@ -187,7 +193,10 @@ def _find_poles(profile: Profile, low: float, high: float, max_width_eV: float) 
     starts = closed_stack_energies(profile, sectors, sheet, wide, COARSE)
     box = Rectangle(low + THRESHOLD_EV, high - THRESHOLD_EV, -depth, height)
     zeros = zeros_in(
-        lambda energy: mismatch(profile, sectors, sheet, energy), box, starts.astype(np.complex128)
+        lambda energy: mismatch(profile, sectors, sheet, energy),
+        box,
+        starts.astype(np.complex128),
+        most_points=min(MOST_POINTS, CONTOUR_WORK // sectors.count),
     )
     inside = Rectangle(low, high, -np.inf, REAL_AXIS_EV).holds(zeros.points)
     missing = 0 if zeros.counted < 0 else zeros.counted - int(box.holds(zeros.points).sum())
@@ -203,6 +212,7 @@ def closed_stack_energies(
     once, until they are ``width_eV`` wide or as narrow as a double allows.
     """
     first, last = states_below(profile, sectors, sheet, np.array(window))
+    _require_feasible(int(last - first), sectors.count)
     rank = np.arange(first, last)
     lower, upper = (np.full(rank.size, end) for end in window)
     share = np.linspace(0.0, 1.0, SECTION + 1)[1:-1]
@@ -218,6 +228,14 @@ def closed_stack_energies(
             break
     middle: FloatArray = 0.5 * (lower + upper)
     return middle
+
+
+def _require_feasible(levels: int, sectors: int) -> None:
+    if levels * sectors > LEVEL_WORK:
+        raise EnergyError(
+            f"about {levels} levels in a stack of {sectors} sectors take too long; "
+            f"narrow the window to some {max(1, LEVEL_WORK // sectors)} levels"
+        )
 
 
 def _describe(profile: Profile, strip: _Strip) -> list[Level]:

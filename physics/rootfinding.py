@@ -35,7 +35,7 @@ FIRST_STEPS = 16
 REFINEMENTS = 40
 LOST = 1e-13
 """A value below this on the contour is rounding: the function's phase is not known there."""
-MAX_CONTOUR_POINTS = 200_000
+MOST_POINTS = 200_000
 MOMENTS_AT_ONCE = 3
 """Zeros taken from the moments of one rectangle; more, and it is halved first."""
 MAX_DEPTH = 24
@@ -103,7 +103,9 @@ class Contour:
     resolved: bool
 
 
-def zeros_in(function: Function, box: Rectangle, starts: ComplexArray) -> Zeros:
+def zeros_in(
+    function: Function, box: Rectangle, starts: ComplexArray, most_points: int = MOST_POINTS
+) -> Zeros:
     """Find every zero in a rectangle.
 
     Parameters
@@ -114,9 +116,11 @@ def zeros_in(function: Function, box: Rectangle, starts: ComplexArray) -> Zeros:
         Where the zeros are wanted.
     starts : ndarray, shape (N,)
         Guesses; they decide how soon the search ends, not what it finds.
+    most_points : int
+        Points of one contour from which the proof is given up rather than waited for.
     """
     known = distinct(polish(function, starts, np.empty(0, dtype=np.complex128), box.spread()))
-    known, missing = _search(function, box, known, 0)
+    known, missing = _search(function, box, known, 0, most_points)
     inside = int(box.holds(known).sum())
     if missing is None:
         return Zeros(known, -1, proved=False)
@@ -124,10 +128,10 @@ def zeros_in(function: Function, box: Rectangle, starts: ComplexArray) -> Zeros:
 
 
 def _search(
-    function: Function, box: Rectangle, known: ComplexArray, depth: int
+    function: Function, box: Rectangle, known: ComplexArray, depth: int, most_points: int
 ) -> tuple[ComplexArray, int | None]:
     """Complete the known zeros inside a box; also say how many are still missing."""
-    contour = walk(function, box, known)
+    contour = walk(function, box, known, most_points)
     if not contour.resolved:
         return known, None
     missing = winding(contour)
@@ -137,11 +141,11 @@ def _search(
         guesses = from_moments(contour, missing)
         more = distinct(np.append(known, polish(function, guesses, known, box.spread())))
         if box.holds(more).sum() - box.holds(known).sum() == missing:
-            return _search(function, box, more, MAX_DEPTH + 1)
+            return _search(function, box, more, MAX_DEPTH + 1, most_points)
         known = more
     total = 0
     for half in box.halves():
-        known, left_over = _search(function, half, known, depth + 1)
+        known, left_over = _search(function, half, known, depth + 1, most_points)
         if left_over is None:
             return known, None
         total += left_over
@@ -201,7 +205,9 @@ def distinct(points: ComplexArray) -> ComplexArray:
     return np.array(kept, dtype=np.complex128)
 
 
-def walk(function: Function, box: Rectangle, known: ComplexArray) -> Contour:
+def walk(
+    function: Function, box: Rectangle, known: ComplexArray, most_points: int = MOST_POINTS
+) -> Contour:
     """Go round a rectangle counterclockwise, refining until every step is resolved."""
     corners = [
         complex(box.left, box.bottom),
@@ -215,7 +221,7 @@ def walk(function: Function, box: Rectangle, known: ComplexArray) -> Contour:
     )
     phase, slope = _deflated(function, point, known)
     for _ in range(REFINEMENTS):
-        if not np.isfinite(slope).all() or point.size > MAX_CONTOUR_POINTS:
+        if not np.isfinite(slope).all() or point.size > most_points:
             break
         step = np.append(point[1:], point[0]) - point
         log_step, coarse = _steps(step, phase, slope)

@@ -69,6 +69,7 @@ class Bench(App[int], inherit_bindings=False):
         self.cursor = Cursor()
         self.hand = Hand()
         self.structure: Structure | None = None
+        self.rows: list[Row] = rows_of(document.session, None)
         self.study: Study | None = None
         self.reading: Reading | None = None
         self.trouble = ""
@@ -110,11 +111,6 @@ class Bench(App[int], inherit_bindings=False):
         return self.document.session
 
     @property
-    def rows(self) -> list[Row]:
-        """The form's rows."""
-        return rows_of(self.session, self.structure)
-
-    @property
     def field(self) -> Field:
         """The field at the form's cursor."""
         return field_at(self.cursor, self.rows)
@@ -137,6 +133,7 @@ class Bench(App[int], inherit_bindings=False):
         except (SessionError, PhysicsError) as error:
             self.structure, trouble = None, str(error)
         self._take_trouble(trouble)
+        self.rows = rows_of(self.session, self.structure)
         self.cursor = moved(self.cursor, self.rows, 0, 0)
         self.show_form()
         self.compute()
