@@ -11,6 +11,7 @@
 
 from __future__ import annotations
 
+import contextlib
 import os
 import sys
 from collections.abc import Callable
@@ -27,14 +28,18 @@ class CallError(Exception):
 
 def say(message: str) -> None:
     """Tell the user something that is not a result."""
-    print(f"winze: {printable(message)}", file=sys.stderr)  # noqa: T201
+    if sys.stderr is None:  # closed by the caller; print would take standard output instead
+        return
+    with contextlib.suppress(OSError):  # nobody listens: no reason to lose the result
+        print(f"winze: {printable(message)}", file=sys.stderr)  # noqa: T201
 
 
 def guarded(call: Callable[[], int]) -> int:
     """Run a command; turn what goes wrong into a line on standard error and a status."""
     try:
         status = call()
-        sys.stdout.flush()
+        if sys.stdout is not None:
+            sys.stdout.flush()
     except BrokenPipeError:
         status = _reader_left()
     except (SessionError, CallError, PhysicsError, OSError, MemoryError) as error:

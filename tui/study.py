@@ -85,7 +85,7 @@ def set_scene(request: Request, watch: Callable[[], None] = go_on) -> Scene:
     view = request.session.view
     start = _first(request.from_eV, view.from_eV, low)
     stop = _first(request.to_eV, view.to_eV, high)
-    if not start < stop:
+    if not start <= stop:  # one energy is a window for T, though not for levels
         raise EnergyError(
             f"the energy window from {start:g} to {stop:g} eV is empty; "
             f"the band edges reach from {low:g} to {high:g} eV"

@@ -1,98 +1,44 @@
-"""The command ``winze``: which of its parts is meant."""
+"""The command ``winze``: so light that an interrupt is answered from the first moment on."""
 
 from __future__ import annotations
 
-import argparse
+import contextlib
+import signal
 import sys
-from collections.abc import Sequence
+from collections.abc import Iterator, Sequence
 
-from tui.command import example, levels, profile, report, spectrum
-from tui.command.options import NUMBERS, locate
-from tui.command.workbench import open_workbench
-from tui.diagnostics import WRONG, guarded
-from tui.session.refusal import SessionError
-
-VERSION = "0.1.0"
-COMMANDS = (levels, spectrum, profile, report, example)
-DESCRIPTION = """\
-Design layered tunnelling structures: where the levels are, how long they live,
-what gets through.
-
-  winze                       open the workbench on the demo design
-  winze FILE                  open the workbench on a session text
-  winze COMMAND FILE ...      answer on standard output and leave
-"""
-EPILOG = """\
-examples:
-  winze example -o diode.toml
-  winze diode.toml
-  winze levels diode.toml --bias 0.12
-  winze spectrum diode.toml --from 0 --to 0.4 --points 2000 > t.csv
-  winze profile diode.toml --level 2 --json | jq .norm
-  sed 's/= 10$/= 11/' diode.toml | winze report -
-
-exit status: 0 done, 1 a check failed, 2 wrong input or call,
-3 stated accuracy not reached (what there is, is printed), 130 interrupted
-"""
+from tui.diagnostics import guarded
 
 
 def main(argv: Sequence[str] | None = None) -> int:
     """Run winze with the given arguments, or the process's own."""
-    arguments = list(sys.argv[1:] if argv is None else argv)
-    for stream in (sys.stdout, sys.stderr):
-        # A locale without the characters of a title must not stop a result.
-        if hasattr(stream, "reconfigure"):
-            stream.reconfigure(errors="backslashreplace")
-    if not arguments or (len(arguments) == 1 and _names_a_file(arguments[0])):
-        return guarded(lambda: open_workbench(arguments[0] if arguments else None))
-    return _command(arguments)
-
-
-def parser() -> argparse.ArgumentParser:
-    """Build the parser of all commands."""
-    top = argparse.ArgumentParser(
-        prog="winze",
-        description=DESCRIPTION,
-        epilog=EPILOG,
-        formatter_class=argparse.RawDescriptionHelpFormatter,
-    )
-    top.add_argument("--version", action="version", version=f"winze {VERSION}")
-    commands = top.add_subparsers(dest="command", metavar="COMMAND", required=True)
-    for command in COMMANDS:
-        command.add(commands)
-    return top
-
-
-def _command(arguments: list[str]) -> int:
-    try:
-        options = parser().parse_args(_joined(arguments))
-    except SystemExit as leaving:  # argparse has said why
-        return leaving.code if isinstance(leaving.code, int) else WRONG
 
     def run() -> int:
-        try:
-            status: int = options.run(options)
-        except SessionError as error:
-            raise locate(options, error) from error
-        return status
+        with _uninterrupted():
+            from tui.command.calls import answer
 
-    return guarded(run)
+        return answer(list(sys.argv[1:] if argv is None else argv))
 
-
-def _names_a_file(argument: str) -> bool:
-    names = {command.__name__.rpartition(".")[2] for command in COMMANDS}
-    return not argument.startswith("-") and argument not in names
+    status = guarded(run)
+    if argv is None:  # all is said; an interrupt now would only spoil the interpreter's exit
+        signal.signal(signal.SIGINT, signal.SIG_IGN)
+    return status
 
 
-def _joined(arguments: list[str]) -> list[str]:
-    """Join an option and a negative number: argparse takes ``-1e-3`` for an option."""
-    joined: list[str] = []
-    for argument in arguments:
-        if joined and joined[-1] in NUMBERS and argument.startswith("-"):
-            joined[-1] += f"={argument}"
-        else:
-            joined.append(argument)
-    return joined
+@contextlib.contextmanager
+def _uninterrupted() -> Iterator[None]:
+    """Hold an interrupt back while modules are loaded, where half a second does no harm.
+
+    In the middle of an import it would be lost or end in another error now and then.
+    """
+    if not hasattr(signal, "pthread_sigmask"):
+        yield
+        return
+    before = signal.pthread_sigmask(signal.SIG_BLOCK, {signal.SIGINT})
+    try:
+        yield
+    finally:
+        signal.pthread_sigmask(signal.SIG_SETMASK, before)
 
 
 if __name__ == "__main__":

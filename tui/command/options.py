@@ -11,7 +11,7 @@ from pathlib import Path
 
 from physics import ranges
 from physics.ranges import Range
-from tui.diagnostics import DONE, INACCURATE, say
+from tui.diagnostics import DONE, INACCURATE, CallError, say
 from tui.report.objects import Object, document
 from tui.session import tables
 from tui.session.model import Session
@@ -114,7 +114,14 @@ def read(file: str) -> tuple[str, Session]:
     """Read a session, text and meaning, from a file or from standard input."""
     if file != "-":
         return load(Path(file))
-    text = decode(sys.stdin.buffer.read(MAX_BYTES + 1), STANDARD_INPUT)
+    if sys.stdin is None:
+        raise CallError("standard input is closed; name a file instead of -")
+    try:
+        data = sys.stdin.buffer.read(MAX_BYTES + 1)
+    except OSError as error:
+        reason = (error.strerror or str(error)).lower()
+        raise SessionError("", "it cannot be read", reason, source=STANDARD_INPUT) from error
+    text = decode(data, STANDARD_INPUT)
     return text, read_session(text, STANDARD_INPUT)
 
 
@@ -130,10 +137,12 @@ def locate(options: Namespace, error: SessionError) -> SessionError:
 
 def put(options: Namespace, text: str) -> None:
     """Write a result to where the call wants it."""
-    if options.output in (None, "-"):
-        sys.stdout.write(text)
-    else:
+    if options.output not in (None, "-"):
         save(Path(options.output), text)
+    elif sys.stdout is None:
+        raise CallError("standard output is closed; name a file with -o")
+    else:
+        sys.stdout.write(text)
 
 
 def put_either(options: Namespace, session: Session, table: str, content: Object) -> None:

@@ -12,9 +12,9 @@ from dataclasses import dataclass
 from typing import Any
 
 import tomlkit
-from tomlkit.items import AoT
+from tomlkit.items import AoT, Comment, Trivia
 
-from tui.session.lines import KeyPath, headers
+from tui.session.lines import KeyPath, bare, headers
 
 Values = Mapping[str, float | int | str | None]
 
@@ -33,11 +33,13 @@ def split(text: str) -> list[Block]:
     """Cut a text before the comments of every header."""
     lines = text.split("\n")
     lines = [line + "\n" for line in lines[:-1]] + [lines[-1]]
+    structure = bare(text)
+    is_comment = [line.lstrip().startswith("#") for line in structure.split("\n")]
     cuts: list[int] = [0]
     names: list[KeyPath] = [()]
-    for number, name in headers(text):
+    for number, name in headers(structure):
         start = number - 1
-        while start > cuts[-1] and lines[start - 1].lstrip().startswith("#"):
+        while start > cuts[-1] and is_comment[start - 1]:
             start -= 1
         cuts.append(start)
         names.append(name)
@@ -89,9 +91,9 @@ def _change(table: Any, values: Values) -> None:
         is_new = key not in table
         table[key] = value
         if is_new and comments:
-            table[key].comment(comments.pop(0).lstrip("# "))
+            table[key].trivia.comment_ws, table[key].trivia.comment = "  ", comments.pop(0)
     for comment in comments:
-        table.add(tomlkit.comment(comment.lstrip("# ")))
+        table.add(Comment(Trivia(comment=comment)))
 
 
 def _table(document: Any, name: KeyPath) -> Any:

@@ -1,8 +1,8 @@
 """Where in a session text tables and keys stand.
 
-A light scan of TOML's structure, line by line: table headers, keys at the start of a line, and
-strings over several lines, which hide what is in them. Keys inside inline tables are found by the
-line of the table.
+A light scan of TOML's structure, line by line: table headers and keys at the start of a line. What
+stands in comments and in strings over several lines is blanked first, so that it is not taken for
+structure. Keys inside inline tables are found by the line of the table.
 """
 
 from __future__ import annotations
@@ -18,14 +18,21 @@ _DOTTED = rf"{_NAME}(?:\s*\.\s*{_NAME})*"
 _HEADER = re.compile(rf"^\s*(?:\[\s*({_DOTTED})\s*\]|\[\[\s*({_DOTTED})\s*\]\])\s*(?:#.*)?$")
 _KEY = re.compile(rf"^\s*({_DOTTED})\s*=")
 _PART = re.compile(_NAME)
-_QUOTES = ('"""', "'''")
+_HIDING = re.compile(
+    r'''"""(?:\\.|(?!""").)*"{3,5}'''
+    r"""|'''(?:(?!''').)*'{3,5}"""
+    r'''|"(?:\\.|[^"\\\n])*"'''
+    r"""|'[^'\n]*'"""
+    r"""|\#[^\n]*""",
+    re.DOTALL,
+)
 
 
 def line_of(text: str, path: KeyPath) -> int | None:
     """Line of a key or table, counted from 1; of its table where the key itself is not found."""
     places: dict[KeyPath, int] = {}
     table: KeyPath = ()
-    for number, header, key in _scan(text):
+    for number, header, key in _scan(bare(text)):
         if header is not None:
             table = header
             places.setdefault(table, number)
@@ -37,25 +44,34 @@ def line_of(text: str, path: KeyPath) -> int | None:
     return None
 
 
-def headers(text: str) -> list[tuple[int, KeyPath]]:
-    """Line and name of every table header, in order."""
-    return [(number, header) for number, header, _ in _scan(text) if header is not None]
+def headers(bare_text: str) -> list[tuple[int, KeyPath]]:
+    """Line and name of every table header of a `bare` text, in order."""
+    return [(number, header) for number, header, _ in _scan(bare_text) if header is not None]
 
 
-def _scan(text: str) -> Iterator[tuple[int, KeyPath | None, KeyPath]]:
+def bare(text: str) -> str:
+    """Blank what hides in comments and long strings; every line keeps its number."""
+    return _HIDING.sub(_blanked, text)
+
+
+def _blanked(hiding: re.Match[str]) -> str:
+    found = hiding[0]
+    if found.startswith("#"):
+        return "#"
+    if found.startswith(('"""', "'''")):
+        return '""' + "\n" * found.count("\n") + '""'
+    return found
+
+
+def _scan(bare_text: str) -> Iterator[tuple[int, KeyPath | None, KeyPath]]:
     """Yield line, table name (at a header) and key (at a key)."""
     counts: dict[KeyPath, int] = {}
-    quote = ""
-    for number, line in enumerate(text.split("\n"), start=1):
-        if quote:
-            quote = "" if line.count(quote) % 2 else quote
-            continue
+    for number, line in enumerate(bare_text.split("\n"), start=1):
         header, key = _HEADER.match(line), _KEY.match(line)
         if header:
             yield number, _numbered(header, counts), ()
         elif key:
             yield number, None, _parts(key[1])
-        quote = next((q for q in _QUOTES if line.count(q) % 2), "")
 
 
 def _numbered(header: re.Match[str], counts: dict[KeyPath, int]) -> KeyPath:

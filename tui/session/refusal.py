@@ -82,7 +82,10 @@ def shown(value: object) -> str:
         return "true" if value else "false"
     if isinstance(value, float) and not math.isfinite(value):
         return "not a number" if math.isnan(value) else "infinite"
-    text = printable(repr(value) if isinstance(value, str) else str(value))
+    try:
+        text = printable(repr(value) if isinstance(value, str) else str(value))
+    except ValueError:  # Python writes no whole number of thousands of digits
+        return "too long to be shown"
     return text if len(text) <= LONGEST_SHOWN else text[: LONGEST_SHOWN - 3] + "..."
 
 

@@ -14,7 +14,8 @@ def save(path: Path, text: str) -> None:
     """Write a text to a file, all of it or nothing.
 
     The text goes to a temporary file in the same folder, is flushed to the disk, and takes the
-    file's place in one step; a link is followed and the file's permissions are kept.
+    file's place in one step; a link is followed, the file's permissions and owner are kept. A
+    device or a pipe is written to and never replaced.
 
     Raises
     ------
@@ -22,36 +23,50 @@ def save(path: Path, text: str) -> None:
         It could not be written; what was there before is still there.
     """
     try:
+        data = text.encode("utf-8")
         target = path.resolve()
         if target.is_dir():
             raise IsADirectoryError(21, "it is a folder")
-        _replace(target, text.encode("utf-8"))
-    except OSError as error:
-        reason = (error.strerror or type(error).__name__).lower()
-        allowed = f"{reason}; nothing was changed, save it under another name"
-        raise SessionError("", "it cannot be written", allowed, source=str(path)) from error
+        if path.exists() and not path.is_file():
+            path.write_bytes(data)
+        else:
+            _replace(target, data)
     except UnicodeEncodeError as error:
         allowed = "take out the character that UTF-8 cannot hold"
+        raise SessionError("", "it cannot be written", allowed, source=str(path)) from error
+    except (OSError, RuntimeError, ValueError) as error:  # links in a circle; a NUL in the name
+        reason = (getattr(error, "strerror", None) or str(error)).lower()
+        allowed = f"{reason}; nothing was changed, save it under another name"
         raise SessionError("", "it cannot be written", allowed, source=str(path)) from error
 
 
 def _replace(target: Path, data: bytes) -> None:
-    mode = target.stat().st_mode & 0o7777 if target.exists() else None
-    if mode is not None and not os.access(target, os.W_OK):
+    before = target.stat() if target.exists() else None
+    if before is not None and not os.access(target, os.W_OK):
         raise PermissionError(13, "permission denied")
-    handle, temporary = tempfile.mkstemp(prefix=".winze-", dir=target.parent)
+    handle, name = tempfile.mkstemp(prefix=".winze-", dir=target.parent)
+    temporary = Path(name)
     try:
         with os.fdopen(handle, "wb") as file:
             file.write(data)
             file.flush()
             os.fsync(file.fileno())
-        Path(temporary).chmod(_new_mode() if mode is None else mode)
-        Path(temporary).replace(target)
-    except OSError:
-        with contextlib.suppress(FileNotFoundError):
-            Path(temporary).unlink()
-        raise
+        if before is None:
+            temporary.chmod(_new_mode())
+        else:
+            _make_like(temporary, before)
+        temporary.replace(target)
+    finally:  # after an interrupt too
+        temporary.unlink(missing_ok=True)
     _sync_folder(target.parent)
+
+
+def _make_like(temporary: Path, before: os.stat_result) -> None:
+    """Give the new file the old one's owner, where that is allowed, and its permissions."""
+    if os.name == "posix":
+        with contextlib.suppress(PermissionError):
+            os.chown(temporary, before.st_uid, before.st_gid)
+    temporary.chmod(before.st_mode & 0o7777)
 
 
 def _new_mode() -> int:

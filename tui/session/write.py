@@ -6,13 +6,13 @@ value that did not change survive (`blocks`).
 
 from __future__ import annotations
 
-import difflib
 from dataclasses import asdict
 from typing import Any
 
 from tui.session import tables
 from tui.session.lines import KeyPath
 from tui.session.model import LayerEntry, Session
+from tui.session.origin import sources
 from tui.session.read import FORMAT, read_session
 from tui.session.refusal import SessionError
 
@@ -42,17 +42,27 @@ def write_session(session: Session, original_text: str | None = None) -> str:
         The session holds what no session text may say.
     """
     if original_text is not None:
-        text = _rewritten(session, original_text)
-        if _says(text, session):
-            return text
-        # Laid out in a way that blocks cannot follow (inline layers, dotted keys): say it afresh.
-        fresh = "".join(f"{line}\n" for line in _comments(original_text)) + _fresh(session)
-        if _says(fresh, session):
-            return fresh
+        return _kept(session, original_text)
     text = _fresh(session)
     if read_session(text, "the text to be saved") != session:
         raise SessionError("", "the session cannot be said in a session text", "undo the last edit")
     return text
+
+
+def _kept(session: Session, original: str) -> str:
+    """Say a session in its original text, as much of it as can be kept."""
+    from tomlkit.exceptions import TOMLKitError
+
+    is_windows = original.count("\r\n") == original.count("\n")
+    unix = original.replace("\r\n", "\n") if is_windows else original
+    try:
+        text = _rewritten(session, unix)
+    except TOMLKitError:  # it reads a few good texts differently from tomllib
+        text = ""
+    if not _says(text, session):
+        # Laid out in a way that blocks cannot follow (inline layers, dotted keys): say it afresh.
+        text = "".join(f"{line}\n" for line in _comments(unix)) + write_session(session)
+    return text.replace("\n", "\r\n") if is_windows else text
 
 
 def _says(text: str, session: Session) -> bool:
@@ -77,14 +87,15 @@ def _rewritten(session: Session, original: str) -> str:
         if source is not None
         else blocks.Block(("layer",), _table_text(("layer",), _layer(layer)), fresh=True)
         for layer, source in zip(
-            session.layers, _sources(before.layers, session.layers), strict=True
+            session.layers, sources(before.layers, session.layers), strict=True
         )
     ]
     result: list[blocks.Block] = []
     for piece in pieces:
-        if piece.name[:1] == ("layer",):
-            result += layers
-            layers = []
+        if piece.name[:1] == ("layer",):  # one a place, at the last place all that are left
+            count = 1 if piece is not layer_pieces[-1] else len(layers)
+            result += layers[:count]
+            layers = layers[count:]
         elif piece.name not in old or piece.name in new:
             result.append(blocks.changed(piece, old.get(piece.name, {}), new.get(piece.name, {})))
     written = {piece.name for piece in pieces}
@@ -94,29 +105,6 @@ def _rewritten(session: Session, original: str) -> str:
         if name not in written and values != old.get(name)
     ]
     return blocks.join(result)
-
-
-def _sources(before: tuple[LayerEntry, ...], after: tuple[LayerEntry, ...]) -> list[int | None]:
-    """Find the old layer each new one came from: kept, edited or moved; None for a new one."""
-    sources: list[int | None] = [None] * len(after)
-    matcher = difflib.SequenceMatcher(None, before, after, autojunk=False)
-    edited: list[tuple[int, int]] = []
-    for tag, i1, i2, j1, j2 in matcher.get_opcodes():
-        if tag == "equal":
-            sources[j1:j2] = range(i1, i2)
-        elif tag == "replace":
-            edited += zip(range(i1, i2), range(j1, j2), strict=False)
-    free = set(range(len(before))) - {source for source in sources if source is not None}
-    for new, layer in enumerate(after):
-        moved = next((old for old in sorted(free) if before[old] == layer), None)
-        if sources[new] is None and moved is not None:
-            sources[new] = moved
-            free.discard(moved)
-    for old, new in edited:
-        if sources[new] is None and old in free:
-            sources[new] = old
-            free.discard(old)
-    return sources
 
 
 def _tables(session: Session) -> dict[KeyPath, Values]:
