@@ -158,7 +158,7 @@ def pole(stack: Stack, guess: complex) -> mp.mpc:
     condition = only_leaves(stack, guess.real)
     start = mp.mpc(guess)
     near = (start, start * (1 + mp.mpf(10) ** -9))
-    return mp.findroot(condition, near, tol=mp.mpf(10) ** (10 - mp.mp.dps))
+    return mp.findroot(condition, near, tol=mp.mpf(10) ** (12 - mp.mp.dps))
 
 
 def only_leaves(stack: Stack, energy: float) -> Callable[[mp.mpc], mp.mpc]:

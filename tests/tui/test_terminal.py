@@ -179,3 +179,22 @@ def test_resizing(terminals: list[Terminal]) -> None:
     fcntl.ioctl(t.end, termios.TIOCSWINSZ, struct.pack("HHHH", 20, 58, 0, 0))
     os.kill(t.pid, signal.SIGWINCH)
     t.until("winze needs")
+
+
+def test_redrawn_after_the_shell_had_the_screen(terminals: list[Terminal]) -> None:
+    t = Terminal(80, 24, TERM="xterm-256color", **UTF8)
+    terminals.append(t)
+    t.until("proved complete")
+    t.read(0.5)
+    before = t.screen.display[:]
+    t.screen.reset()
+    t.press("\x0c")
+    t.read(0.5)
+    assert t.screen.display == before
+    os.kill(t.pid, signal.SIGTSTP)
+    t.read(0.5)
+    assert LEAVES_SCREEN in t.raw
+    t.screen.reset()
+    os.kill(t.pid, signal.SIGCONT)
+    t.read(0.8)
+    assert t.screen.display == before

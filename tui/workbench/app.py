@@ -34,6 +34,8 @@ class Workbench(FormActions, EnergyActions, FileActions):
         # What is loaded by now stays: looking through it again and again would cost frames.
         gc.collect()
         gc.freeze()
+        # Back from the shell, which has drawn over everything.
+        self.app_resume_signal.subscribe(self, lambda _: self.action_redraw())
         loop = asyncio.get_running_loop()
         for number in (signal.SIGTERM, signal.SIGHUP):
             loop.add_signal_handler(number, self._end, number)

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from tui.reading import Reading
 from tui.session.tables import ENERGY_EV
 from tui.workbench.bench import Bench
 from tui.workbench.solver import Hand
@@ -24,7 +25,7 @@ class EnergyActions(Bench):
         if self.reading.number is not None and self.hand.energy_eV is None:
             wanted = (self.hand.number or self.reading.number) + direction
         else:
-            here = self.hand.energy_eV or self.reading.energy_eV
+            here = self._here(self.reading)
             below = sum(level.energy_eV < here for level in levels)
             wanted = below + 1 if direction > 0 else below
         self._take(Hand(number=min(max(wanted, 1), len(levels))))
@@ -59,9 +60,13 @@ class EnergyActions(Bench):
 
         base = self.query_one("#figure", FigurePane).base
         step = base.energy_step_eV() if base is not None else 0.02 * (scene.to_eV - scene.from_eV)
-        here = self.hand.energy_eV if self.hand.energy_eV is not None else self.reading.energy_eV
+        here = self._here(self.reading)
         energy = min(max(here + rows * step, scene.from_eV), scene.to_eV)
         self._take(Hand(energy_eV=float(f"{energy:.9g}")))
+
+    def _here(self, reading: Reading) -> float:
+        """Give the energy asked for last, which may not be read off yet."""
+        return reading.energy_eV if self.hand.energy_eV is None else self.hand.energy_eV
 
     def _take(self, hand: Hand) -> None:
         self.hand = hand

@@ -9,6 +9,7 @@ from tui.workbench import document as documents
 from tui.workbench.bench import Bench, wrapped
 from tui.workbench.document import Document
 from tui.workbench.keys import help_lines
+from tui.workbench.panes import Pane
 from tui.workbench.screens import Reader
 
 
@@ -76,8 +77,10 @@ class FileActions(Bench):
 
     def action_redraw(self) -> None:
         """Draw the whole screen anew."""
-        self.refresh(repaint=True, layout=True)
         self.show_all()
+        for pane in self.query(Pane):
+            pane.refresh()
+        self.screen.refresh(layout=True)
 
     def _history(self, moved: bool, otherwise: str) -> None:
         if moved:
