@@ -14,7 +14,7 @@ The dwell time is the probability in the stack over the incident flux (F. T. Smi
 from __future__ import annotations
 
 import math
-from dataclasses import dataclass
+from dataclasses import dataclass, fields
 
 import numpy as np
 from numpy.typing import NDArray
@@ -26,6 +26,8 @@ from physics.sectors import Sectors, cut, matrices_and_slopes
 
 FloatArray = NDArray[np.float64]
 
+ENERGIES_AT_ONCE = 65_536
+"""Energies carried through the stack at once: millions would fill the memory, not go faster."""
 NODE_GUARD = 1e-20
 """Relative shift that keeps a division by an exact node finite, far below rounding."""
 
@@ -82,7 +84,14 @@ def scatter(profile: Profile, energy_eV: FloatArray) -> Scattering:
     """
     energy = np.atleast_1d(np.asarray(energy_eV, dtype=np.float64))
     sectors = cut(profile, float(energy.min()), float(energy.max()))
-    return scatter_through(profile, sectors, energy)
+    parts = [
+        scatter_through(profile, sectors, energy[first : first + ENERGIES_AT_ONCE])
+        for first in range(0, energy.size, ENERGIES_AT_ONCE)
+    ]
+    if len(parts) == 1:
+        return parts[0]
+    names = [field.name for field in fields(Scattering)]
+    return Scattering(*(np.concatenate([getattr(p, name) for p in parts]) for name in names))
 
 
 def scatter_through(profile: Profile, sectors: Sectors, energy_eV: FloatArray) -> Scattering:

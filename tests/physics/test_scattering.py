@@ -10,6 +10,7 @@ import numpy as np
 import pytest
 from hypothesis import given, settings
 from hypothesis import strategies as st
+from scipy.special import airy
 
 from physics.constants import HBAR2_OVER_2M0_EV_NM2 as C
 from physics.constants import HBAR_EV_S
@@ -228,3 +229,33 @@ def test_a_thousand_layers() -> None:
         assert float(result.log10_transmission[n]) == pytest.approx(
             float(mp.log10(mp.re(t))), abs=1e-9
         )
+
+
+def test_triangular_barrier() -> None:
+    """A barrier falling linearly to zero, by Airy functions (scipy; R. H. Fowler and L. Nordheim).
+
+    Proc. R. Soc. A 119, 173 (1928) give the matching; psi and psi'/m are continuous.
+    """
+    height, d, mass, energy = 0.4, 6.0, 0.067, 0.13
+    force = -height / d
+    beta = -float(np.cbrt(-force * mass / C))
+    z = beta * (np.array([height, 0.0]) - energy) / force
+    ai, aip, bi, bip = airy(z)
+    k = math.sqrt(mass * energy / C)
+    # psi = p Ai + q Bi inside; transmitted wave 1 at x = d: psi = 1, psi' = i k.
+    p, q = np.linalg.solve([[ai[1], bi[1]], [beta * aip[1], beta * bip[1]]], [1.0, 1j * k])
+    psi, slope = p * ai[0] + q * bi[0], beta * (p * aip[0] + q * bip[0])
+    incident = 0.5 * (psi + slope / (1j * k))
+    structure = stack([(d, height, mass, 0.0)])
+    result = scatter(uniform_field(structure), np.array([energy]))
+    assert float(result.transmission[0]) == pytest.approx(1.0 / abs(incident) ** 2, rel=1e-11)
+
+
+def test_many_energies_are_the_same_as_few() -> None:
+    profile = uniform_field(two_barriers(), 0.1)
+    energy = np.linspace(0.001, 0.3, 140_000)
+    whole = scatter(profile, energy)
+    some = scatter(profile, np.concatenate([energy[:1], energy[65_000:66_000], energy[-1:]]))
+    picked = np.concatenate([[0], np.arange(65_000, 66_000), [energy.size - 1]])
+    assert whole.transmission[picked] == pytest.approx(some.transmission, rel=1e-12)
+    assert whole.dwell_time_s[picked] == pytest.approx(some.dwell_time_s, rel=1e-12)
