@@ -7,7 +7,7 @@ height is unknown, and the material is refused rather than guessed.
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from functools import lru_cache
 
 from physics.errors import MaterialError, PhysicsError, StructureError
@@ -22,20 +22,6 @@ AGREEMENT = 1e-6
 """Relative difference up to which two ways of saying one thing agree."""
 GROWTH_TEMPERATURE_K = 300.0
 """Monolayers are counted at room temperature, whatever the conditions are."""
-
-
-@dataclass(frozen=True)
-class Medium:
-    """What a contact or one face of a layer is made of, on the session's scale."""
-
-    name: str
-    edge_eV: float
-    mass: float
-    permittivity: float | None = None
-    lattice_nm: float | None = None
-    monolayer_nm: float | None = None
-    x_edge_eV: float | None = None
-    l_edge_eV: float | None = None
 
 
 @dataclass(frozen=True)
@@ -78,12 +64,16 @@ def scale_of(session: Session) -> Scale:
     return Scale(own, temperature, zero)
 
 
-def medium_of(name: str, scale: Scale, path: KeyPath) -> Medium:
+def medium_of(name: str, scale: Scale, path: KeyPath) -> Material:
     """Look a material up: the user's own first, then the catalogue's."""
     if name in scale.own:
         entry = scale.own[name]
-        return Medium(
-            printable(name), entry.edge_eV, entry.mass, entry.permittivity, None, entry.monolayer_nm
+        return Material(
+            name=printable(name),
+            edge_eV=entry.edge_eV,
+            mass=entry.mass,
+            permittivity=entry.permittivity,
+            monolayer_nm=entry.monolayer_nm,
         )
     known = _catalogue(name, scale.temperature_K, path)
     if scale.zero_eV is None:
@@ -92,20 +82,21 @@ def medium_of(name: str, scale: Scale, path: KeyPath) -> Medium:
             "or give edge_eV and mass here"
         )
         raise SessionError(_said(path), f"is {shown(name)}", allowed, path=path)
-    zero = scale.zero_eV
-    return Medium(
-        name=known.name,
-        edge_eV=known.edge_eV - zero,
-        mass=known.mass,
-        permittivity=known.permittivity,
-        lattice_nm=known.lattice_nm,
-        monolayer_nm=known.monolayer_nm,
-        x_edge_eV=None if known.x_edge_eV is None else known.x_edge_eV - zero,
-        l_edge_eV=None if known.l_edge_eV is None else known.l_edge_eV - zero,
+    return _lowered(known, scale.zero_eV)
+
+
+def _lowered(known: Material, zero_eV: float) -> Material:
+    """Bring a catalogue material to the session's scale."""
+    x, low = known.x_edge_eV, known.l_edge_eV
+    return replace(
+        known,
+        edge_eV=known.edge_eV - zero_eV,
+        x_edge_eV=None if x is None else x - zero_eV,
+        l_edge_eV=None if low is None else low - zero_eV,
     )
 
 
-def thickness_nm(entry: LayerEntry, medium: Medium, path: KeyPath) -> float:
+def thickness_nm(entry: LayerEntry, medium: Material, path: KeyPath) -> float:
     """Thickness of a layer in nm, however it is stated."""
     if entry.thickness_ml is None:
         if entry.thickness_nm is None:
@@ -173,12 +164,12 @@ def _contact(entry: ContactEntry, side: str, scale: Scale, temperature_K: float)
 
 def _medium(
     name: str | None, edge_eV: float | None, mass: float | None, scale: Scale, path: KeyPath
-) -> Medium:
+) -> Material:
     if name is None:
         if edge_eV is None or mass is None:
             allowed = "give a material, or edge_eV with mass"
             raise SessionError(_said(path), "has no material", allowed, path=path)
-        return Medium("", edge_eV, mass)
+        return Material("", edge_eV, mass)
     medium = medium_of(name, scale, (*path, "material"))
     _require_agreement(edge_eV, medium.edge_eV, (*path, "edge_eV"), "material")
     _require_agreement(mass, medium.mass, (*path, "mass"), "material")
