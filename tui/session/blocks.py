@@ -63,20 +63,36 @@ def join(blocks: list[Block]) -> str:
     return text
 
 
+def difference(before: Values, after: Values) -> Values:
+    """Give the values that changed; None for a key that goes."""
+    return {key: value for key, value in after.items() if before.get(key) != value}
+
+
 def changed(block: Block, before: Values, after: Values) -> Block:
     """Rewrite a block so that it says other values; equal ones are not touched.
 
     ``None`` stands for a key that is not there. The comment of a key that goes is kept: it moves to
     the first key that comes, or to a line of its own.
     """
-    keys = [key for key in after if before.get(key) != after[key]]
-    if not keys:
+    values = difference(before, after)
+    if not values:
         return block
     body = block.text.rstrip("\n")
     tail = block.text[len(body) :] or "\n"
     document = tomlkit.parse(body + "\n")
-    _change(_table(document, block.name), {key: after[key] for key in keys})
+    _change(_table(document, block.name), values)
     return Block(block.name, tomlkit.dumps(document).rstrip("\n") + tail, block.fresh)
+
+
+def changed_in_place(text: str, changes: Mapping[KeyPath, Values]) -> str:
+    """Rewrite a text whose tables are no blocks: dotted keys, inline tables, a list of layers."""
+    document = tomlkit.parse(text)
+    for name, values in changes.items():
+        here: Any = document
+        for part in name:
+            here = here[part]
+        _change(here, values)
+    return tomlkit.dumps(document)
 
 
 def _change(table: Any, values: Values) -> None:

@@ -54,6 +54,12 @@ def bare(text: str) -> str:
     return _HIDING.sub(_blanked, text)
 
 
+def comments(text: str) -> list[str]:
+    """Collect all comments, in order."""
+    found = (match[0].strip() for match in _HIDING.finditer(text))
+    return [hiding for hiding in found if hiding.startswith("#")]
+
+
 def _blanked(hiding: re.Match[str]) -> str:
     found = hiding[0]
     if found.startswith("#"):

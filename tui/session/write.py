@@ -6,11 +6,12 @@ value that did not change survive (`blocks`).
 
 from __future__ import annotations
 
+import tomllib
 from dataclasses import asdict
 from typing import Any
 
 from tui.session import tables
-from tui.session.lines import KeyPath
+from tui.session.lines import KeyPath, comments
 from tui.session.model import LayerEntry, Session
 from tui.session.origin import sources
 from tui.session.read import FORMAT, read_session
@@ -55,13 +56,16 @@ def _kept(session: Session, original: str) -> str:
 
     is_windows = original.count("\r\n") == original.count("\n")
     unix = original.replace("\r\n", "\n") if is_windows else original
-    try:
-        text = _rewritten(session, unix)
-    except TOMLKitError:  # it reads a few good texts differently from tomllib
-        text = ""
-    if not _says(text, session):
-        # Laid out in a way that blocks cannot follow (inline layers, dotted keys): say it afresh.
-        text = "".join(f"{line}\n" for line in _comments(unix)) + write_session(session)
+    text = ""
+    for way in (_rewritten, _changed_in_place):
+        try:
+            text = way(session, unix)
+        except TOMLKitError:  # it reads a few good texts differently from tomllib
+            continue
+        if _says(text, session):
+            break
+    else:  # layers come, go or move in a list of inline tables: say it all afresh
+        text = "".join(f"{line}\n" for line in comments(unix)) + write_session(session)
     return text.replace("\n", "\r\n") if is_windows else text
 
 
@@ -105,6 +109,26 @@ def _rewritten(session: Session, original: str) -> str:
         if name not in written and values != old.get(name)
     ]
     return blocks.join(result)
+
+
+def _changed_in_place(session: Session, original: str) -> str:
+    """Change values where they stand; tables that come are put at the end."""
+    from tui.session import blocks
+
+    before = read_session(original, "the original text")
+    old, new = _tables(before), _tables(session)
+    for at, (was, now) in enumerate(zip(before.layers, session.layers, strict=False)):
+        old["layer", at], new["layer", at] = _layer(was), _layer(now)
+    there = tomllib.loads(original)
+    changes: dict[KeyPath, blocks.Values] = {}
+    fresh = []
+    for name, values in new.items():
+        change = blocks.difference(old.get(name, {}), values)
+        if change and name in old and (not name or name[0] in there):
+            changes[name] = change
+        elif change:
+            fresh.append(_table_text(name, values))
+    return "\n".join([blocks.changed_in_place(original, changes), *fresh])
 
 
 def _tables(session: Session) -> dict[KeyPath, Values]:
@@ -170,8 +194,3 @@ def _quoted(text: str) -> str:
 def _name(part: str) -> str:
     bare = part and all(c.isascii() and (c.isalnum() or c in "_-") for c in part)
     return part if bare else _quoted(part)
-
-
-def _comments(text: str) -> list[str]:
-    """Collect what stands behind a # on every line; rather too much than too little."""
-    return [line[line.index("#") :].strip() for line in text.split("\n") if "#" in line]

@@ -1,0 +1,85 @@
+"""The core request: its window, its defaults, its refusals."""
+
+from __future__ import annotations
+
+from dataclasses import replace
+
+import pytest
+
+from physics.errors import EnergyError
+from physics.field import uniform_field
+from tui.session.demo import demo_text
+from tui.session.model import ContactEntry, LayerEntry, Session, View
+from tui.session.read import read_session
+from tui.session.resolve import resolve
+from tui.study import Request, energy_window, set_scene, solve
+
+DEMO = read_session(demo_text(), "demo")
+PLAIN = ContactEntry(edge_eV=0.0, mass=0.067)
+
+
+def stack(*edges_eV: float, right_eV: float = 0.0) -> Session:
+    layers = tuple(LayerEntry(edge_eV=edge, mass=0.09, thickness_nm=2.0) for edge in edges_eV)
+    return Session(left=PLAIN, layers=layers, right=replace(PLAIN, edge_eV=right_eV))
+
+
+def window(session: Session) -> tuple[float, float]:
+    return energy_window(uniform_field(resolve(session), session.conditions.bias_V))
+
+
+def test_the_window_reaches_from_the_lowest_to_the_highest_edge() -> None:
+    assert window(stack(0.3, -0.1, 0.25)) == (-0.1, 0.3)
+    assert window(stack(0.1, right_eV=0.4)) == (0.0, 0.4)
+
+
+def test_a_flat_stack_has_a_window_all_the_same() -> None:
+    assert window(stack(0.0)) == (0.0, 0.5)
+    low, high = window(stack(5e-4))
+    assert (low, high) == (0.0, pytest.approx(0.5005))
+
+
+def test_bias_moves_the_window() -> None:
+    biased = stack(0.3)
+    biased = replace(biased, conditions=replace(biased.conditions, bias_V=0.2))
+    assert window(biased) == pytest.approx((-0.2, 0.3))
+
+
+def test_the_request_comes_before_the_view_and_the_view_before_the_edges() -> None:
+    session = replace(stack(0.3), view=View(0.05, None, 0.02))
+    scene = set_scene(Request(session))
+    assert (scene.from_eV, scene.to_eV, scene.max_width_eV) == (0.05, 0.3, 0.02)
+    scene = set_scene(Request(session, 0.1, 0.2, 0.01))
+    assert (scene.from_eV, scene.to_eV, scene.max_width_eV) == (0.1, 0.2, 0.01)
+
+
+def test_an_empty_window_is_refused_with_the_edges() -> None:
+    with pytest.raises(EnergyError, match=r"from 0\.4 to 0\.3 eV is empty.*from 0 to 0\.3 eV"):
+        set_scene(Request(stack(0.3), from_eV=0.4))
+
+
+def test_one_energy_is_a_window_for_transmission_but_holds_no_levels() -> None:
+    request = Request(stack(0.3), 0.1, 0.1)
+    assert set_scene(request).from_eV == 0.1
+    with pytest.raises(EnergyError, match="empty"):
+        solve(request)
+
+
+def test_the_answer_hangs_together() -> None:
+    study = solve(Request(DEMO))
+    assert study.reached
+    assert study.levels.counted == len(study.levels.levels) > 0
+    assert (study.levels.from_eV, study.levels.to_eV) == (study.scene.from_eV, study.scene.to_eV)
+    energies = study.spectrum.energy_eV
+    assert (energies[0], energies[-1]) == (study.scene.from_eV, study.scene.to_eV)
+    assert "coherence" in [note.topic for note in study.advice]
+
+
+def test_work_that_is_watched_can_be_ended() -> None:
+    class StaleError(Exception):
+        pass
+
+    def stop() -> None:
+        raise StaleError
+
+    with pytest.raises(StaleError):
+        solve(Request(DEMO), watch=stop)
