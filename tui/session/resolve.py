@@ -193,7 +193,8 @@ def _catalogue(name: str, temperature_K: float, path: KeyPath) -> Material:
     try:
         return _known(name, temperature_K)
     except MaterialError as error:
-        raise _at(path, name, f"{error}; or define [material.NAME]") from error
+        said = str(error).removeprefix(f"material {name!r}: ")  # the refusal has named it already
+        raise _at(path, name, f"{said}; or define [material.NAME]") from error
 
 
 def _at(path: KeyPath, value: object, allowed: str) -> SessionError:
