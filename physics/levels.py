@@ -21,7 +21,7 @@ from physics.constants import HBAR_EV_S
 from physics.errors import EnergyError
 from physics.field import Profile
 from physics.leaving import STOPS, Leaving, leaving_states
-from physics.outgoing import Sheet, mismatch, states_below
+from physics.outgoing import Sheet, closed_stack_energies, mismatch, states_below
 from physics.rootfinding import MOST_POINTS, Rectangle, zeros_in
 from physics.sectors import Sectors, cut
 
@@ -29,8 +29,6 @@ ComplexArray = NDArray[np.complex128]
 FloatArray = NDArray[np.float64]
 
 DEFAULT_MAX_WIDTH_EV = 0.1
-SECTION = 32
-"""Energies tried in each bracket at once while it is narrowed."""
 STRONG = 0.25
 """Share of the largest density from which a wave counts as strong."""
 COARSE, FINE = 1e-7, 1e-16
@@ -44,12 +42,11 @@ MIXING_EV = 1e-15
 one state that is taken for the other."""
 LEVELS_AT_ONCE = 4_000_000
 """Matrix elements held at once while states are computed."""
-LEVEL_WORK = 8_000_000
-"""Levels times sectors that are computed, about a minute's work; beyond, a narrower window is asked
-for."""
 CONTOUR_WORK = 400_000_000
 """Points of a contour times sectors from which the proof is given up."""
 WINDOW_LIMIT_EV = 200.0
+SAME_EV = 1e-13
+"""Energies closer than this are one energy."""
 THRESHOLD_EV = 1e-11
 """The contour stays this far from the ends of a strip, where a contact's edge may branch."""
 HEIGHT = 1.0377
@@ -173,9 +170,12 @@ def _check_window(from_eV: float, to_eV: float, max_width_eV: float) -> None:
 
 
 def _strips(profile: Profile, from_eV: float, to_eV: float) -> list[tuple[float, float]]:
-    edges = sorted({edge for edge in profile.contact_edge_eV if from_eV < edge < to_eV})
-    ends = [from_eV, *edges, to_eV]
-    return list(itertools.pairwise(ends))
+    """Cut a window at the contacts' edges, but for cuts that only rounding sets apart."""
+    edges = sorted(edge for edge in profile.contact_edge_eV if from_eV < edge < to_eV)
+    ends = [from_eV]
+    ends += [edge for edge in edges if to_eV - edge > SAME_EV]
+    kept = [end for n, end in enumerate(ends) if n == 0 or end - ends[n - 1] > SAME_EV]
+    return list(itertools.pairwise([*kept, to_eV]))
 
 
 def _find_poles(profile: Profile, low: float, high: float, max_width_eV: float) -> _Strip:
@@ -191,51 +191,18 @@ def _find_poles(profile: Profile, low: float, high: float, max_width_eV: float) 
     wide = (low - margin, high + margin)
     sectors = cut(profile, *wide, depth_eV=max(depth, height))
     starts = closed_stack_energies(profile, sectors, sheet, wide, COARSE)
-    box = Rectangle(low + THRESHOLD_EV, high - THRESHOLD_EV, -depth, height)
+    inset = min(THRESHOLD_EV, 0.01 * (high - low))
+    box = Rectangle(low + inset, high - inset, -depth, height)
     zeros = zeros_in(
         lambda energy: mismatch(profile, sectors, sheet, energy),
         box,
         starts.astype(np.complex128),
         most_points=min(MOST_POINTS, CONTOUR_WORK // sectors.count),
     )
-    inside = Rectangle(low, high, -np.inf, REAL_AXIS_EV).holds(zeros.points)
+    reach = Rectangle(low - SAME_EV, high + SAME_EV, -np.inf, REAL_AXIS_EV)
+    inside = reach.holds(zeros.points)
     missing = 0 if zeros.counted < 0 else zeros.counted - int(box.holds(zeros.points).sum())
     return _Strip(sheet, zeros.points[inside], max(missing, 0), zeros.proved)
-
-
-def closed_stack_energies(
-    profile: Profile, sectors: Sectors, sheet: Sheet, window: tuple[float, float], width_eV: float
-) -> FloatArray:
-    """Eigenvalues of the closed stack between two energies, shape (N,), by counting nodes.
-
-    The brackets of all eigenvalues are narrowed together, each tried at `SECTION` energies at
-    once, until they are ``width_eV`` wide or as narrow as a double allows.
-    """
-    first, last = states_below(profile, sectors, sheet, np.array(window))
-    _require_feasible(int(last - first), sectors.count)
-    rank = np.arange(first, last)
-    lower, upper = (np.full(rank.size, end) for end in window)
-    share = np.linspace(0.0, 1.0, SECTION + 1)[1:-1]
-    while rank.size and np.any(upper - lower > np.maximum(width_eV, 2.0 * np.spacing(upper))):
-        trial = lower[:, None] + (upper - lower)[:, None] * share
-        count = states_below(profile, sectors, sheet, trial.ravel()).reshape(trial.shape)
-        passed = (count <= rank[:, None]).sum(axis=1)
-        walls = np.concatenate([lower[:, None], trial, upper[:, None]], axis=1)
-        row = np.arange(rank.size)
-        narrowed = walls[row, passed + 1] - walls[row, passed] < upper - lower
-        lower, upper = walls[row, passed], walls[row, passed + 1]
-        if not narrowed.any():
-            break
-    middle: FloatArray = 0.5 * (lower + upper)
-    return middle
-
-
-def _require_feasible(levels: int, sectors: int) -> None:
-    if levels * sectors > LEVEL_WORK:
-        raise EnergyError(
-            f"about {levels} levels in a stack of {sectors} sectors take too long; "
-            f"narrow the window to some {max(1, LEVEL_WORK // sectors)} levels"
-        )
 
 
 def _describe(profile: Profile, strip: _Strip) -> list[Level]:

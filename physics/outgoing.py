@@ -19,6 +19,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from physics.constants import HBAR2_OVER_2M0_EV_NM2 as C_EV_NM2
+from physics.errors import EnergyError
 from physics.field import Profile
 from physics.scattering import NODE_GUARD
 from physics.sectors import Sectors, matrices, matrices_and_slopes
@@ -26,6 +27,11 @@ from physics.sectors import Sectors, matrices, matrices_and_slopes
 ComplexArray = NDArray[np.complex128]
 FloatArray = NDArray[np.float64]
 
+SECTION = 32
+"""Energies tried in each bracket at once while it is narrowed."""
+LEVEL_WORK = 8_000_000
+"""Levels times sectors that are computed, about a minute's work; beyond, a narrower window is asked
+for."""
 RESCALE_EVERY = 8
 """Sectors between rescalings; a wave grows by at most exp(2 * 1.5 * 8) = 3e10 in between."""
 
@@ -111,3 +117,43 @@ def _closed_ratio(profile: Profile, side: int, is_open: bool, energy_eV: FloatAr
         return np.zeros_like(energy_eV)
     below = np.maximum(profile.contact_edge_eV[side] - energy_eV, 0.0)
     return np.sqrt(C_EV_NM2 / profile.contact_mass[side] * below)
+
+
+def closed_stack_energies(
+    profile: Profile, sectors: Sectors, sheet: Sheet, window: tuple[float, float], width_eV: float
+) -> FloatArray:
+    """Eigenvalues of the closed stack between two energies, shape (N,), by counting nodes.
+
+    The brackets of all eigenvalues are narrowed together, each tried at `SECTION` energies at
+    once, until they are ``width_eV`` wide or as narrow as a double allows.
+
+    Raises
+    ------
+    EnergyError
+        There are too many for a reasonable time.
+    """
+    first, last = states_below(profile, sectors, sheet, np.array(window))
+    _require_feasible(int(last - first), sectors.count)
+    rank = np.arange(first, last)
+    lower, upper = (np.full(rank.size, end) for end in window)
+    share = np.linspace(0.0, 1.0, SECTION + 1)[1:-1]
+    while rank.size and np.any(upper - lower > np.maximum(width_eV, 2.0 * np.spacing(upper))):
+        trial = lower[:, None] + (upper - lower)[:, None] * share
+        count = states_below(profile, sectors, sheet, trial.ravel()).reshape(trial.shape)
+        passed = (count <= rank[:, None]).sum(axis=1)
+        walls = np.concatenate([lower[:, None], trial, upper[:, None]], axis=1)
+        row = np.arange(rank.size)
+        narrowed = walls[row, passed + 1] - walls[row, passed] < upper - lower
+        lower, upper = walls[row, passed], walls[row, passed + 1]
+        if not narrowed.any():
+            break
+    middle: FloatArray = 0.5 * (lower + upper)
+    return middle
+
+
+def _require_feasible(levels: int, sectors: int) -> None:
+    if levels * sectors > LEVEL_WORK:
+        raise EnergyError(
+            f"about {levels} levels in a stack of {sectors} sectors take too long; "
+            f"narrow the window to some {max(1, LEVEL_WORK // sectors)} levels"
+        )

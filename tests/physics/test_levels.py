@@ -191,6 +191,27 @@ def test_bad_windows(low: float, high: float, width: float) -> None:
         find_levels(uniform_field(two_barriers()), low, high, width)
 
 
+def test_a_window_around_one_level() -> None:
+    """However narrow, and with its end on the level itself."""
+    profile = uniform_field(two_barriers(5.0, 5.0, 5.0))
+    energy = find_levels(profile, 0.0, 0.2).levels[0].energy_eV
+    for low, high in [(energy, 0.2), (0.0, energy), (energy - 1e-12, energy + 1e-12)]:
+        found = find_levels(profile, low, high)
+        assert found.complete
+        assert [level.energy_eV for level in found.levels] == pytest.approx([energy], abs=1e-15)
+    assert find_levels(profile, energy + 1e-12, 0.2).levels == ()
+
+
+def test_contact_edges_that_only_rounding_sets_apart() -> None:
+    layers = [(3.0, 0.4, 0.09), (6.0, 0.1, 0.067), (3.0, 0.4, 0.09)]
+    structure = stack(layers, (0.1, 0.067), (0.1 + 2e-17, 0.067))
+    apart = stack(layers, (0.1, 0.067), (0.1 + 3e-16, 0.067))
+    for tried in (structure, apart):
+        found = find_levels(uniform_field(tried), 0.05, 0.35)
+        assert found.complete
+        assert len(found.levels) == 1
+
+
 thickness = st.floats(1.0, 9.0)
 heights = st.floats(0.15, 0.8)
 
