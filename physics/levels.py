@@ -21,7 +21,7 @@ from physics.constants import HBAR_EV_S
 from physics.errors import EnergyError
 from physics.field import Profile
 from physics.leaving import STOPS, Leaving, leaving_states
-from physics.outgoing import Sheet, closed_stack_energies, mismatch, states_below
+from physics.outgoing import Sheet, closed_stack_energies, mismatch
 from physics.rootfinding import MOST_POINTS, Rectangle, zeros_in
 from physics.sectors import Sectors, cut
 
