@@ -80,7 +80,8 @@ def advise(
 
 def scattering_width_eV(temperature_K: float) -> float:
     """Broadening that scattering adds to a level at a temperature; an order of magnitude."""
-    phonons = 1.0 / math.expm1(PHONON_EV / (BOLTZMANN_EV_PER_K * temperature_K))
+    ratio = PHONON_EV / (BOLTZMANN_EV_PER_K * temperature_K)
+    phonons = math.exp(-ratio) / -math.expm1(-ratio)  # Bose's number, without overflow when cold
     return SCATTERING_AT_0K_EV + PHONON_COUPLING_EV * phonons
 
 

@@ -2,9 +2,9 @@
 
 Run it from the top of a checkout::
 
-    python tests/benchmarks/keypress.py
+    python tests/benchmarks/keypress.py [FILE]
 
-The workbench runs in a pseudo-terminal of 110 x 35 cells on the demo design. Each key is sent when
+The workbench runs in a pseudo-terminal of 110 x 35 cells on the demo design or a file. Each key is sent when
 all is quiet; the time stops with the last byte of the burst of output that answers it.
 """
 
@@ -39,7 +39,8 @@ def start() -> tuple[int, int]:
         os.chdir(TOP)
         os.environ.update(TERM="xterm-256color", COLORTERM="", LINES="", COLUMNS="")
         del os.environ["LINES"], os.environ["COLUMNS"]
-        os.execv(sys.executable, [sys.executable, "-m", "tui.command.entry"])  # noqa: S606
+        command = [sys.executable, "-m", "tui.command.entry", *sys.argv[1:2]]
+        os.execv(sys.executable, command)  # noqa: S606
     fcntl.ioctl(terminal, termios.TIOCSWINSZ, struct.pack("HHHH", ROWS, COLUMNS, 0, 0))
     return pid, terminal
 
@@ -48,7 +49,10 @@ def burst(terminal: int, quiet_s: float = QUIET_S) -> tuple[float, int]:
     """Read until nothing comes for a while; give the time of the last byte and their number."""
     last, count = time.perf_counter(), 0
     while select.select([terminal], [], [], quiet_s)[0]:
-        count += len(os.read(terminal, 65536))
+        try:
+            count += len(os.read(terminal, 65536))
+        except OSError:  # the workbench has left
+            break
         last = time.perf_counter()
     return last, count
 

@@ -64,6 +64,7 @@ def test_coherence_depends_on_temperature() -> None:
     assert [note.topic for note in notes(structure)] == ["coherence"]
     assert notes(structure, temperature=4.0) == []
     assert scattering_width_eV(4.0) == pytest.approx(2e-4)
+    assert scattering_width_eV(0.01) == pytest.approx(2e-4)
     # About 2.5 meV at room temperature: the order of a mobility of 8000 cm^2/Vs (common practice).
     assert 1.5e-3 < scattering_width_eV(300.0) < 4e-3
 

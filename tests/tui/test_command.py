@@ -226,7 +226,9 @@ def test_wrong_calls(arguments: list[str]) -> None:
     assert b"Traceback" not in done.stderr
 
 
-@pytest.mark.parametrize("text", [b"", b"\xff\xfe", b"\0\0", b"#" * 10_000_000, os.urandom(4096)])
+@pytest.mark.parametrize(
+    "text", [b"", b"\xff\xfe", b"\0\0", b"#" * 10_000_000, bytes(range(256)) * 16]
+)
 def test_no_session_text(text: bytes) -> None:
     done = winze("levels", "-", text=text)
     assert done.returncode == 2

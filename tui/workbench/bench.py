@@ -142,12 +142,25 @@ class Bench(App[int], inherit_bindings=False):
         """Ask the solver for the answer to what is there now."""
         self.asked = Task(Request(self.session), self.hand)
         self._asked_at = time.monotonic()
-        self.solver.ask(self.asked)
-        self.show_title()
+        # Behind the keys that have come meanwhile: only the last of them is answered.
+        self.call_later(self._compute_now, self.asked)
+
+    def _compute_now(self, task: Task) -> None:
+        if task is not self.asked:
+            return
+        outcome = self.solver.answer_at_once(task)
+        if outcome is None:
+            self.solver.ask(task)
+            self.show_title()
+        else:
+            self._take(outcome)
 
     def on_bench_answered(self, message: Answered) -> None:
+        """Show an outcome that came from the thread."""
+        self._take(message.outcome)
+
+    def _take(self, outcome: Outcome) -> None:
         """Show an outcome, unless something newer has been asked for."""
-        outcome = message.outcome
         if outcome.task is not self.asked:
             return
         self.asked = None

@@ -28,7 +28,7 @@ class EnergyActions(Bench):
             here = self._here(self.reading)
             below = sum(level.energy_eV < here for level in levels)
             wanted = below + 1 if direction > 0 else below
-        self._take(Hand(number=min(max(wanted, 1), len(levels))))
+        self._take_hand(Hand(number=min(max(wanted, 1), len(levels))))
 
     def action_line(self, rows: int) -> None:
         """Move the line by rows of the figure."""
@@ -46,7 +46,7 @@ class EnergyActions(Bench):
                 energy = number(text, "eV", ENERGY_EV)
             except Refusal as refusal:
                 return str(refusal)
-            self._take(Hand(energy_eV=energy))
+            self._take_hand(Hand(energy_eV=energy))
             return ""
 
         here = self.reading.energy_eV if self.reading is not None else 0.0
@@ -62,12 +62,12 @@ class EnergyActions(Bench):
         step = base.energy_step_eV() if base is not None else 0.02 * (scene.to_eV - scene.from_eV)
         here = self._here(self.reading)
         energy = min(max(here + rows * step, scene.from_eV), scene.to_eV)
-        self._take(Hand(energy_eV=float(f"{energy:.9g}")))
+        self._take_hand(Hand(energy_eV=float(f"{energy:.9g}")))
 
     def _here(self, reading: Reading) -> float:
         """Give the energy asked for last, which may not be read off yet."""
         return reading.energy_eV if self.hand.energy_eV is None else self.hand.energy_eV
 
-    def _take(self, hand: Hand) -> None:
+    def _take_hand(self, hand: Hand) -> None:
         self.hand = hand
         self.compute()

@@ -1,14 +1,16 @@
-"""One computing thread: the latest request wins, stale ones are dropped or broken off.
+"""Computing beside the keys: the latest request wins, stale ones are dropped or broken off.
 
-The thread never touches a widget. It hands a frozen outcome to the function it was given, which
-posts it as a message.
+What takes a few milliseconds is computed at once, where a thread would only add the cost of
+switching to it and back. Anything else goes to one thread, which never touches a widget: it hands
+a frozen outcome to the function it was given, which posts it as a message.
 """
 
 from __future__ import annotations
 
 import threading
+import time
 from collections.abc import Callable
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 from physics.errors import PhysicsError
 from tui.reading import Reading, read_energy, read_level
@@ -42,6 +44,10 @@ class Outcome:
     trouble: str = ""
 
 
+AT_ONCE_S = 0.04
+"""Longest time that a key may wait for an answer computed at once."""
+
+
 class _Stale(Exception):  # noqa: N818  no fault: there is something newer to do
     pass
 
@@ -55,6 +61,8 @@ class Solver:
         self._closed = False
         self._changed = threading.Condition()
         self._study: Study | None = None
+        self._busy = False
+        self._is_quick = False
         self._thread = threading.Thread(target=self._run, name="winze-solver", daemon=True)
         self._thread.start()
 
@@ -63,6 +71,23 @@ class Solver:
         with self._changed:
             self._wanted = task
             self._changed.notify()
+
+    def answer_at_once(self, task: Task) -> Outcome | None:
+        """Answer here and now if that is likely to be quick; None where the thread has to do it."""
+        with self._changed:
+            if self._busy or self._wanted is not None or not self._is_quick:
+                return None
+        limit = time.monotonic() + AT_ONCE_S
+
+        def watch() -> None:
+            if time.monotonic() > limit:
+                raise _Stale
+
+        try:
+            return self._answer(task, watch)
+        except _Stale:
+            self._is_quick = False
+            return None
 
     def close(self) -> None:
         """End the thread."""
@@ -77,10 +102,15 @@ class Solver:
                 task, self._wanted = self._wanted, None
                 if self._closed or task is None:
                     return
+                self._busy = True
+            begun = time.monotonic()
             try:
-                outcome = self._answer(task)
+                outcome = self._answer(task, self._watch)
             except _Stale:
                 continue
+            finally:
+                self._busy = False
+            self._is_quick = time.monotonic() - begun < AT_ONCE_S
             self._deliver(outcome)
 
     def _watch(self) -> None:
@@ -88,16 +118,23 @@ class Solver:
         if self._closed or self._wanted is not None:
             raise _Stale
 
-    def _answer(self, task: Task) -> Outcome:
+    def _answer(self, task: Task, watch: Callable[[], None]) -> Outcome:
         try:
             if self._study is None or self._study.scene.request != task.request:
                 self._study = None
-                self._study = solve(task.request, self._watch)
-            return Outcome(task, self._study, take(self._study, task.hand))
+                self._study = solve(task.request, watch)
+            study = watched(self._study, watch)
+            return Outcome(task, self._study, take(study, task.hand))
         except (SessionError, PhysicsError) as error:
             return Outcome(task, None, None, str(error))
         except MemoryError:
             return Outcome(task, None, None, "there is not enough memory for this design")
+
+
+def watched(study: Study, watch: Callable[[], None]) -> Study:
+    """Let somebody else watch what is computed on a study from now on."""
+    profile = replace(study.profile, watch=watch)
+    return replace(study, scene=replace(study.scene, profile=profile))
 
 
 def take(study: Study, hand: Hand) -> Reading:
