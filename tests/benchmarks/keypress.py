@@ -4,8 +4,8 @@ Run it from the top of a checkout::
 
     python tests/benchmarks/keypress.py [FILE]
 
-The workbench runs in a pseudo-terminal of 110 x 35 cells on the demo design or a file. Each key is sent when
-all is quiet; the time stops with the last byte of the burst of output that answers it.
+The workbench runs in a pseudo-terminal of 110 x 35 cells on the demo design or a file. Each key is
+sent when all is quiet; the time stops with the last byte of the burst of output that answers it.
 """
 
 from __future__ import annotations
