@@ -32,6 +32,8 @@ class Profile:
 
     position_nm: NDArray[np.float64]
     """Faces of the pieces, shape (P + 1,); 0 at the left contact's face."""
+    thickness_nm: NDArray[np.float64]
+    """Thickness of each piece, shape (P,); not the faces' difference, which is rounded."""
     edge_left_eV: NDArray[np.float64]
     """Band edge at each piece's left face, shape (P,)."""
     edge_right_eV: NDArray[np.float64]
@@ -119,6 +121,7 @@ def uniform_field(structure: Structure, bias_V: float = 0.0) -> Profile:
     drop = (bias_V + built_in_eV(structure)) * (weight / weight[-1])
     return Profile(
         position_nm=position,
+        thickness_nm=thickness,
         edge_left_eV=np.array([layer.edge_eV for layer in layers]) - drop[:-1],
         edge_right_eV=np.array([layer.right_edge_eV for layer in layers]) - drop[1:],
         mass_left=np.array([layer.mass for layer in layers]),

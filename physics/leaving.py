@@ -20,7 +20,7 @@ from numpy.typing import NDArray
 from physics.constants import HBAR2_OVER_2M0_EV_NM2 as C_EV_NM2
 from physics.field import Profile
 from physics.outgoing import Sheet, outward_ratio_eV_nm
-from physics.sectors import Sectors, energy_powers
+from physics.sectors import Sectors, all_matrices
 
 ComplexArray = NDArray[np.complex128]
 FloatArray = NDArray[np.float64]
@@ -78,9 +78,8 @@ def leaving_states(
     energy_eV : ndarray, shape (N,)
         Complex energies of the levels.
     """
-    powers = energy_powers(sectors, energy_eV)[0]
-    inner = sectors.coefficients[: len(STOPS)] @ powers  # (P, 4, S, N)
-    whole = sectors.coefficients[-1] @ powers  # (4, S, N)
+    inner = all_matrices(sectors, energy_eV, slice(GAUSS_POINTS))  # (G, 4, S, N)
+    whole = all_matrices(sectors, energy_eV, slice(-1, None))[0]  # (4, S, N)
     ratio = [
         outward_ratio_eV_nm(profile, side, is_open, energy_eV)
         for side, is_open in enumerate((sheet.left_open, sheet.right_open))
@@ -88,7 +87,7 @@ def leaving_states(
     from_left = _carry(whole, -ratio[0])
     from_right = _carry_left(whole, ratio[1])
     joined, log_scale = _join(from_left, from_right, flux_scale(profile, sectors))
-    inside = inner[:GAUSS_POINTS, 0] * joined[0][:-1] + inner[:GAUSS_POINTS, 1] * joined[1][:-1]
+    inside = inner[:, 0] * joined[0][:-1] + inner[:, 1] * joined[1][:-1]
     density = np.tensordot(WEIGHTS, np.abs(inside) ** 2, axes=(0, 0))
     with np.errstate(under="ignore"):
         content = density * np.exp(2.0 * log_scale[:-1]) * sectors.length_nm[:, None]
@@ -116,7 +115,7 @@ def carry_from(
     psi, flux, log_scale : ndarray, shape (S + 1, N)
         The solution is psi and f times exp(log_scale).
     """
-    whole = sectors.coefficients[-1] @ energy_powers(sectors, energy_eV)[0]
+    whole = all_matrices(sectors, energy_eV, slice(-1, None))[0]
     carriage = _carry_left(whole, ratio) if from_right else _carry(whole, ratio)
     return carriage.psi, carriage.flux, carriage.log_scale
 

@@ -26,15 +26,12 @@ from numpy.typing import NDArray
 from physics.constants import HBAR2_OVER_2M0_EV_NM2 as C_EV_NM2
 from physics.errors import StructureError
 from physics.field import Profile
+from physics.frobenius import DEGREE, sector_series
 
 Energies = NDArray[np.float64] | NDArray[np.complex128]
 
 SECTOR_PHASE = 1.5
 """Largest (wavevector x length) of a sector: the series loses less than one digit up to here."""
-SERIES_TERMS = 24
-"""1.5**24 / 24! = 3e-20: the first term left out lies below the rounding of the first one."""
-DEGREE = SERIES_TERMS // 2
-"""Two powers of position bring at most one power of energy."""
 BLOCK_ELEMENTS = 250_000
 """Matrix elements held at once (2 MB): blocks that stay in the cache run fastest."""
 BUILD_BLOCK = 2048
@@ -61,8 +58,10 @@ class Sectors:
     """Energy about which the polynomials are expanded."""
     reach_eV: float
     """Energy distance that the expansion variable is scaled by."""
+    kind: NDArray[np.int64]
+    """Which of the distinct sectors each one is like, shape (S,): a superlattice has few."""
     coefficients: FloatArray
-    """Shape (P, 4, S, DEGREE + 1): stop, element (a, b, c, d), sector, power of the energy."""
+    """Shape (P, 4, U, DEGREE + 1): stop, element (a, b, c, d), distinct sector, power of energy."""
     stops: FloatArray
     """Where in each sector the matrices end, as fractions of its length, shape (P,)."""
     watch: Callable[[], None]
@@ -108,31 +107,32 @@ def cut(
     StructureError
         More than `MAX_SECTORS` sectors would be needed.
     """
-    piece, left, right = _sector_shares(profile, low_eV, high_eV, depth_eV, marks_nm)
+    piece, left, share = _sector_shares(profile, low_eV, high_eV, depth_eV, marks_nm)
     start, end = profile.position_nm[piece], profile.position_nm[piece + 1]
-    position = np.append(start * (1.0 - left) + end * left, profile.length_nm)
+    position = np.append(start + (end - start) * left, profile.length_nm)
     centre = 0.5 * (low_eV + high_eV)
     reach = max(0.5 * (high_eV - low_eV) + depth_eV, 1e-3)
-    edge_l = _mix(profile.edge_left_eV[piece], profile.edge_right_eV[piece], left)
-    edge_r = _mix(profile.edge_left_eV[piece], profile.edge_right_eV[piece], right)
-    mass_l = _mix(profile.mass_left[piece], profile.mass_right[piece], left)
-    mass_r = _mix(profile.mass_left[piece], profile.mass_right[piece], right)
-    length = (right - left) * (end - start)
+    edge_rise = (profile.edge_right_eV - profile.edge_left_eV)[piece]
+    mass_rise = (profile.mass_right - profile.mass_left)[piece]
+    described = np.stack(
+        [
+            share * profile.thickness_nm[piece],
+            profile.edge_left_eV[piece] + edge_rise * left - centre,
+            edge_rise * share,
+            profile.mass_left[piece] + mass_rise * left,
+            mass_rise * share,
+        ],
+        axis=1,
+    )
+    distinct, kind = np.unique(described, axis=0, return_inverse=True)
     stop_array = np.asarray(stops, dtype=np.float64)
-    shape = (stop_array.size, 4, piece.size, DEGREE + 1)
-    coefficients = np.empty(shape)
-    for first in range(0, piece.size, BUILD_BLOCK):
+    coefficients = np.empty((stop_array.size, 4, distinct.shape[0], DEGREE + 1))
+    for first in range(0, distinct.shape[0], BUILD_BLOCK):
         part = slice(first, first + BUILD_BLOCK)
-        coefficients[:, :, part] = _series(
-            length=length[part],
-            edge=edge_l[part] - centre,
-            edge_rise=(edge_r - edge_l)[part],
-            mass=mass_l[part],
-            mass_rise=(mass_r - mass_l)[part],
-            reach=reach,
-            stops=stop_array,
-        )
-    return Sectors(position, piece, centre, reach, coefficients, stop_array, profile.watch)
+        coefficients[:, :, part] = sector_series(*distinct[part].T, reach=reach, stops=stop_array)
+    return Sectors(
+        position, piece, centre, reach, kind.ravel(), coefficients, stop_array, profile.watch
+    )
 
 
 def matrices(
@@ -157,32 +157,53 @@ def matrices(
         Elements a, b, c, d.
     """
     powers, _ = energy_powers(sectors, energy_eV)
-    for start, block in _blocks(sectors, energy_eV.size, forward=forward):
-        values = block @ powers  # (4, B, E)
-        order = range(values.shape[1])
-        for index in order if forward else reversed(order):
-            yield start + index, values[:, index]
+    for index, (matrix,) in _each(sectors, (powers,), forward=forward):
+        yield index, matrix
 
 
 def matrices_and_slopes(
     sectors: Sectors, energy_eV: Energies
 ) -> Iterator[tuple[int, NDArray[Any], NDArray[Any]]]:
     """As `matrices`, from the last sector to the first, with the derivatives per eV as well."""
-    powers, slopes = energy_powers(sectors, energy_eV)
-    for start, block in _blocks(sectors, energy_eV.size, forward=False):
-        values, derivatives = block @ powers, block @ slopes
-        for index in reversed(range(values.shape[1])):
-            yield start + index, values[:, index], derivatives[:, index]
+    for index, (matrix, slope) in _each(sectors, energy_powers(sectors, energy_eV), forward=False):
+        yield index, matrix, slope
 
 
-def _blocks(sectors: Sectors, energies: int, *, forward: bool) -> Iterator[tuple[int, FloatArray]]:
-    """Yield runs of sectors, few enough to stay in the cache, with their first index."""
-    table = sectors.coefficients[-1]  # (4, S, D)
-    size = max(1, BLOCK_ELEMENTS // (4 * max(1, energies)))
+def all_matrices(sectors: Sectors, energy_eV: Energies, stops: slice = slice(None)) -> NDArray[Any]:
+    """Give the matrices to the chosen stops of all sectors at once, shape (P, 4, S, E)."""
+    powers, _ = energy_powers(sectors, energy_eV)
+    return _product(sectors.coefficients[stops], powers)[:, :, sectors.kind]
+
+
+def _each(
+    sectors: Sectors, powers: tuple[NDArray[Any], ...], *, forward: bool
+) -> Iterator[tuple[int, list[NDArray[Any]]]]:
+    """Yield each sector with its products, (4, E) for every set of powers.
+
+    Distinct sectors are multiplied out once where they are few; else in runs of sectors, short
+    enough to stay in the cache.
+    """
+    table = sectors.coefficients[-1]  # (4, U, D)
+    energies = max(1, powers[0].shape[1])
+    size = max(1, BLOCK_ELEMENTS // (4 * energies))
+    few = table.shape[1] <= min(size, sectors.count // 2)
+    whole = [_product(table, power) for power in powers] if few else []
     starts = range(0, sectors.count, size)
     for start in starts if forward else reversed(starts):
         sectors.watch()
-        yield start, np.ascontiguousarray(table[:, start : start + size])
+        kinds = sectors.kind[start : start + size]
+        values = whole if few else [_product(table[:, kinds], power) for power in powers]
+        order = range(kinds.size)
+        for index in order if forward else reversed(order):
+            at = kinds[index] if few else index
+            yield start + index, [value[:, at] for value in values]
+
+
+def _product(table: FloatArray, powers: NDArray[Any]) -> NDArray[Any]:
+    """Multiply coefficients (..., D) with powers (D, E): one real product, also if E is complex."""
+    flat = np.ascontiguousarray(table).reshape(-1, table.shape[-1])
+    product = (flat @ powers.view(np.float64)).view(powers.dtype)
+    return product.reshape(*table.shape[:-1], powers.shape[1])
 
 
 def energy_powers(sectors: Sectors, energy_eV: Energies) -> tuple[NDArray[Any], NDArray[Any]]:
@@ -204,19 +225,19 @@ def _sector_shares(
     depth_eV: float,
     marks_nm: FloatArray | None,
 ) -> tuple[NDArray[np.int64], FloatArray, FloatArray]:
-    """Piece of each sector, and where in the piece (as a fraction) it begins and ends."""
+    """Piece of each sector, where in the piece it begins and how much of it it is, as shares."""
     number = _sectors_per_piece(profile, low_eV, high_eV, depth_eV)
     if int(number.sum()) > MAX_SECTORS:
         allowed = f"it needs more than {MAX_SECTORS} sectors at these energies; make it thinner"
         raise StructureError("stack", "thickness_nm", profile.length_nm, allowed)
     piece = np.repeat(np.arange(number.size), number)
     rank = np.arange(piece.size) - np.repeat(np.cumsum(number) - number, number)
-    left = rank / number[piece]
-    if marks_nm is not None:
-        piece, left = _with_marks(profile, piece, left, marks_nm)
+    left, share = rank / number[piece], 1.0 / number[piece]
+    if marks_nm is None:
+        return piece, left, share
+    piece, left = _with_marks(profile, piece, left, marks_nm)
     last = np.append(piece[1:] != piece[:-1], True)
-    right = np.where(last, 1.0, np.append(left[1:], 1.0))
-    return piece, left, right
+    return piece, left, np.where(last, 1.0, np.append(left[1:], 1.0)) - left
 
 
 def _sectors_per_piece(
@@ -245,46 +266,3 @@ def _with_marks(
     pieces, shares = pieces[order], shares[order]
     fresh = np.append(True, (pieces[1:] != pieces[:-1]) | (np.diff(shares) > 1e-12))
     return pieces[fresh], shares[fresh]
-
-
-def _series(
-    *,
-    length: FloatArray,
-    edge: FloatArray,
-    edge_rise: FloatArray,
-    mass: FloatArray,
-    mass_rise: FloatArray,
-    reach: float,
-    stops: FloatArray,
-) -> FloatArray:
-    """Sum the Frobenius series; shape (P, 4, S, DEGREE + 1).
-
-    With s the fraction of the sector and e the scaled energy, order k + 1 of psi and f follows
-    from orders k and k - 1::
-
-        (k+1) psi[k+1] = (h/c) (m0 f[k] + m1 f[k-1])
-        (k+1) f[k+1]   = h ((V0 - reach e) psi[k] + V1 psi[k-1])
-    """
-    h = length[:, None]
-    v0, v1 = h * edge[:, None], h * edge_rise[:, None]
-    m0, m1 = h * mass[:, None] / C_EV_NM2, h * mass_rise[:, None] / C_EV_NM2
-    size = (2, length.size, DEGREE + 1)  # the two fundamental solutions
-    psi, flux = np.zeros(size), np.zeros(size)
-    psi[0, :, 0], flux[1, :, 0] = 1.0, 1.0
-    psi_before, flux_before = np.zeros(size), np.zeros(size)
-    orders = np.empty((SERIES_TERMS + 1, 4, length.size, DEGREE + 1))
-    orders[0, :2], orders[0, 2:] = psi, flux
-    for k in range(SERIES_TERMS):
-        psi_next = (m0 * flux + m1 * flux_before) / (k + 1)
-        flux_next = v0 * psi + v1 * psi_before
-        flux_next[..., 1:] -= reach * h * psi[..., :-1]
-        flux_next /= k + 1
-        psi_before, flux_before, psi, flux = psi, flux, psi_next, flux_next
-        orders[k + 1, :2], orders[k + 1, 2:] = psi, flux
-    powers = stops[:, None] ** np.arange(SERIES_TERMS + 1)
-    total: FloatArray = np.tensordot(powers, orders, axes=(1, 0))
-    return total
-
-
-def _mix(at_left: FloatArray, at_right: FloatArray, share: FloatArray) -> FloatArray:
-    return at_left * (1.0 - share) + at_right * share

@@ -14,7 +14,7 @@ from physics.leaving import STOPS, carry_from, leaving_states
 from physics.levels import Level
 from physics.outgoing import Sheet
 from physics.scattering import NODE_GUARD, contact_flux_eV_nm
-from physics.sectors import Sectors, cut, energy_powers, matrices
+from physics.sectors import Sectors, all_matrices, cut, matrices
 
 ComplexArray = NDArray[np.complex128]
 FloatArray = NDArray[np.float64]
@@ -192,8 +192,7 @@ def _density(
 ) -> Density:
     """Evaluate a wave, known with its flux at the faces, at the even stops of every sector."""
     psi, flux, log_scale = wave
-    powers = energy_powers(sectors, np.array([energy]))[0]
-    even = sectors.coefficients[len(STOPS) - 1 :] @ powers  # (P, 4, S, 1)
+    even = all_matrices(sectors, np.array([energy]), slice(len(STOPS) - 1, None))  # (P, 4, S, 1)
     inside = even[:, 0, :, 0] * psi[:-1] + even[:, 1, :, 0] * flux[:-1]  # (P, S)
     density = np.abs(inside) ** 2 * np.exp(2.0 * log_scale[:-1])
     first = abs(psi[0]) ** 2 * math.exp(2.0 * float(log_scale[0]))

@@ -111,6 +111,7 @@ def curved(edge: Any, half_length: float, mass: float, pieces: int) -> Profile:
     masses = np.full(pieces, mass)
     return Profile(
         position_nm=x + half_length,
+        thickness_nm=np.diff(x),
         edge_left_eV=v[:-1],
         edge_right_eV=v[1:],
         mass_left=masses,
