@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import argparse
+import contextlib
 import sys
 from argparse import ArgumentParser, Namespace
 from collections.abc import Callable
@@ -95,7 +96,10 @@ def request_of(options: Namespace) -> Request:
     ------
     SessionError
         The file is refused.
+    CallError
+        The result would take the file's place.
     """
+    _require_other_output(options)
     options.text, session = read(options.file)
     conditions = session.conditions
     if options.bias is not None:
@@ -108,6 +112,19 @@ def request_of(options: Namespace) -> Request:
         getattr(options, "to_eV", None),
         getattr(options, "max_width_eV", None),
     )
+
+
+def _require_other_output(options: Namespace) -> None:
+    """Refuse to put a result where the session text is: nothing that was typed may be lost."""
+    if "-" in (options.file, options.output) or options.output is None:
+        return
+    with contextlib.suppress(
+        OSError, ValueError
+    ):  # what cannot be found is refused where it is used
+        if Path(options.output).is_file() and Path(options.output).samefile(options.file):
+            raise CallError(
+                f"-o names the session text itself, {printable(options.file)}; name another file"
+            )
 
 
 def read(file: str) -> tuple[str, Session]:

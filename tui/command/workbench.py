@@ -21,7 +21,8 @@ def open_workbench(file: str | None) -> int:
     CallError
         There is no terminal that the workbench could use.
     """
-    if not (sys.stdin.isatty() and sys.stdout.isatty()):
+    streams = (sys.stdin, sys.stdout)
+    if not all(stream is not None and stream.isatty() for stream in streams):
         raise CallError(f"the workbench needs a terminal; {HEADLESS}")
     if os.environ.get("TERM", "dumb") in ("", "dumb"):
         raise CallError(f"the workbench cannot draw on TERM=dumb; {HEADLESS}")

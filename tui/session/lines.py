@@ -8,18 +8,26 @@ structure. Keys inside inline tables are found by the line of the table.
 from __future__ import annotations
 
 import re
+import tomllib
 from collections.abc import Iterator
+from functools import lru_cache
 
 KeyPath = tuple[str | int, ...]
 """Table names, for ``[[layer]]`` the index from 0 as well, then the key."""
 
-_NAME = r"""(?:[A-Za-z0-9_-]+|"[^"\n]*"|'[^'\n]*')"""
+MOST_PARTS = 64
+"""Parts of a dotted key from which a text is refused: reading takes time with their square."""
+
+_NAME = r"""(?:[A-Za-z0-9_-]+|"(?:\\.|[^"\\\n])*"|'[^'\n]*')"""
 _DOTTED = rf"{_NAME}(?:\s*\.\s*{_NAME})*"
 _HEADER = re.compile(rf"^\s*(?:\[\s*({_DOTTED})\s*\]|\[\[\s*({_DOTTED})\s*\]\])\s*(?:#.*)?$")
 _KEY = re.compile(rf"^\s*({_DOTTED})\s*=")
-_PART = re.compile(_NAME)
+_TANGLED = re.compile(  # possessive, and from the start of a part on: time grows with the length
+    r"""(?<![A-Za-z0-9_-])(?:(?:[A-Za-z0-9_-]++|"[^"\n]*+"|'[^'\n]*+')[ \t]*+\.[ \t]*+)"""
+    rf"{{{MOST_PARTS}}}"
+)
 _HIDING = re.compile(
-    r'''"""(?:\\.|(?!""").)*"{3,5}'''
+    r'''"""(?:\\.|(?!""")[^\\])*"{3,5}'''
     r"""|'''(?:(?!''').)*'{3,5}"""
     r'''|"(?:\\.|[^"\\\n])*"'''
     r"""|'[^'\n]*'"""
@@ -33,11 +41,10 @@ def line_of(text: str, path: KeyPath) -> int | None:
     places: dict[KeyPath, int] = {}
     table: KeyPath = ()
     for number, header, key in _scan(bare(text)):
-        if header is not None:
-            table = header
-            places.setdefault(table, number)
-        else:
-            places.setdefault((*table, *key), number)
+        table = table if header is None else header
+        place = (*table, *key)
+        for length in range(1, len(place) + 1):  # a.b.c is where a begins, too
+            places.setdefault(place[:length], number)
     for length in range(len(path), 0, -1):
         if path[:length] in places:
             return places[path[:length]]
@@ -52,6 +59,12 @@ def headers(bare_text: str) -> list[tuple[int, KeyPath]]:
 def bare(text: str) -> str:
     """Blank what hides in comments and long strings; every line keeps its number."""
     return _HIDING.sub(_blanked, text)
+
+
+def tangled(text: str) -> int | None:
+    """Line of a key of more than `MOST_PARTS` parts, in any text whatever."""
+    found = _TANGLED.search(text)
+    return None if found is None else text.count("\n", 0, found.start()) + 1
 
 
 def comments(text: str) -> list[str]:
@@ -89,5 +102,11 @@ def _numbered(header: re.Match[str], counts: dict[KeyPath, int]) -> KeyPath:
     return (*name, counts[name])
 
 
+@lru_cache(maxsize=1024)
 def _parts(dotted: str) -> KeyPath:
-    return tuple(part.strip("\"'") for part in _PART.findall(dotted))
+    here: object = tomllib.loads(f"{dotted} = 0")
+    parts: list[str] = []
+    while isinstance(here, dict):
+        [(part, here)] = here.items()
+        parts.append(part)
+    return tuple(parts)

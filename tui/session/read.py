@@ -14,7 +14,7 @@ from pathlib import Path
 from typing import Any, cast
 
 from tui.session import tables
-from tui.session.lines import KeyPath
+from tui.session.lines import MOST_PARTS, KeyPath, tangled
 from tui.session.model import (
     Conditions,
     ContactEntry,
@@ -24,10 +24,11 @@ from tui.session.model import (
     Session,
     View,
 )
-from tui.session.refusal import SessionError, has_controls, printable, shown
+from tui.session.refusal import SessionError, has_controls, named, printable, shown
 from tui.session.tables import Table, Text
 
 FORMAT = 1
+REMEDY = "name a session text, or send it to standard input and give - for its name"
 MAX_BYTES = 2_000_000
 """A design of 10,000 layers is 1 MB; what is larger is no session text."""
 
@@ -55,7 +56,7 @@ def load(path: Path) -> tuple[str, Session]:
         reason = getattr(error, "strerror", None) or str(error)
         raise SessionError("", "it cannot be read", reason.lower(), source=source) from error
     if objection:
-        raise SessionError("", objection, "name a session text", source=source)
+        raise SessionError("", objection, REMEDY, source=source)
     text = decode(data, source)
     return text, read_session(text, source)
 
@@ -106,6 +107,10 @@ def read_session(text: str, source: str) -> Session:
     SessionError
         With the line and the key where they are known.
     """
+    line = tangled(text)
+    if line is not None:
+        found = f"a key has more than {MOST_PARTS} parts"
+        raise SessionError("", found, "no key of a session text has", source=source, line=line)
     try:
         document = tomllib.loads(text)
     except tomllib.TOMLDecodeError as error:
@@ -219,11 +224,11 @@ def _materials(table: dict[str, Any]) -> tuple[MaterialEntry, ...]:
 
 def _material(table: dict[str, Any], name: str) -> MaterialEntry:
     path = ("material", name)
-    key = f"material {printable(name)}"
+    key = f"material {named(name)}"
     if not name or has_controls(name):
         raise _refuse(path, key, "has no usable name", tables.NAME_RULE)
     if not isinstance(table[name], dict):
-        allowed = f"a table [material.{printable(name)}] is expected"
+        allowed = f"a table [material.{named(name)}] is expected"
         raise _refuse(path, key, f"is {shown(table[name])}", allowed)
     values = _values(table[name], tables.MATERIAL, path, key)
     for needed in ("edge_eV", "mass"):
@@ -254,7 +259,7 @@ def _require_known(table: dict[str, Any], keys: tuple[str, ...], path: KeyPath, 
     for key in table:
         if key in keys:
             continue
-        said = f"{name} {printable(key)}".strip()
+        said = f"{name} {named(key)}".strip()
         meant = tables.UNITLESS.get(key)
         if meant is not None and any(part in keys for part in meant.split(" or ")):
             raise _refuse((*path, key), said, "has no unit", f"write {meant}")

@@ -80,12 +80,23 @@ def shown(value: object) -> str:
     """Quote a value: short, on one line, without control characters."""
     if isinstance(value, bool):
         return "true" if value else "false"
+    if isinstance(value, (dict, list)):  # its contents may be long, and nested without end
+        return "a table" if isinstance(value, dict) else "a list"
     if isinstance(value, float) and not math.isfinite(value):
         return "not a number" if math.isnan(value) else "infinite"
     try:
         text = printable(repr(value) if isinstance(value, str) else str(value))
     except ValueError:  # Python writes no whole number of thousands of digits
         return "too long to be shown"
+    return _short(text)
+
+
+def named(key: str) -> str:
+    """Name a key or a table: short and printable; one without characters by its quotation marks."""
+    return _short(printable(key)) or '""'
+
+
+def _short(text: str) -> str:
     return text if len(text) <= LONGEST_SHOWN else text[: LONGEST_SHOWN - 3] + "..."
 
 

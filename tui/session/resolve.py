@@ -16,7 +16,7 @@ from physics.occupation import fermi_from_donors
 from physics.structure import Contact, Layer, Structure
 from tui.session.lines import KeyPath
 from tui.session.model import ContactEntry, LayerEntry, MaterialEntry, Session
-from tui.session.refusal import SessionError, printable, shown
+from tui.session.refusal import SessionError, named, printable, shown
 
 AGREEMENT = 1e-6
 """Relative difference up to which two ways of saying one thing agree."""
@@ -203,7 +203,7 @@ def _at(path: KeyPath, value: object, allowed: str) -> SessionError:
 
 def _said(path: KeyPath) -> str:
     """Say a path as a reader counts: layers from 1."""
-    return " ".join(str(part + 1) if isinstance(part, int) else str(part) for part in path)
+    return " ".join(str(part + 1) if isinstance(part, int) else named(part) for part in path)
 
 
 def _from_structure(error: StructureError) -> SessionError:

@@ -76,11 +76,15 @@ def _new_mode() -> int:
 
 
 def _sync_folder(folder: Path) -> None:
-    """Make the folder's new entry last through a power loss, where the system can."""
+    """Make the folder's new entry last through a power loss, where the system can.
+
+    A folder that may not be listed, or that lies on a network, may refuse; the file is saved.
+    """
     if os.name != "posix":
         return
-    handle = os.open(folder, os.O_RDONLY)
-    try:
-        os.fsync(handle)
-    finally:
-        os.close(handle)
+    with contextlib.suppress(OSError):
+        handle = os.open(folder, os.O_RDONLY)
+        try:
+            os.fsync(handle)
+        finally:
+            os.close(handle)
