@@ -47,6 +47,11 @@ def shell(command: str) -> subprocess.CompletedProcess[str]:
         ("winze levls -", 2, "'levls'"),
         ("winze -", 2, "winze --help"),
         ("winze levels", 2, "FILE"),
+        ("winze <&-", 2, "the workbench needs a terminal"),
+        ("winze >&-", 2, "the workbench needs a terminal"),
+        ("winze a.toml <&- >&-", 2, "the workbench needs a terminal"),
+        ("winze iv - --from 0 --to 1 --points 3", 2, "'iv'"),
+        ("winze levels - -o /dev/null/x", 2, "it cannot be written; not a directory"),
     ],
 )
 def test_what_ends_early(command: str, status: int, said: str) -> None:
