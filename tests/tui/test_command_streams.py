@@ -111,14 +111,15 @@ def test_links_in_a_circle(tmp_path: Path) -> None:
         save(one, "x = 1\n")
 
 
-def test_an_interrupt_at_any_moment_is_answered_in_one_line() -> None:
+@pytest.mark.parametrize("module", ["tui.diagnostics", "tomllib", "argparse", "physics.levels"])
+def test_an_interrupt_at_any_moment_is_answered_in_one_line(module: str) -> None:
     """The signal arrives while modules are being loaded, which is held back until they are."""
     program = (
         "import os, signal, sys\n"
         "signal.signal(signal.SIGINT, signal.default_int_handler)\n"
         "class Signalling:\n"
         "    def find_spec(self, name, path=None, target=None):\n"
-        "        if name == 'physics.levels':\n"
+        f"        if name == {module!r}:\n"
         "            os.kill(os.getpid(), signal.SIGINT)\n"
         "sys.meta_path.insert(0, Signalling())\n"
         "from tui.command.entry import main\n"

@@ -2,21 +2,21 @@
 
 from __future__ import annotations
 
-import contextlib
 import signal
 import sys
-from collections.abc import Iterator, Sequence
-
-from tui.diagnostics import guarded
+from collections.abc import Callable, Sequence
 
 
 def main(argv: Sequence[str] | None = None) -> int:
     """Run winze with the given arguments, or the process's own."""
+    release = _hold_interrupts()
+    from tui.diagnostics import guarded
 
     def run() -> int:
-        with _uninterrupted():
+        try:
             from tui.command.calls import answer
-
+        finally:
+            release()
         return answer(list(sys.argv[1:] if argv is None else argv))
 
     status = guarded(run)
@@ -25,20 +25,16 @@ def main(argv: Sequence[str] | None = None) -> int:
     return status
 
 
-@contextlib.contextmanager
-def _uninterrupted() -> Iterator[None]:
+def _hold_interrupts() -> Callable[[], object]:
     """Hold an interrupt back while modules are loaded, where half a second does no harm.
 
-    In the middle of an import it would be lost or end in another error now and then.
+    In the middle of an import it would be lost or end in another error now and then. Gives what
+    lets interrupts through again.
     """
     if not hasattr(signal, "pthread_sigmask"):
-        yield
-        return
+        return lambda: None
     before = signal.pthread_sigmask(signal.SIG_BLOCK, {signal.SIGINT})
-    try:
-        yield
-    finally:
-        signal.pthread_sigmask(signal.SIG_SETMASK, before)
+    return lambda: signal.pthread_sigmask(signal.SIG_SETMASK, before)
 
 
 if __name__ == "__main__":
