@@ -41,7 +41,8 @@ SHEET_SHARE = 0.5
 """Most of the height that the form takes beside the figure."""
 SMALLEST = (60, 18)
 RESIZE_PAUSE_S = 0.08
-SLOW_S = 0.3
+SLOW_S, PROGRESS_S = 0.3, 1.0
+"""When a computation is called slow, and how often its time is shown."""
 HINT = "? keys   Enter change   + - step   n p level   a d x layer   w save   q quit"
 
 
@@ -76,6 +77,7 @@ class Bench(App[int], inherit_bindings=False):
         self.asked: Task | None = None
         self._asked_at = 0.0
         self._resizing: Timer | None = None
+        self._progressing: Timer | None = None
         self.solver = Solver(self._deliver)
 
     def compose(self) -> ComposeResult:
@@ -97,7 +99,6 @@ class Bench(App[int], inherit_bindings=False):
         if self.glyphs is PLAIN:
             self.add_class("plain")
         self.call_after_refresh(self.take_document)
-        self.set_interval(SLOW_S, self._show_progress)
 
     def on_unmount(self) -> None:
         """End the computing thread."""
@@ -152,6 +153,7 @@ class Bench(App[int], inherit_bindings=False):
         if outcome is None:
             self.solver.ask(task)
             self.show_title()
+            self._progress_after(SLOW_S)
         else:
             self._take(outcome)
 
@@ -238,8 +240,15 @@ class Bench(App[int], inherit_bindings=False):
         return "" if count == 0 else f"{count} note{'s' * (count > 1)}: i"
 
     def _show_progress(self) -> None:
+        """Say how long it takes, for as long as it does; nothing ticks otherwise."""
         if self.asked is not None:
             self.show_title()
+            self._progress_after(PROGRESS_S)
+
+    def _progress_after(self, seconds: float) -> None:
+        if self._progressing is not None:
+            self._progressing.stop()
+        self._progressing = self.set_timer(seconds, self._show_progress)
 
     # Asking and telling
 
