@@ -216,3 +216,38 @@ def test_long_stacks_are_matched_too() -> None:
     assert sources(before, after) == list(range(4000))
     after = [*before[:10], *before[12:3000], A, *before[3000:]]
     assert len([source for source in sources(before, after) if source is None]) <= 1
+
+
+NAMES = ['a\\"b', "x.y", "# c", "[z]", "b\\\\", "é = 1", "\\u00fc"]
+
+
+@pytest.mark.parametrize("name", NAMES)
+def test_materials_of_any_name_stay_whole_beside_a_layer_that_goes(name: str) -> None:
+    own = f'# of {len(name)}\n[material."{name}"]   # own\nmass = 0.1\nedge_eV = 2e-1\n'
+    one = "# one\n[[layer]]\nedge_eV = 0.3\nmass = 0.09\nthickness_nm = 2.0\n"
+    two = one.replace("one", "two").replace("2.0", "4.0")
+    ends = "[left]\nedge_eV = 0\nmass = 1\n[right]\nedge_eV = 0\nmass = 1\n"
+    text = "format = 1\n" + ends + one + own + two
+    session = read_session(text, "x")
+    assert write_session(session, text) == text
+    first, second = session.layers
+    left_over = write_session(replace(session, layers=(second,)), text)
+    assert left_over == "format = 1\n" + ends + two + own
+    turned = write_session(replace(session, layers=(second, first)), text)
+    assert turned == "format = 1\n" + ends + two + own + one
+    heavier = replace(session, materials=(replace(session.materials[0], mass=0.2),))
+    assert write_session(heavier, text) == text.replace("mass = 0.1", "mass = 0.2")
+
+
+@pytest.mark.parametrize("seed", range(60))
+def test_mixed_line_ends(seed: int) -> None:
+    """As two editors in turn leave them: what does not change keeps its own."""
+    scribe = Scribe(seed)
+    lines = scribe.text().replace("\r\n", "\n").splitlines(keepends=True)
+    text = "".join(line.replace("\n", scribe.pick("\n", "\r\n")) for line in lines)
+    session = read_session(text, "x")
+    assert write_session(session, text) == text
+    changed = edit(session, scribe.chance)
+    written = write_session(changed, text)
+    assert read_session(written, "y") == changed
+    assert comments(text) <= comments(written)
