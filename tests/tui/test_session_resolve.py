@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import re
 from dataclasses import replace
 from typing import Any
 
@@ -126,3 +127,114 @@ def test_the_line_is_found_afterwards() -> None:
     error = refusal(read_session(text, "d")).located(text, "d.toml")
     wanted = 1 + text[: text.index("Al1.4")].count("\n")
     assert (error.source, error.line) == ("d.toml", wanted)
+
+
+def text_of(left: str, layer: str, right: str, more: str = "") -> str:
+    return f"format = 1\n[left]\n{left}\n[[layer]]\n{layer}\n[right]\n{right}\n{more}"
+
+
+GAAS = 'material = "GaAs"'
+NUMBERS = "edge_eV = 0.1\nmass = 0.067"
+TWO_NM = "thickness_nm = 2.0"
+
+
+@pytest.mark.parametrize(
+    ("text", "key", "line", "remedy"),
+    [
+        (
+            text_of(f"{GAAS}\nedge_eV = 0.1", f"{GAAS}\n{TWO_NM}", GAAS),
+            "left edge_eV",
+            4,
+            "keep one",
+        ),
+        (text_of(NUMBERS, f"{GAAS}\n{TWO_NM}", NUMBERS), "layer 1 material", 6, "left contact's"),
+        (text_of(NUMBERS, f"{NUMBERS}\n{TWO_NM}", GAAS), "right material", 10, "left contact's"),
+        (text_of(GAAS, f"{GAAS}\nthickness_ml = 1e6", GAAS), "layer 1 thickness_nm", 4, "1e5 nm"),
+        (text_of(GAAS, f"{NUMBERS}\nthickness_ml = 9", GAAS), "layer 1 thickness_ml", 7, "nm"),
+        (
+            text_of(f"{GAAS}\ndonors_cm3 = 1e18", f"{GAAS}\n{TWO_NM}", GAAS),
+            "right fermi_eV",
+            8,
+            "both",
+        ),
+        (text_of(GAAS, f"{GAAS}\n{TWO_NM}", f"{GAAS}\nfermi_eV = 0.1"), "left fermi_eV", 2, "both"),
+        (text_of(GAAS, f'material = "AlGaAs"\n{TWO_NM}', GAAS), "layer 1 material", 5, "fraction"),
+        (
+            text_of(GAAS, f'material = "gaas"\n{TWO_NM}', GAAS),
+            "layer 1 material",
+            5,
+            "Al0.3Ga0.7As",
+        ),
+        (text_of(GAAS, f'material = ""\n{TWO_NM}', GAAS), "layer 1 material", 5, "[material.NAME]"),
+        (
+            text_of(GAAS, f'{GAAS}\nto_material = "AlAs"\nto_mass = 0.2\n{TWO_NM}', GAAS),
+            "layer 1 to_mass",
+            7,
+            "keep one",
+        ),
+        (
+            text_of(
+                GAAS, f"{GAAS}\n{TWO_NM}", GAAS, "[material.GaAs]\nedge_eV = 0\nmass = 0.1"
+            ).replace(GAAS, 'material = "AlAs"', 1),
+            "",
+            None,
+            "",
+        ),
+    ],
+)
+def test_lines_and_remedies(text: str, key: str, line: int | None, remedy: str) -> None:
+    session = read_session(text, "x.toml")
+    if not key:  # the user's own GaAs goes before the catalogue's, on the session's scale
+        assert resolve(session).layers[0].mass == 0.1
+        return
+    error = refusal(session).located(text, "x.toml")
+    assert (error.key, error.line) == (key, line)
+    assert remedy in error.allowed
+    assert str(error).startswith(f"x.toml, line {line}: {key} ")
+
+
+@pytest.mark.parametrize(
+    "layer",
+    [
+        'material = "Al0.3Ga0.7As"\nedge_eV = 0.3\nthickness_nm = 2.0',
+        'material = "In0.53Ga0.47As"\nmass = 0.05\nthickness_nm = 2.0',
+        'material = "Al0.37Ga0.63As"\nthickness_nm = 2.83\nthickness_ml = 10',
+        'material = "AlAs"\nto_material = "GaP"\nto_edge_eV = 0.1\nthickness_nm = 2.0',
+    ],
+)
+def test_the_number_that_a_refusal_gives_is_accepted(layer: str) -> None:
+    text = text_of(GAAS, layer, GAAS)
+    error = refusal(read_session(text, "x"))
+    given = re.search(r"is ([^ ]+), but [^ ]+ makes it ([^ ]+)", error.found)
+    assert given is not None
+    key = str(error.path[-1])
+    mended = re.sub(rf"{key} = [0-9.]+", f"{key} = {given[2]}", text)
+    assert mended != text
+    resolve(read_session(mended, "x"))
+
+
+def test_the_users_own_material_hides_the_catalogues() -> None:
+    mine = MaterialEntry("GaAs", 0.05, 0.07)
+    structure = resolve(replace(with_layer(material="GaAs"), materials=(mine,)))
+    assert (structure.left.edge_eV, structure.layers[0].mass) == (0.05, 0.07)
+
+
+def test_monolayers_of_a_grade_are_those_of_its_first_face() -> None:
+    layer = resolve(
+        with_layer(material="GaAs", to_material="InAs", thickness_nm=None, thickness_ml=10)
+    ).layers[0]
+    assert layer.thickness_nm == pytest.approx(10 * 0.5 * 0.565325)  # GaAs at 300 K
+
+
+def test_monolayers_are_counted_at_room_temperature() -> None:
+    """A count grown at 300 K stays what it is in the cryostat; edges follow the temperature."""
+    session = with_layer(material="AlAs", thickness_nm=None, thickness_ml=7)
+    cold = replace(session, conditions=replace(session.conditions, temperature_K=4.0))
+    warm_layer, cold_layer = resolve(session).layers[0], resolve(cold).layers[0]
+    assert warm_layer.thickness_nm == cold_layer.thickness_nm
+    assert warm_layer.edge_eV != cold_layer.edge_eV
+
+
+def test_a_stated_permittivity_goes_before_the_materials() -> None:
+    assert resolve(with_layer(material="GaAs", permittivity=10.0)).layers[0].permittivity == 10.0
+    assert resolve(with_layer(material="GaAs")).layers[0].permittivity == pytest.approx(12.9, 0.01)

@@ -179,7 +179,7 @@ def _medium(
 def _require_agreement(stated: float | None, other: float, path: KeyPath, by: str) -> None:
     if stated is None or abs(stated - other) <= AGREEMENT * max(abs(stated), abs(other)):
         return
-    found = f"is {stated:g}, but {by} makes it {other:.6g}"
+    found = f"is {stated:.9g}, but {by} makes it {other:.9g}"  # enough to be copied and to agree
     raise SessionError(_said(path), found, f"keep one of the two, {path[-1]} or {by}", path=path)
 
 
