@@ -8,7 +8,7 @@ from __future__ import annotations
 
 import tomllib
 from dataclasses import asdict
-from typing import Any
+from typing import TYPE_CHECKING, Any
 
 from tui.session import tables
 from tui.session.lines import KeyPath, comments
@@ -16,6 +16,9 @@ from tui.session.model import LayerEntry, Session
 from tui.session.origin import sources
 from tui.session.read import FORMAT, read_session
 from tui.session.refusal import SessionError
+
+if TYPE_CHECKING:
+    from tui.session.blocks import Block
 
 Values = dict[str, Any]
 UNSAID: Values = {"donors_cm3": 0.0, "label": "", "title": "", "notes": ""}
@@ -86,15 +89,8 @@ def _rewritten(session: Session, original: str) -> str:
     layer_pieces = [piece for piece in pieces if piece.name[:1] == ("layer",)]
     if len(layer_pieces) != len(before.layers):
         return original
-    layers = [
-        blocks.changed(layer_pieces[source], _layer(before.layers[source]), _layer(layer))
-        if source is not None
-        else blocks.Block(("layer",), _table_text(("layer",), _layer(layer)), fresh=True)
-        for layer, source in zip(
-            session.layers, sources(before.layers, session.layers), strict=True
-        )
-    ]
-    result: list[blocks.Block] = []
+    layers = _layer_blocks(layer_pieces, before, session)
+    result: list[Block] = []
     for piece in pieces:
         if piece.name[:1] == ("layer",):  # one a place, at the last place all that are left
             count = 1 if piece is not layer_pieces[-1] else len(layers)
@@ -109,6 +105,19 @@ def _rewritten(session: Session, original: str) -> str:
         if name not in written and values != old.get(name)
     ]
     return blocks.join(result)
+
+
+def _layer_blocks(pieces: list[Block], before: Session, session: Session) -> list[Block]:
+    """Write each layer in the block of the one it came from, or in a fresh one."""
+    from tui.session import blocks
+
+    came_from = sources(before.layers, session.layers)
+    return [
+        blocks.changed(pieces[source], _layer(before.layers[source]), _layer(layer))
+        if source is not None
+        else blocks.Block(("layer",), _table_text(("layer",), _layer(layer)), fresh=True)
+        for layer, source in zip(session.layers, came_from, strict=True)
+    ]
 
 
 def _changed_in_place(session: Session, original: str) -> str:
