@@ -9,7 +9,7 @@ displacement field is continuous, so each layer's field is proportional to 1/per
 from __future__ import annotations
 
 from collections.abc import Callable
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 from numpy.typing import NDArray
@@ -18,6 +18,8 @@ from physics.errors import StructureError
 from physics.ranges import BIAS_V
 from physics.structure import Structure
 
+SAME_EDGE_EV = 1e-14
+"""Band edges closer than this differ by rounding."""
 ASSUMED_PERMITTIVITY = 12.9
 """Relative permittivity of a layer that states none (GaAs, static); `advise` says so where used."""
 
@@ -76,6 +78,35 @@ class Profile:
         edge = self.edge_left_eV[inside] * (1.0 - share) + self.edge_right_eV[inside] * share
         edge = np.where(x < 0.0, self.contact_edge_eV[0], edge)
         return np.where(x > self.length_nm, self.contact_edge_eV[1], edge)
+
+
+def without_runways(profile: Profile) -> Profile:
+    """Take away what at either end goes on just as the contact does, as an unbiased spacer.
+
+    Where the contact begins is then a matter of words: T, R and the poles are the same, but a wave
+    that fades or grows over a long runway would drown what is computed in rounding.
+    """
+    edges = np.stack([profile.edge_left_eV, profile.edge_right_eV])
+    masses = np.stack([profile.mass_left, profile.mass_right])
+    like = [
+        (np.abs(edges - edge) <= SAME_EDGE_EV).all(axis=0) & (masses == mass).all(axis=0)
+        for edge, mass in zip(profile.contact_edge_eV, profile.contact_mass, strict=True)
+    ]
+    count = profile.thickness_nm.size
+    first = int(np.argmin(np.append(like[0], False)))
+    last = count - int(np.argmin(np.append(like[1][::-1], False)))
+    first, last = (first, last) if first < last else (0, 1)
+    kept = slice(first, last)
+    return replace(
+        profile,
+        position_nm=profile.position_nm[first : last + 1] - profile.position_nm[first],
+        thickness_nm=profile.thickness_nm[kept],
+        edge_left_eV=profile.edge_left_eV[kept],
+        edge_right_eV=profile.edge_right_eV[kept],
+        mass_left=profile.mass_left[kept],
+        mass_right=profile.mass_right[kept],
+        layer_index=profile.layer_index[kept],
+    )
 
 
 def built_in_eV(structure: Structure) -> float:

@@ -19,7 +19,7 @@ from numpy.typing import NDArray
 
 from physics.constants import HBAR_EV_S
 from physics.errors import EnergyError
-from physics.field import Profile
+from physics.field import Profile, without_runways
 from physics.leaving import STOPS, Leaving, leaving_states
 from physics.outgoing import Sheet, closed_stack_energies, mismatch
 from physics.rootfinding import MOST_POINTS, Rectangle, zeros_in
@@ -40,6 +40,8 @@ WIDTH_ERROR = 1e-9
 MIXING_EV = 1e-15
 """Rounding of the energy, with a margin of four: over the distance of two levels it is the part of
 one state that is taken for the other."""
+GAP_ERROR_EV = 2e-13
+"""Uncertainty of a distance between two levels that all but coincide, seen in trials."""
 LEVELS_AT_ONCE = 4_000_000
 """Matrix elements held at once while states are computed."""
 CONTOUR_WORK = 400_000_000
@@ -138,8 +140,9 @@ def find_levels(
     _check_window(from_eV, to_eV, max_width_eV)
     levels: list[Level] = []
     counted, complete = 0, True
+    core = without_runways(profile)
     for low, high in _strips(profile, from_eV, to_eV):
-        strip = _find_poles(profile, low, high, max_width_eV)
+        strip = _find_poles(core, low, high, max_width_eV)
         found = [level for level in _describe(profile, strip) if level.width_eV <= max_width_eV]
         levels += found
         counted += len(found) + strip.missing
@@ -156,7 +159,8 @@ def _mixing(poles: ComplexArray) -> FloatArray:
         return np.full(poles.size, WIDTH_ERROR)
     gaps = np.abs(np.diff(poles))
     nearest = np.minimum(np.append(gaps, np.inf), np.append(np.inf, gaps))
-    bound: FloatArray = WIDTH_ERROR + MIXING_EV / nearest
+    apart = np.maximum(nearest - GAP_ERROR_EV, MIXING_EV)
+    bound: FloatArray = WIDTH_ERROR + MIXING_EV / apart
     return bound
 
 

@@ -4,7 +4,7 @@ import numpy as np
 import pytest
 
 from physics.errors import StructureError
-from physics.field import built_in_eV, uniform_field
+from physics.field import built_in_eV, uniform_field, without_runways
 from physics.structure import Contact, Layer, Structure
 
 CONTACT = Contact(0.0, 0.067)
@@ -48,3 +48,17 @@ def test_without_fermi_energies_the_contacts_stay_where_they_are() -> None:
 def test_bias_out_of_range(bias: float) -> None:
     with pytest.raises(StructureError, match="bias_V"):
         uniform_field(Structure(CONTACT, (Layer(2.0, 0.3, 0.09),), CONTACT), bias)
+
+
+def test_runways_are_taken_away() -> None:
+    spacer, barrier = Layer(30.0, 0.0, 0.067), Layer(2.0, 0.3, 0.09)
+    other = Layer(4.0, 0.0, 0.08)  # the contact's edge, but not its mass
+    stack = Structure(CONTACT, (spacer, spacer, barrier, spacer, other, spacer), CONTACT)
+    core = without_runways(uniform_field(stack))
+    assert core.layer_index.tolist() == [2, 3, 4]
+    assert core.position_nm == pytest.approx([0.0, 2.0, 32.0, 36.0])
+    assert without_runways(uniform_field(stack, 0.1)).layer_index.size == 6
+    plain = Structure(CONTACT, (spacer, spacer), CONTACT)
+    assert without_runways(uniform_field(plain)).layer_index.size == 1
+    right = Structure(CONTACT, (barrier, spacer), CONTACT)
+    assert without_runways(uniform_field(right)).layer_index.tolist() == [0]

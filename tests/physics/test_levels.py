@@ -134,6 +134,18 @@ def test_weak_wave_in_a_spacer_brings_no_nodes() -> None:
     assert [level.nodes for level in found.levels] == [0]
 
 
+def test_spacers_like_the_contacts_change_no_level() -> None:
+    """However long: where the contact begins is then a matter of words."""
+    plain = find_levels(uniform_field(two_barriers()), 0.0, 0.3, 0.1)
+    spacer = (400.0, 0.0, 0.067)
+    barriers = [(2.0, 0.3, 0.092), (5.0, 0.0, 0.067), (2.0, 0.3, 0.092)]
+    spaced = find_levels(uniform_field(stack([spacer, *barriers, spacer])), 0.0, 0.3, 0.1)
+    assert spaced.complete
+    for one, other in zip(plain.levels, spaced.levels, strict=True):
+        assert other.energy_eV == pytest.approx(one.energy_eV, abs=1e-15)
+        assert other.width_eV == pytest.approx(one.width_eV, rel=1e-9)
+
+
 def test_pair_split_by_tunnelling() -> None:
     """Two like wells: the symmetric state below the antisymmetric one (textbook)."""
     layers = [(4.0, 0.3, 0.092), (6.0, 0.0, 0.067)] * 2 + [(4.0, 0.3, 0.092)]
@@ -142,6 +154,18 @@ def test_pair_split_by_tunnelling() -> None:
     assert upper.energy_eV - lower.energy_eV < 5e-3
     for level in (lower, upper):
         assert level.share_by_layer[1] == pytest.approx(level.share_by_layer[3], rel=1e-6)
+
+
+@pytest.mark.parametrize(("middle", "accurate"), [(12.0, True), (40.0, False)])
+def test_levels_that_all_but_coincide_say_so(middle: float, accurate: bool) -> None:
+    layers = [(5.0, 0.3, 0.092), (6.0, 0.0, 0.067), (middle, 0.3, 0.092), (6.0, 0.0, 0.067)]
+    found = find_levels(uniform_field(stack([*layers, (5.0, 0.3, 0.092)])), 0.0, 0.1)
+    assert len(found.levels) == found.counted == 2
+    assert found.accurate is accurate
+    for level in found.levels:
+        assert (level.width_error < 1e-6) is accurate
+        # Both wells leak alike, so the widths are right whatever the mixture.
+        assert level.width_eV == pytest.approx(3.54e-5, rel=0.02)
 
 
 def test_bound_and_quasi_bound_in_one_window() -> None:

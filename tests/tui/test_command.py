@@ -24,15 +24,15 @@ WINZE = [sys.executable, "-m", "tui.command.entry"]
 TOP = Path(__file__).parents[2]
 UNPROVED = """\
 format = 1
-title = "long spacers"
+title = "long spacers, all but like the contacts"
 left = { edge_eV = 0.0, mass = 0.067 }
 right = { edge_eV = 0.0, mass = 0.067 }
 layer = [
-  { edge_eV = 0.0, mass = 0.067, thickness_nm = 300.0 },
+  { edge_eV = 0.0, mass = 0.06700001, thickness_nm = 300.0 },
   { edge_eV = 0.3, mass = 0.092, thickness_nm = 2.0 },
   { edge_eV = 0.0, mass = 0.067, thickness_nm = 5.0 },
   { edge_eV = 0.3, mass = 0.092, thickness_nm = 2.0 },
-  { edge_eV = 0.0, mass = 0.067, thickness_nm = 300.0 },
+  { edge_eV = 0.0, mass = 0.06700001, thickness_nm = 300.0 },
 ]
 """
 BOUND = """\
