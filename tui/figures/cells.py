@@ -59,12 +59,12 @@ class Cells:
         """Whether a cell is empty."""
         return self.rows[row][column][0] == " "
 
-    def paste(self, other: Cells, row: int, column: int, *, over: bool = True) -> None:
-        """Lay another sheet on this one; its blank cells let through."""
-        for n, line in enumerate(other.rows):
-            for m, (character, role) in enumerate(line):
-                if character != " ":
-                    self.put(row + n, column + m, character, role, over=over)
+    def paste(self, other: Cells, row: int, column: int) -> None:
+        """Lay another sheet on this one, inside its bounds; its blank cells let through."""
+        for below, line in zip(self.rows[row:], other.rows, strict=False):
+            for at, cell in enumerate(line[: self.width - column], start=column):
+                if cell[0] != " ":
+                    below[at] = cell
 
     def copy(self) -> Cells:
         """Give an independent copy."""
