@@ -23,7 +23,7 @@ def energy(value_eV: float, digits: int = 4) -> str:
 def width(value_eV: float, log10_eV: float, digits: int = 4) -> str:
     """Write a width, from its logarithm where the number itself underflows."""
     if value_eV == 0.0 and math.isfinite(log10_eV):
-        return f"1e{log10_eV:.1f} eV"
+        return f"{_power(log10_eV, digits)} eV"
     return "none" if value_eV == 0.0 else energy(value_eV, digits)
 
 
@@ -42,8 +42,7 @@ def probability(value: float, log10_value: float, digits: int = 4) -> str:
         return f"{value:.{digits}f}"
     if math.isinf(log10_value):
         return "0"
-    exponent = math.floor(log10_value)
-    return f"{10.0 ** (log10_value - exponent):.{digits - 2}f}e{exponent:d}"
+    return _power(log10_value, digits - 1)
 
 
 def _with_unit(value: float, units: tuple[tuple[float, str], ...], digits: int, plain: str) -> str:
@@ -60,5 +59,12 @@ def _with_unit(value: float, units: tuple[tuple[float, str], ...], digits: int, 
 
 
 def _significant(value: float, digits: int) -> str:
-    whole = 1 if value == 0.0 else max(1, math.floor(math.log10(abs(value))) + 1)
-    return f"{value:.{max(0, digits - whole)}f}"
+    exponent = int(f"{value:.{digits - 1}e}".partition("e")[2])  # 9.9996 is written 10.00
+    return f"{value:.{max(0, digits - 1 - max(0, exponent))}f}"
+
+
+def _power(log10_value: float, digits: int) -> str:
+    """Write a number that may be too small for a double, by its logarithm."""
+    exponent = math.floor(log10_value)
+    mantissa, _, carry = f"{10.0 ** (log10_value - exponent):.{digits - 1}e}".partition("e")
+    return f"{mantissa}e{exponent + int(carry)}"
