@@ -2,10 +2,11 @@
 
 from __future__ import annotations
 
+from collections.abc import Mapping
 from dataclasses import dataclass, field
 from typing import Literal
 
-Role = Literal["", "axis", "edge", "density", "fill", "level", "curve", "line", "pointer"]
+Role = Literal["", "axis", "edge", "density", "fill", "level", "curve", "fermi", "line", "pointer"]
 Line = list[tuple[str, Role]]
 """One row: runs of text with their roles."""
 
@@ -14,10 +15,10 @@ Line = list[tuple[str, Role]]
 class Glyphs:
     """The characters a figure is made of; one set for rich encodings, one for plain ones."""
 
-    marker: str
-    """Marker of plotext for lines."""
+    markers: Mapping[str, str]
+    """Marker of plotext for a curve, by its role; with letters, each curve has its own."""
     marker_rows: int
-    """Rows of dots that one cell has with that marker."""
+    """Rows of dots that one cell has with these markers."""
     level: str
     line: str
     pointer: str
@@ -30,8 +31,11 @@ class Glyphs:
     cross_below: str
 
 
-RICH = Glyphs("braille", 4, "━", "┄", "▶", "·", "│", "─", "└", "┤", "┬", "┴")
-PLAIN = Glyphs("#", 1, "=", "-", ">", ".", "|", "-", "+", "+", "+", "+")
+_DOTS = dict.fromkeys(("edge", "density", "curve"), "braille")
+_LETTERS = {"edge": "#", "density": "o", "curve": "*"}
+RICH = Glyphs(_DOTS, 4, "━", "┄", "▶", "·", "│", "─", "└", "┤", "┬", "┴")
+PLAIN = Glyphs(_LETTERS, 1, "=", "-", ">", ".", "|", "-", "+", "+", "+", "+")
+BRAILLE = 0x2800
 
 
 @dataclass
@@ -66,6 +70,19 @@ class Cells:
                 if cell[0] != " ":
                     below[at] = cell
 
+    def paste_under(self, other: Cells, row: int, column: int, kept: tuple[Role, ...]) -> None:
+        """Lay another sheet on this one, but under what has one of the roles ``kept``.
+
+        Where both have dots in a cell, all of them are shown.
+        """
+        for n, line in enumerate(other.rows[: self.height - row]):
+            for m, (character, role) in enumerate(line[: self.width - column]):
+                there, its_role = self.rows[row + n][column + m]
+                if character != " ":
+                    both = its_role in kept
+                    cell = (_both(there, character), its_role) if both else (character, role)
+                    self.rows[row + n][column + m] = cell
+
     def copy(self) -> Cells:
         """Give an independent copy."""
         return Cells(self.width, self.height, [row[:] for row in self.rows])
@@ -77,6 +94,12 @@ class Cells:
     def text(self) -> str:
         """Give the characters alone, blanks at the ends of rows taken off."""
         return "\n".join("".join(c for c, _ in row).rstrip() for row in self.rows)
+
+
+def _both(upper: str, lower: str) -> str:
+    """Join the dots of two cells; of other characters the upper one is seen."""
+    dots, more = ord(upper) - BRAILLE, ord(lower) - BRAILLE
+    return chr(BRAILLE + (dots | more)) if 0 <= dots < 256 and 0 <= more < 256 else upper
 
 
 def _runs(row: list[tuple[str, Role]]) -> Line:

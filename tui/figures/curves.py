@@ -65,7 +65,7 @@ def draw(curves: list[Curve], limits: Limits, width: int, height: int, glyphs: G
     figure.ylim(limits.bottom, limits.top)
     for number, curve in enumerate(curves, start=1):
         for x, y in _pieces(curve, limits):
-            figure.plot(x, y, color=number, marker=glyphs.marker)
+            figure.plot(x, y, color=number, marker=glyphs.markers[curve.role])
     return _cells(figure.build(), width, height, [curve.role for curve in curves])
 
 

@@ -1,11 +1,13 @@
 """The figure of a design: two panels on one energy axis.
 
-Left, over position: the band edge, each level where it sits, and the density at the energy in hand,
-which is its base line. Right, over the same rows: log10 T. A level and its peak are on one row.
+Left, over position: the band edge, each level where it sits, the contacts' Fermi energies (F), and
+the density at the energy in hand, which is its base line. Right, over the same rows: log10 T. A
+level and its peak are on one row.
 """
 
 from __future__ import annotations
 
+import itertools
 import math
 from dataclasses import dataclass
 
@@ -22,6 +24,8 @@ from tui.study import Study
 LABEL_WIDTH = 8
 NUMBER_WIDTH = 3
 AXIS_ROWS = 2
+TICK_COLUMNS = 9
+"""A lower axis has at most one tick in so many columns."""
 MIN_WIDTH, MIN_HEIGHT = 44, 7
 PANEL_SHARE = 0.60
 """Share of the width that position gets."""
@@ -33,6 +37,8 @@ DENSITY_SHARE = 0.30
 """Height of the density, as a share of the energy axis."""
 SITS_FROM = 0.08
 """Share of a level in a layer from which its stroke is drawn there."""
+SEEN_FROM_DOTS = 0.5
+"""A density lower than this many dots is left to the base line."""
 EVEN_POINTS = 200
 LOWEST_LOG10 = -60.0
 """Transmission below this runs along the panel's edge."""
@@ -69,6 +75,10 @@ class Base:
         """Energy that one row stands for."""
         return (self.position.top - self.position.bottom) / self.rows
 
+    def dot_eV(self) -> float:
+        """Energy that one row of a marker's dots stands for."""
+        return self.energy_step_eV() / self.glyphs.marker_rows
+
 
 def base_figure(study: Study, width: int, height: int, glyphs: Glyphs) -> Base:
     """Draw what stays; ``width`` and ``height`` are in cells, at least the minima above."""
@@ -95,6 +105,7 @@ def base_figure(study: Study, width: int, height: int, glyphs: Glyphs) -> Base:
     base.cells.paste(draw(curves, both, room + 1, rows, glyphs), 0, base.position_column)
     _axes(base)
     _levels(base)
+    _fermi_energies(base)
     return base
 
 
@@ -167,10 +178,12 @@ def _axes(base: Base) -> None:
     ticks = round_ticks(limits.bottom, limits.top, max(2, base.rows // 3))
     for tick in ticks:
         row = base.row_of(tick)
-        cells.put(row, 0, tick_text(tick, ticks).rjust(LABEL_WIDTH - 1), "axis")
+        text = tick_text(tick, ticks) + (" eV" if row == 0 else "")
+        cells.put(row, 0, text.rjust(LABEL_WIDTH - 1)[: LABEL_WIDTH - 1], "axis")
         for column in columns:
             cells.put(row, column, glyphs.tick_left, "axis")
-    cells.put(0, 0, " eV".ljust(LABEL_WIDTH), "axis")
+    if cells.is_blank(0, LABEL_WIDTH - 2):
+        cells.put(0, 0, "eV".rjust(LABEL_WIDTH - 1), "axis")
     cells.put(base.rows, LABEL_WIDTH, glyphs.corner, "axis")
     _lower_axis(base, base.position_column, base.position_width, limits, "x nm")
     cells.put(base.rows, base.log10_t_column - 1, glyphs.cross_below, "axis")
@@ -178,18 +191,26 @@ def _axes(base: Base) -> None:
 
 
 def _lower_axis(base: Base, start: int, width: int, limits: Limits, title: str) -> None:
+    """Draw a panel's lower axis; its title stands in the axis itself, between two ticks."""
     cells, row = base.cells, base.rows
     cells.put(row, start, base.glyphs.across * width, "axis")
-    room = width - len(title) - 1
-    ticks = round_ticks(limits.left, limits.right, max(2, width // 9))
-    for tick in ticks:
-        column = column_of(tick, limits, width)
+    ticks = round_ticks(limits.left, limits.right, max(2, width // TICK_COLUMNS))
+    columns = [column_of(tick, limits, width) for tick in ticks]
+    for tick, column in zip(ticks, columns, strict=True):
         text = tick_text(tick, ticks)
         at = min(max(column - len(text) // 2, 0), width - len(text))
         cells.put(row, start + column, base.glyphs.tick_below, "axis")
-        if at + len(text) < room:
-            cells.put(row + 1, start + at, text, "axis")
-    cells.put(row + 1, start + width - len(title), title, "axis")
+        cells.put(row + 1, start + at, text, "axis")
+    _axis_title(cells, row, start, [-1, *columns, width], title)
+
+
+def _axis_title(cells: Cells, row: int, start: int, ends: list[int], title: str) -> None:
+    """Write a title into the last gap of an axis that has room for it, or else at its end."""
+    gaps = [(a, b) for a, b in itertools.pairwise(ends) if b - a - 1 >= len(title)]
+    first, last = gaps[-1] if gaps else (ends[-1] - len(title) - 1, ends[-1])
+    room = last - first - 1
+    text = f" {title} " if room >= len(title) + 2 else title
+    cells.put(row, start + first + 1 + (room - len(text)) // 2, text, "axis")
 
 
 def _levels(base: Base) -> None:
@@ -210,6 +231,19 @@ def _levels(base: Base) -> None:
             cells.put(row, at, str(number).rjust(NUMBER_WIDTH), "level")
 
 
+def _fermi_energies(base: Base) -> None:
+    """Mark each contact's Fermi energy at its side of the left panel."""
+    structure, profile = base.study.scene.structure, base.study.profile
+    ends = (base.position_column, base.log10_t_column - 2)
+    contacts = (structure.left, structure.right)
+    for contact, edge, column in zip(contacts, profile.contact_edge_eV, ends, strict=True):
+        if contact.fermi_eV is None:
+            continue
+        fermi = edge + contact.fermi_eV
+        if base.position.bottom <= fermi <= base.position.top:
+            base.cells.put(base.row_of(fermi), column, "F", "fermi")
+
+
 def _density(base: Base, cells: Cells, reading: Reading, row: int) -> None:
     """Draw the density as a curve on the base line, with its area dotted."""
     density = reading.density
@@ -217,12 +251,12 @@ def _density(base: Base, cells: Cells, reading: Reading, row: int) -> None:
         return
     heights = _heights(density.density_per_nm, base, reading.energy_eV)
     x, y = thinned(density.x_nm, heights, base.position_width)
-    top, bottom = base.row_of(float(y.max())), min(base.row_of(float(y.min())), base.rows - 1)
-    top = max(top, 0)
+    top, bottom = max(base.row_of(float(y.max())), 0), row
+    y[y - reading.energy_eV < SEEN_FROM_DOTS * base.dot_eV()] = np.nan
     band = band_of(base.position, base.rows, base.glyphs, top, bottom)
     curve = Curve(x, y, "density")
     drawn = draw([curve], band, base.position_width, bottom - top + 1, base.glyphs)
-    cells.paste(drawn, top, base.position_column)
+    cells.paste_under(drawn, top, base.position_column, ("edge", "level"))
     for column in range(base.position_width):
         marked = [n for n in range(drawn.height) if not drawn.is_blank(n, column)]
         if marked:

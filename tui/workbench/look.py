@@ -22,6 +22,7 @@ STYLES: dict[str, Style] = {
     "fill": Style(color="#3a96dd", dim=True),
     "level": Style(color="#e69f00", bold=True),
     "curve": Style(color="#009e73", bold=True),
+    "fermi": Style(bold=True, underline=True),
     "line": Style(color="#d55e00"),
     "pointer": Style(color="#d55e00", reverse=True),
     "head": Style(dim=True, underline=True),
