@@ -18,7 +18,7 @@ from tui.workbench import document as documents
 from tui.workbench.app import Workbench
 from tui.workbench.document import Document
 from tui.workbench.panes import Pane
-from tui.workbench.prompt import TypedLine
+from tui.workbench.prompt import Prompt
 from tui.workbench.screens import Question, Reader
 
 COMMENT = "# kept through every save\n"
@@ -54,8 +54,7 @@ class Driver:
         await self.pilot.pause()
 
     async def type(self, text: str) -> None:
-        line = self.app.query_one(TypedLine)
-        line.value = text
+        self.app.query_one(Prompt).line.value = text
         await self.press("enter")
 
     def text(self, pane: str = "") -> str:
@@ -109,7 +108,7 @@ async def test_typing_a_value_and_being_refused() -> None:
         await b.type("0")
         assert b.app.is_asking
         assert "above 0" in b.text("prompt-label")
-        assert b.app.query_one(TypedLine).value == "0"
+        assert b.app.query_one(Prompt).line.value == "0"
         await b.type("3.2 nm")
         assert not b.app.is_asking
         assert b.app.session.layers[1].thickness_nm == 3.2

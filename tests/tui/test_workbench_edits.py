@@ -92,7 +92,7 @@ def test_steps() -> None:
     with pytest.raises(Refusal, match="temperature"):
         values.step(cold, ("conditions", 0), "temperature_K", -1)
     with pytest.raises(Refusal, match="only numbers"):
-        values.step(DEMO, FIRST, "material", 1)
+        values.step(DEMO, FIRST, "label", 1)
 
 
 def test_layers_come_go_and_move() -> None:

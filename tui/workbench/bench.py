@@ -14,6 +14,7 @@ from textual import events
 from textual.app import App, ComposeResult
 from textual.binding import Binding, BindingType
 from textual.containers import Container
+from textual.geometry import Region
 from textual.message import Message
 from textual.timer import Timer
 
@@ -30,16 +31,12 @@ from tui.workbench.form import Field, Row, rows_of
 from tui.workbench.keys import KEYS
 from tui.workbench.panes import FigurePane, Pane
 from tui.workbench.prompt import Accept, Prompt
-from tui.workbench.readout import level_lines, reading_lines
+from tui.workbench.readout import dimmed, level_lines, note_lines, reading_lines
 from tui.workbench.screens import Question
-from tui.workbench.sheet import FIXED_LINES, Cursor, field_at, moved, sheet_lines
+from tui.workbench.sheet import Cursor, field_at, field_place, moved, sheet_height, sheet_lines
 from tui.workbench.solver import Hand, Outcome, Solver, Task
 
-WIDE_FROM, WIDE_HEIGHT = 160, 30
-TALL_FROM, SHORT_BELOW = 32, 22
-SHEET_SHARE = 0.5
-"""Most of the height that the form takes beside the figure."""
-SMALLEST = (60, 18)
+WIDE_FROM, SMALLEST = (160, 30), (60, 18)
 RESIZE_PAUSE_S = 0.08
 SLOW_S, PROGRESS_S = 0.3, 1.0
 """When a computation is called slow, and how often its time is shown."""
@@ -76,6 +73,8 @@ class Bench(App[int], inherit_bindings=False):
         self.trouble = ""
         self.asked: Task | None = None
         self._asked_at = 0.0
+        self.field_region = Region(0, 0, 0, 0)
+        self._form_height = 0
         self._resizing: Timer | None = None
         self._progressing: Timer | None = None
         self.solver = Solver(self._deliver)
@@ -186,12 +185,26 @@ class Bench(App[int], inherit_bindings=False):
     def show_form(self) -> None:
         """Show the form."""
         pane = self.query_one("#sheet", Pane)
+        self._fit_form(pane)
         width, height = pane.content_size
-        rows = self.rows
-        if self.has_class("wide"):
-            height = min(len(rows) + FIXED_LINES - 1, int(SHEET_SHARE * self.size.height))
-        if width and height:
-            pane.show(sheet_lines(rows, self.cursor, width, height))
+        if not width or not height:
+            return
+        lines = sheet_lines(self.rows, self.cursor, width, height)
+        pane.show(lines)
+        place = field_place(lines)
+        if place is not None:
+            line, column, wide = place
+            at = pane.content_region
+            self.field_region = Region(at.x + column, at.y + line, wide, 1)
+            self.query_one("#prompt", Prompt).move_to(self.field_region)
+
+    def _fit_form(self, pane: Pane) -> None:
+        """Give the form the height that its rows want, and draw all once that has happened."""
+        height = sheet_height(self.rows, self.size.height, beside=self.has_class("wide"))
+        if self._form_height != height:
+            self._form_height = height
+            pane.styles.height = height
+            self.call_after_refresh(self.show_all)
 
     def show_answer(self) -> None:
         """Show figure, read-out, levels and notes."""
@@ -200,21 +213,16 @@ class Bench(App[int], inherit_bindings=False):
         if study is None or reading is None:
             self.query_one("#figure", Pane).show([[("", "")], [(f" {self.trouble}", "trouble")]])
             return
-        self.query_one("#figure", FigurePane).draw(study, reading)
+        is_old = bool(self.trouble)
+        self.query_one("#figure", FigurePane).draw(study, reading, is_old=is_old)
         pane = self.query_one("#reading", Pane)
-        pane.show(reading_lines(study, reading, pane.size.width))
+        lines = reading_lines(study, reading, pane.size.width)
+        pane.show(dimmed(lines) if is_old else lines)
         pane = self.query_one("#levels", Pane)
-        pane.show(level_lines(study, reading, pane.content_size.height))
-        self.show_notes()
-
-    def show_notes(self) -> None:
-        """Show the notes in their pane."""
+        lines = level_lines(study, reading, pane.content_size.height)
+        pane.show(dimmed(lines) if is_old else lines)
         pane = self.query_one("#notes", Pane)
-        room = pane.content_size.width
-        lines: list[list[tuple[str, str]]] = [[("notes on this answer", "head")]]
-        for note in self.notes():
-            lines += [[(part, "")] for part in wrapped(note, room)]
-        pane.show(lines if len(lines) > 1 else [[("no notes on this answer", "faint")]])
+        pane.show(note_lines(self.notes(), pane.content_size.width))
 
     def notes(self) -> list[str]:
         """Give the notes on the answer."""
@@ -258,9 +266,10 @@ class Bench(App[int], inherit_bindings=False):
             text, role = self.trouble, "trouble"
         self.query_one("#prompt", Prompt).say(f" {text}", role)
 
-    def ask(self, label: str, initial: str, accept: Accept) -> None:
-        """Ask for a line of text on the lowest line."""
-        self.query_one("#prompt", Prompt).ask(f" {label} ", initial, accept)
+    def ask(self, label: str, initial: str, accept: Accept, *, in_form: bool = False) -> None:
+        """Ask for a line of text, on the lowest line or in the form at the cursor."""
+        field = self.field_region if in_form else None
+        self.query_one("#prompt", Prompt).ask(f" {label} ", initial, accept, field)
 
     def choose(self, question: str, answers: dict[str, str], then: Callable[[str], Any]) -> None:
         """Ask a question; ``then`` is called with the key of an answer, not when it is left."""
@@ -276,9 +285,7 @@ class Bench(App[int], inherit_bindings=False):
     def on_resize(self, event: events.Resize) -> None:
         """Choose the layout; draw once the resizing has paused."""
         width, height = event.size
-        self.set_class(width >= WIDE_FROM and height >= WIDE_HEIGHT, "wide")
-        self.set_class(height >= TALL_FROM, "tall")
-        self.set_class(height < SHORT_BELOW, "short")
+        self.set_class(width >= WIDE_FROM[0] and height >= WIDE_FROM[1], "wide")
         self.set_class(width < SMALLEST[0] or height < SMALLEST[1], "small")
         if self._resizing is not None:
             self._resizing.stop()
@@ -291,10 +298,3 @@ class Bench(App[int], inherit_bindings=False):
         self.query_one("#small", Pane).show([[(need, "strong")]])
         self.show_form()
         self.show_answer()
-
-
-def wrapped(text: str, width: int) -> list[str]:
-    """Break a note into lines, the later ones indented."""
-    import textwrap
-
-    return textwrap.wrap(text, max(20, width), initial_indent="- ", subsequent_indent="  ")

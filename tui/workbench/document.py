@@ -58,12 +58,21 @@ class Document:
 
     def changed_on_disk(self) -> bool:
         """Whether the file holds something else than was last read from it or written to it."""
-        if self.path is None or self.text is None or not self.path.exists():
+        if self.path is None or self.text is None:
             return False
         try:
-            return decode(self.path.read_bytes(), str(self.path)) != self.text
+            return self.path.exists() and decode(self.path.read_bytes(), "") != self.text
         except (OSError, SessionError):
             return True
+
+    def would_overwrite(self, path: Path) -> bool:
+        """Whether a file holds what was neither read from it nor written to it here."""
+        try:
+            if self.path is not None and path.exists() and path.samefile(self.path):
+                return self.changed_on_disk()
+            return path.exists() and not path.is_dir()
+        except (OSError, ValueError):  # saving there will say what is wrong
+            return False
 
     def save_to(self, path: Path) -> None:
         """Write the design to a file and go on with that file.
@@ -83,6 +92,24 @@ class Document:
         target.append(self.session)
         self.session = source.pop()
         return True
+
+
+def named(text: str) -> Path:
+    """Read a path as it was typed, ``~`` for the user's own folder.
+
+    Raises
+    ------
+    SessionError
+        There is no such user, or no name at all.
+    """
+    name = text.strip()
+    if not name:
+        raise SessionError("", "a file name is needed", "type one, or leave with Escape")
+    try:
+        return Path(name).expanduser()
+    except RuntimeError as error:
+        allowed = "write the path out"
+        raise SessionError("", "there is no such user", allowed, source=name) from error
 
 
 def opened(path: Path) -> Document:

@@ -2,14 +2,16 @@
 
 from __future__ import annotations
 
+from collections.abc import Callable
 from pathlib import Path
 
 from tui.session.refusal import SessionError
 from tui.workbench import document as documents
-from tui.workbench.bench import Bench, wrapped
+from tui.workbench.bench import Bench
 from tui.workbench.document import Document
 from tui.workbench.keys import help_lines
 from tui.workbench.panes import Pane
+from tui.workbench.readout import wrapped
 from tui.workbench.screens import Reader
 
 
@@ -26,29 +28,18 @@ class FileActions(Bench):
 
     def action_save(self) -> None:
         """Save to the design's file; ask for one where there is none."""
-        path = self.document.path
-        if path is None:
-            self.action_save_as()
-        elif self.document.changed_on_disk():
-            self.choose(
-                f"{path.name} was changed by another program since it was read here.",
-                {"o": "overwrite it", "a": "save under another name"},
-                lambda key: self._save(path) if key == "o" else self.action_save_as(),
-            )
-        else:
-            self._save(path)
+        self._save_and(lambda: None)
 
     def action_save_as(self) -> None:
         """Save under another name."""
-        here = self.document.path
-        self.ask("save as:", str(here or "design.toml"), self._save_as)
+        self._save_as_and(lambda: None)
 
     def action_open(self) -> None:
         """Open a file."""
 
         def accept(text: str) -> str:
             try:
-                document = documents.opened(Path(text.strip()).expanduser())
+                document = documents.opened(documents.named(text))
             except SessionError as error:
                 return str(error)
             self._show(document)
@@ -89,57 +80,61 @@ class FileActions(Bench):
         else:
             self.say(otherwise)
 
-    def _guarded(self, what: str, then: object) -> None:
+    def _guarded(self, what: str, then: Callable[[], object]) -> None:
         """Do what would lose unsaved work only after asking."""
-        if not callable(then):
-            raise TypeError(then)
         if not self.document.is_changed:
             then()
             return
-
-        def answered(key: str) -> None:
-            if key == "s":
-                self._save_and(then)
-            else:
-                then()
-
         answers = {"s": "save first", "d": f"{what}, the changes are lost"}
-        self.choose(f"{self.document.name} has unsaved changes.", answers, answered)
+        self.choose(
+            f"{self.document.name} has unsaved changes.",
+            answers,
+            lambda key: self._save_and(then) if key == "s" else then(),
+        )
 
-    def _save_and(self, then: object) -> None:
+    def _save_and(self, then: Callable[[], object]) -> None:
+        """Save, and go on once that is done; what another program wrote is asked about."""
         path = self.document.path
         if path is None:
-            self.action_save_as()
-        elif self._save(path) and callable(then):
-            then()
+            self._save_as_and(then)
+        elif self.document.changed_on_disk():
+            self.choose(
+                f"{path.name} was changed by another program since it was read here.",
+                {"o": "overwrite it", "a": "save under another name"},
+                lambda key: self._write(path, then) if key == "o" else self._save_as_and(then),
+            )
+        else:
+            self._write(path, then)
 
-    def _save(self, path: Path) -> bool:
+    def _save_as_and(self, then: Callable[[], object]) -> None:
+        initial = str(self.document.path or "design.toml")
+        self.ask("save as:", initial, lambda text: self._take_name(text, then))
+
+    def _take_name(self, text: str, then: Callable[[], object]) -> str:
+        """Save under a name that was typed; give an objection where that cannot be."""
+        try:
+            path = documents.named(text)
+        except SessionError as error:
+            return str(error)
+        if not self.document.would_overwrite(path):
+            return self._write(path, then)
+        self.choose(
+            f"{path.name} exists already.",
+            {"o": "overwrite it"},
+            lambda _: self._write(path, then),
+        )
+        return ""
+
+    def _write(self, path: Path, then: Callable[[], object]) -> str:
+        """Write the design to a file and go on, or say and give the objection."""
         try:
             self.document.save_to(path)
         except SessionError as error:
             self.say(str(error), "trouble")
-            return False
-        self.show_title()
-        self.say(f"saved {path}", "strong")
-        return True
-
-    def _save_as(self, text: str) -> str:
-        path = Path(text.strip()).expanduser()
-        if not text.strip():
-            return "a file name is needed"
-        if path.exists() and path != self.document.path and not path.is_dir():
-            self.choose(
-                f"{path.name} exists already.",
-                {"o": "overwrite it"},
-                lambda _: self._save(path),
-            )
-            return ""
-        try:
-            self.document.save_to(path)
-        except SessionError as error:
             return str(error)
         self.show_title()
-        self.call_after_refresh(self.say, f"saved {path}", "strong")
+        self.say(f"saved {path}", "strong")
+        then()
         return ""
 
     def _show(self, document: Document) -> None:

@@ -105,7 +105,7 @@ class FormActions(Bench):
                 lambda: values.set_typed(self.session, field.place, field.key, text, self.structure)
             )
 
-        self.ask(self._label(field), initial, accept)
+        self.ask(self._about(field), initial, accept, in_form=True)
 
     def _step(self, direction: int, *, fine: bool) -> None:
         place, key = self._at()

@@ -14,6 +14,7 @@ from tui.figures.energy_figure import MIN_HEIGHT, MIN_WIDTH, Base, base_figure, 
 from tui.reading import Reading
 from tui.study import Study
 from tui.workbench.look import STYLES
+from tui.workbench.readout import dimmed
 
 StyledLines = Sequence[Sequence[tuple[str, str]]]
 
@@ -63,8 +64,8 @@ class FigurePane(Pane):
         self.glyphs = glyphs
         self.base: Base | None = None
 
-    def draw(self, study: Study, reading: Reading | None) -> None:
-        """Draw an answer."""
+    def draw(self, study: Study, reading: Reading | None, *, is_old: bool = False) -> None:
+        """Draw an answer, fainter where it answers something else than is there now."""
         width, height = self.size
         if width < MIN_WIDTH or height < MIN_HEIGHT:
             self.base = None
@@ -73,7 +74,8 @@ class FigurePane(Pane):
         base = self.base
         if base is None or base.study is not study or self._size_of(base) != (width, height):
             base = self.base = base_figure(study, width, height, self.glyphs)
-        self.show(figure(base, reading).lines())
+        lines = figure(base, reading).lines()
+        self.show(dimmed(lines) if is_old else lines)
 
     @staticmethod
     def _size_of(base: Base) -> tuple[int, int]:

@@ -2,6 +2,9 @@
 
 from __future__ import annotations
 
+import textwrap
+from collections.abc import Sequence
+
 from physics.levels import Level
 from physics.structure import Layer, Structure
 from tui.reading import Reading
@@ -42,6 +45,24 @@ def level_lines(study: Study, reading: Reading | None, height: int) -> list[Styl
     lines: list[Styled] = [[(text[0], "head")]]
     seen = range(top + 1, min(top + room, len(rows)) + 1)
     return lines + [[(text[number], "cursor" if number == here else "")] for number in seen]
+
+
+def note_lines(notes: list[str], room: int) -> list[Styled]:
+    """Write the notes below each other, under a head."""
+    if not notes:
+        return [[("no notes on this answer", "faint")]]
+    broken = [part for note in notes for part in wrapped(note, room)]
+    return [[("notes on this answer", "head")], *([(part, "")] for part in broken)]
+
+
+def wrapped(text: str, width: int) -> list[str]:
+    """Break a note into lines, the later ones indented."""
+    return textwrap.wrap(text, max(20, width), initial_indent="- ", subsequent_indent="  ")
+
+
+def dimmed(lines: Sequence[Sequence[tuple[str, str]]]) -> list[Styled]:
+    """Show lines as those of an answer to something else than is there now."""
+    return [[("".join(text for text, _ in line), "faint")] for line in lines]
 
 
 def _at_energy(study: Study, reading: Reading) -> Styled:

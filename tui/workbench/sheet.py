@@ -10,6 +10,11 @@ StyledLine = list[tuple[str, str]]
 NAME_WIDTH = 3
 FIXED_LINES = 2
 """Conditions and column heads stay in sight."""
+LEAST_LINES = 5
+SHARE = 0.36
+"""Most of the height that the form takes, where it stands below the figure."""
+SHARE_BESIDE = 0.5
+"""Most of the height that it takes beside the figure."""
 
 
 @dataclass(frozen=True)
@@ -40,6 +45,23 @@ def field_at(cursor: Cursor, rows: list[Row]) -> Field:
     return rows[inside.row].fields[inside.column]
 
 
+def sheet_height(rows: list[Row], screen_height: int, *, beside: bool) -> int:
+    """Give the form's height: all of its rows, where they leave room for the rest."""
+    share = SHARE_BESIDE if beside else SHARE
+    return max(LEAST_LINES, min(len(rows) - 1 + FIXED_LINES, int(share * screen_height)))
+
+
+def field_place(lines: list[StyledLine]) -> tuple[int, int, int] | None:
+    """Find the cursor's field in the form's lines: its line, first column and width."""
+    for number, line in enumerate(lines):
+        column = 0
+        for text, role in line:
+            if role == "cursor":
+                return number, column, len(text)
+            column += len(text)
+    return None
+
+
 def sheet_lines(rows: list[Row], cursor: Cursor, width: int, height: int) -> list[StyledLine]:
     """Lay the form out in a given room, scrolled so that the cursor is in sight.
 
@@ -58,7 +80,7 @@ def sheet_lines(rows: list[Row], cursor: Cursor, width: int, height: int) -> lis
     for n in range(top, min(top + room, len(stack))):
         at = cursor.column if cursor.row == n + 1 else -1
         lines.append(_stack_line(stack[n], at, first, last))
-    _mark_more(lines, top, len(stack) - top - room, width)
+    lines[0] = _with_more(lines[0], top, max(0, len(stack) - top - room), width)
     return [_fitted(line, width) for line in lines]
 
 
@@ -118,14 +140,15 @@ def _aligned(text: str, width: int, left_aligned: bool) -> str:
     return text.ljust(width) if left_aligned else text.rjust(width)
 
 
-def _mark_more(lines: list[StyledLine], above: int, below: int, width: int) -> None:
-    """Say at the right how many rows are out of sight."""
-    for at, count, word in ((FIXED_LINES, above, "above"), (len(lines) - 1, below, "below")):
-        if count > 0 and at < len(lines):
-            mark = f" {count} more {word}"
-            used = sum(len(text) for text, _ in lines[at])
-            if used + len(mark) <= width:
-                lines[at].append((" " * (width - used - len(mark)) + mark, "faint"))
+def _with_more(line: StyledLine, above: int, below: int, width: int) -> StyledLine:
+    """Say at the right of the conditions how many rows are out of sight."""
+    if not above and not below:
+        return line
+    room = width - sum(len(text) for text, _ in line)
+    full = ", ".join(f"{n} {word}" for n, word in ((above, "above"), (below, "below")) if n)
+    short = " ".join(f"{sign}{n}" for n, sign in ((above, "^"), (below, "v")) if n)
+    text = full if len(full) < room else short
+    return [*line, (text.rjust(room), "faint")] if len(text) < room else line
 
 
 def _fitted(line: StyledLine, width: int) -> StyledLine:

@@ -98,7 +98,16 @@ def turn_layer(session: Session, at: int, structure: Structure | None) -> Sessio
 
 
 def mirror(session: Session, about: int, structure: Structure | None) -> Session:
-    """Make the stack symmetric: what is left of a layer is repeated, mirrored, on its right."""
+    """Make the stack symmetric: what is left of a layer is repeated, mirrored, on its right.
+
+    Raises
+    ------
+    Refusal
+        The layer is graded, so that it has no middle to mirror at; or a grade on its left is not
+        resolved yet.
+    """
+    if _is_graded(session.layers[about]):
+        raise Refusal("a graded layer is not symmetric itself; put the cursor on one without grade")
     before = [_turned(layer, n, structure) for n, layer in enumerate(session.layers[:about])]
     return _with(session, (*session.layers[: about + 1], *reversed(before)))
 

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import re
 from dataclasses import replace
 from typing import Any
 
@@ -29,6 +30,7 @@ STEPS: dict[str, tuple[float, float]] = {
     "bias_V": (0.01, 0.001),
     "temperature_K": (10.0, 1.0),
     "permittivity": (0.1, 0.01),
+    "fraction": (0.01, 0.001),
 }
 """What one step and one fine step add."""
 FACTORS: dict[str, tuple[float, float]] = {
@@ -37,6 +39,10 @@ FACTORS: dict[str, tuple[float, float]] = {
 }
 """What they multiply by, where a quantity spans decades."""
 FIRST_DONORS_CM3 = 1e16
+DECIMALS = 6
+"""Decimals of a fraction that was stepped."""
+_ELEMENT, _FRACTION = r"([A-Z][a-z]?)", r"(0?\.\d+)"
+_ALLOY = re.compile(rf"{_ELEMENT}?{_ELEMENT}{_FRACTION}{_ELEMENT}{_FRACTION}{_ELEMENT}?", re.ASCII)
 AGAINST = {
     "thickness_nm": ("thickness_ml",),
     "thickness_ml": ("thickness_nm",),
@@ -131,11 +137,15 @@ def step(
     Raises
     ------
     Refusal
-        The field is no number, or the step leads out of its range.
+        The field is neither a number nor an alloy, or the step leads out of its range.
     """
     rule = TABLES[place[0]][key]
+    if key in ("material", "to_material"):
+        formula = value_of(session, place, key) or ""
+        by = direction * STEPS["fraction"][fine]
+        return set_value(session, place, key, stepped_formula(formula, by), structure)
     if not isinstance(rule, Range):
-        raise Refusal("only numbers can be stepped")
+        raise Refusal("only numbers and alloys can be stepped")
     value = _stated_or_resolved(session, place, key, structure)
     if key in FACTORS:
         factor = FACTORS[key][fine]
@@ -149,6 +159,29 @@ def step(
     if not rule.holds(stepped):
         raise Refusal(rule.allowed)
     return set_value(session, place, key, stepped, structure)
+
+
+def stepped_formula(formula: str, by: float) -> str:
+    """Give an alloy's first fraction more, and the one that goes with it less.
+
+    Raises
+    ------
+    Refusal
+        The formula is not that of two elements that share a sublattice, or the step would leave
+        only one of them.
+    """
+    match = _ALLOY.fullmatch(formula)
+    if match is None:
+        raise Refusal("only an alloy of two fractions, as Al0.3Ga0.7As, can be stepped; type it")
+    before, first, written, second, other, after = (part or "" for part in match.groups())
+    fraction = round(float(written) + by, DECIMALS)
+    if abs(float(written) + float(other) - 1.0) > 10.0**-DECIMALS or not 0.0 < fraction < 1.0:
+        raise Refusal(f"the fractions lie between 0 and 1, and sum to 1; type {formula} anew")
+    return f"{before}{first}{_digits(fraction)}{second}{_digits(1.0 - fraction)}{after}"
+
+
+def _digits(fraction: float) -> str:
+    return f"{fraction:.{DECIMALS}f}".rstrip("0")
 
 
 def entry_at(session: Session, place: Place) -> Any:
