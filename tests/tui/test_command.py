@@ -243,7 +243,7 @@ def test_refusals_from_standard_input_have_their_line() -> None:
 
 
 def test_what_is_not_proved_is_said() -> None:
-    done = winze("levels", "-", "--json", text=UNPROVED)
+    done = winze("levels", "-", "--json", "--to", "0.1", text=UNPROVED)
     result = json.loads(done.stdout)
     assert done.returncode == 3
     assert result["complete"] is False

@@ -56,6 +56,20 @@ right = { edge_eV = 0.3, mass = 0.09 }
 layer = [ { edge_eV = 0.0, mass = 0.067, thickness_nm = 5.0 } ]
 """
 
+TWIN_WELLS = """\
+format = 1
+left = { edge_eV = 0.0, mass = 0.067 }
+right = { edge_eV = 0.0, mass = 0.067 }
+layer = [
+  { edge_eV = 0.3, mass = 0.092, thickness_nm = 4.0 },
+  { edge_eV = 0.0, mass = 0.067, thickness_nm = 8.0 },
+  { edge_eV = 0.3, mass = 0.092, thickness_nm = 30.0 },
+  { edge_eV = 0.0, mass = 0.067, thickness_nm = 8.0 },
+  { edge_eV = 0.3, mass = 0.092, thickness_nm = 4.0 },
+]
+"""
+"""Two like wells so far apart that their levels share one double: widths mix beyond 1e-6."""
+
 
 @pytest.fixture
 def design(tmp_path: Path) -> str:
@@ -240,3 +254,21 @@ def test_output_is_all_or_nothing(
     for nowhere in (str(tmp_path), str(tmp_path / "no" / "x"), f"{design}/x", "a" * 5000, ""):
         assert main(["levels", design, "-o", nowhere]) == 2
         assert "it cannot be written" in capsys.readouterr().err
+
+
+@pytest.mark.parametrize("command", ["levels", "spectrum", "report", "profile"])
+def test_an_accuracy_that_is_not_reached_is_said_with_the_answer(
+    command: str, capsys: pytest.CaptureFixture[str], tmp_path: Path
+) -> None:
+    path = tmp_path / "twin.toml"
+    path.write_text(TWIN_WELLS)
+    result = json.loads(printed(capsys, command, str(path), "--json", status=3))
+    assert set(HEAD) < set(result)
+    if command in {"levels", "report"}:
+        assert (result["complete"], result["counted"], result["accurate"]) == (True, 4, False)
+        assert result["levels"][0]["width_error"] > 1e-6
+    target = tmp_path / "out"
+    assert main([command, str(path), "-o", str(target)]) == 3
+    assert target.read_text()
+    # a window without the two: the answer is exact again
+    assert printed(capsys, command, str(path), "--from", "0.1", status=0)
