@@ -2,9 +2,12 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
+
 import numpy as np
 import pytest
 
+from tui.figures.axes import lower_axis
 from tui.figures.cells import PLAIN, RICH, Cells, Glyphs
 from tui.figures.curves import Curve, Limits, band_of, column_of, draw, row_of, thinned
 from tui.figures.energy_figure import LABEL_WIDTH, base_figure, figure
@@ -13,6 +16,8 @@ from tui.reading import read_energy, read_level
 from tui.session.demo import demo_text
 from tui.session.read import read_session
 from tui.study import Request, Study, solve
+
+MARKED = ("edge", "density", "curve")
 
 
 @pytest.fixture(scope="module")
@@ -132,6 +137,72 @@ def test_the_energy_in_hand_is_marked(study: Study) -> None:
     assert {"pointer", "line"} <= roles
     assert "density" in {role for line in cells.rows for _, role in line}
     assert base.cells.text() == base_figure(study, 90, 24, PLAIN).cells.text()
+
+
+def test_walls_and_levels_stay_in_front_of_the_density(study: Study) -> None:
+    for glyphs in (RICH, PLAIN):
+        base = base_figure(study, 100, 30, glyphs)
+        cells = figure(base, read_level(study, 1))
+        joined = 0
+        for before, after in zip(base.cells.rows, cells.rows, strict=True):
+            for (there, role), (now, its_role) in zip(before, after, strict=True):
+                if role in ("edge", "level"):
+                    assert its_role == role
+                    joined += now != there
+                    if glyphs is RICH and role == "edge":
+                        assert (ord(there) & ord(now)) == ord(there)  # no dot of the wall is lost
+        assert (joined > 0) == (glyphs is RICH)
+
+
+def test_each_plain_curve_has_a_letter_of_its_own(study: Study) -> None:
+    cells = figure(base_figure(study, 100, 30, PLAIN), read_level(study, 1))
+    letters = {role: {c for row in cells.rows for c, r in row if r == role} for role in MARKED}
+    assert letters == {"edge": {"#"}, "density": {"o"}, "curve": {"*"}}
+
+
+def test_fermi_energies_are_marked_at_their_contacts() -> None:
+    session = read_session(demo_text().replace("2e17", "2e18"), "demo")
+    session = replace(session, conditions=replace(session.conditions, bias_V=0.1))
+    study = solve(Request(session))
+    fermi = study.scene.structure.left.fermi_eV
+    assert fermi is not None
+    assert fermi > 0.0
+    base = base_figure(study, 100, 40, PLAIN)
+    marks = [
+        (row, column - base.position_column)
+        for row, line in enumerate(base.cells.rows)
+        for column, (_, role) in enumerate(line)
+        if role == "fermi"
+    ]
+    # A bias of V lowers the right Fermi energy by V, whatever is built in.
+    right = (base.row_of(fermi - 0.1), base.position_width - 1)
+    assert marks == [(base.row_of(fermi), 0), right]
+
+
+def test_a_superlattice_is_drawn_by_its_outline() -> None:
+    demo = read_session(demo_text(), "demo")
+    barrier, well = demo.layers[1], demo.layers[2]
+    session = replace(demo, layers=(barrier, well) * 40 + (barrier,))
+    base = base_figure(solve(Request(session)), 80, 24, PLAIN)
+    top, bottom = base.row_of(0.3249), base.row_of(0.0)
+    assert top < bottom - 5
+    inside = range(base.position_column + 5, base.log10_t_column - 6)
+    for row in range(top + 1, bottom):
+        assert "edge" not in {base.cells.rows[row][column][1] for column in inside}
+    for row in (top, bottom):
+        assert {base.cells.rows[row][column][0] for column in inside} == {"#"}
+    strokes = {role for line in base.cells.rows for column in inside for _, role in [line[column]]}
+    assert "level" in strokes  # spread over all wells, a level still is seen
+
+
+@pytest.mark.parametrize("width", [9, 14, 40, 90])
+def test_a_lower_axis_keeps_its_title_and_its_numbers(width: int) -> None:
+    first, second = (
+        lower_axis(width, Limits(-8.0, 0.0, 0.0, 1.0), "log10 T", PLAIN).text().split("\n")
+    )
+    assert "log10 T" in first
+    assert len(first) <= width
+    assert second.split()[-1] == "0"
 
 
 def test_cells_keep_inside_their_bounds() -> None:

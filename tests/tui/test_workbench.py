@@ -5,6 +5,7 @@ from __future__ import annotations
 import asyncio
 from collections.abc import AsyncIterator, Callable
 from contextlib import asynccontextmanager
+from dataclasses import replace
 from pathlib import Path
 from typing import Any
 
@@ -118,6 +119,26 @@ async def test_typing_a_value_and_being_refused() -> None:
         assert b.app.session.layers[1].thickness_nm == 3.2
 
 
+async def test_a_value_is_typed_in_its_field() -> None:
+    async with bench() as b:
+        await b.press("down", "enter")
+        line = b.app.query_one(Prompt).line
+        sheet = b.app.query_one("#sheet", Pane)
+        row = line.region.y - sheet.region.y
+        assert sheet._strips[row].text.startswith("  2 first barrier")
+        assert line.region.right == b.app.field_region.right + 1
+        assert "thickness" in b.text("prompt-label")
+        await b.type("3 kg")
+        assert line.value == "3 kg"
+        assert "unit kg" in b.text("prompt-label")
+        await b.pilot.resize_terminal(80, 24)
+        await asyncio.sleep(0.15)
+        await b.settle()
+        assert line.value == "3 kg"
+        assert line.region.y == b.app.field_region.y
+        assert sheet._strips[line.region.y - sheet.region.y].text.startswith("  2 first barrier")
+
+
 async def test_energy_line_snaps_from_level_to_level() -> None:
     async with bench() as b:
         assert b.app.study is not None
@@ -167,6 +188,10 @@ async def test_a_design_that_does_not_compute_is_said_and_mended() -> None:
         assert b.app.structure is None
         assert "old answer shown" in b.text("title")
         assert "AlXs" in b.text("prompt-label")
+        roles = {
+            str(part.style) for strip in b.app.query_one("#figure", Pane)._strips for part in strip
+        }
+        assert roles <= {"dim", "none"}
         await b.press("enter")
         await b.type("AlAs")
         assert b.app.trouble == ""
@@ -193,6 +218,39 @@ async def test_quitting_may_save_first(path: Path) -> None:
         await b.press("plus", "q", "s")
         assert b.app.return_value == 0
         assert load(path)[1] == b.app.session
+
+
+async def test_quitting_the_demo_may_save_it_first(tmp_path: Path) -> None:
+    target = tmp_path / "mine.toml"
+    async with bench() as b:
+        await b.press("plus", "q", "s")
+        assert b.app.return_value is None
+        await b.type(str(target))
+        assert b.app.return_value == 0
+        assert load(target)[1] == b.app.session
+
+
+async def test_saving_first_asks_before_it_overwrites(path: Path) -> None:
+    async with bench(documents.opened(path)) as b:
+        await b.press("plus")
+        path.write_text("# somebody else's\n" + demo_text(), encoding="utf-8")
+        await b.press("q", "s")
+        assert isinstance(b.app.screen, Question)
+        assert "somebody else's" in path.read_text(encoding="utf-8")
+        await b.press("o")
+        assert b.app.return_value == 0
+        assert path.read_text(encoding="utf-8").startswith(COMMENT)
+
+
+@pytest.mark.parametrize("name", ["", "~nobody-of-this-name/x", "x" * 5000, "a/../b/c", "\0"])
+async def test_names_that_cannot_be(name: str) -> None:
+    async with bench() as b:
+        for key in ("W", "o"):
+            await b.press(key)
+            await b.type(name)
+            assert b.app.is_asking
+            assert b.text("prompt-label").strip() not in ("save as:", "open:")
+            await b.press("escape")
 
 
 async def test_a_file_changed_underneath_is_not_overwritten(path: Path) -> None:
@@ -261,6 +319,19 @@ async def test_sizes(size: tuple[int, int]) -> None:
         if size[0] >= 200:
             assert "mainly in" in b.text("levels")
             assert "coherence" in b.text("notes")
+
+
+async def test_long_stacks_are_walked_by_pages() -> None:
+    document = documents.demo()
+    document.session = replace(document.session, layers=document.session.layers * 8)
+    async with bench(document, (80, 24)) as b:
+        await b.press("pagedown")
+        assert b.app.cursor.row == 12
+        await b.press("end")
+        assert b.app.field.place == ("right", 0)
+        assert "36 above" in b.text("sheet")  # 42 rows, 6 of them seen
+        await b.press("pageup", "home")
+        assert b.app.field.place == ("conditions", 0)
 
 
 async def test_too_small_is_said() -> None:

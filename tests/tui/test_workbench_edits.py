@@ -6,6 +6,7 @@ from dataclasses import replace
 
 import pytest
 
+from physics.formula import parse_formula
 from tui.session.demo import demo_text
 from tui.session.model import LayerEntry, Session
 from tui.session.read import read_session
@@ -14,7 +15,7 @@ from tui.session.write import write_session
 from tui.workbench import stacking, values
 from tui.workbench.form import rows_of
 from tui.workbench.keys import KEYS, help_lines
-from tui.workbench.sheet import Cursor, field_at, moved, sheet_lines
+from tui.workbench.sheet import Cursor, field_at, field_place, moved, sheet_height, sheet_lines
 from tui.workbench.typed import Refusal, number
 
 DEMO = read_session(demo_text(), "demo")
@@ -95,6 +96,38 @@ def test_steps() -> None:
         values.step(DEMO, FIRST, "label", 1)
 
 
+@pytest.mark.parametrize(
+    ("formula", "by", "stepped"),
+    [
+        ("Al0.3Ga0.7As", 0.01, "Al0.31Ga0.69As"),
+        ("In.53Ga.47As", -0.001, "In0.529Ga0.471As"),
+        ("GaAs0.51Sb0.49", 0.01, "GaAs0.52Sb0.48"),
+    ],
+)
+def test_alloys_are_stepped(formula: str, by: float, stepped: str) -> None:
+    assert values.stepped_formula(formula, by) == stepped
+    before, after = parse_formula(formula), parse_formula(stepped)
+    moved = [
+        b[1] - a[1]
+        for part in ("cations", "anions")
+        for a, b in zip(getattr(before, part), getattr(after, part), strict=True)
+    ]
+    assert sorted(moved) == pytest.approx(sorted([abs(by), -abs(by), 0.0]))
+
+
+@pytest.mark.parametrize(
+    "formula", ["GaAs", "Al0.005Ga0.995As", "In0.53Ga0.2Al0.27As", "Al0.3Ga0.6As", "mine", ""]
+)
+def test_what_is_no_alloy_of_two_is_not_stepped(formula: str) -> None:
+    with pytest.raises(Refusal, match="type"):
+        values.stepped_formula(formula, -0.01)
+
+
+def test_a_step_on_a_material_keeps_the_thickness() -> None:
+    up = values.step(DEMO, FIRST, "material", 1, structure=STRUCTURE).layers[1]
+    assert (up.material, up.thickness_ml) == ("Al0.41Ga0.59As", 10.0)
+
+
 def test_layers_come_go_and_move() -> None:
     labels = [layer.label for layer in DEMO.layers]
     added = stacking.add_layer(DEMO, 1)
@@ -135,6 +168,12 @@ def test_mirroring_makes_the_stack_symmetric() -> None:
         assert left.right_mass == pytest.approx(right.mass)
 
 
+def test_a_graded_layer_is_no_mirror() -> None:
+    session = values.set_typed(DEMO, FIRST, "to_material", "GaAs", STRUCTURE)
+    with pytest.raises(Refusal, match="graded"):
+        stacking.mirror(session, 1, resolve(session))
+
+
 def test_turning_twice_is_nothing() -> None:
     session = values.set_typed(DEMO, FIRST, "thickness_nm", "3.0", STRUCTURE)
     session = values.set_typed(session, FIRST, "to_material", "AlAs", STRUCTURE)
@@ -171,6 +210,28 @@ def test_the_form_fits_and_shows_the_cursor(width: int, height: int) -> None:
             assert len(lines) <= height
             assert all(sum(len(text) for text, _ in line) <= width for line in lines)
             assert sum(role == "cursor" for line in lines for _, role in line) == 1
+            line, start, length = field_place(lines) or (0, 0, 0)
+            text = "".join(text for text, _ in lines[line])[start : start + length]
+            field = field_at(cursor, rows)
+            assert text.strip().rstrip("~") in field.text or row == 0
+
+
+def test_rows_out_of_sight_are_counted() -> None:
+    session = replace(DEMO, layers=DEMO.layers * 10)
+    rows = rows_of(session, None)
+    first = "".join(text for text, _ in sheet_lines(rows, Cursor(2, 2), 100, 10)[0])
+    assert first.endswith("44 below")  # 52 rows, 8 of them seen
+    middle = "".join(text for text, _ in sheet_lines(rows, Cursor(26, 2), 80, 10)[0])
+    above, below = (int(part[1:]) for part in middle.split()[-2:])
+    assert above + below == 44
+
+
+@pytest.mark.parametrize("height", [18, 24, 35, 50, 200])
+def test_the_form_leaves_room_for_the_figure(height: int) -> None:
+    few, many = rows_of(DEMO, None), rows_of(replace(DEMO, layers=DEMO.layers * 10), None)
+    assert sheet_height(few, height, beside=False) <= len(few) + 1
+    assert sheet_height(many, height, beside=False) <= max(5, 0.4 * height)
+    assert sheet_height(many, height, beside=True) >= sheet_height(many, height, beside=False)
 
 
 def test_every_key_is_listed_once() -> None:

@@ -16,6 +16,7 @@ from numpy.typing import NDArray
 from tui.figures.cells import Cells, Glyphs, Role
 
 FloatArray = NDArray[np.float64]
+IndexArray = NDArray[np.int64]
 _COLOUR = re.compile(r"\x1b\[([0-9;]*)m")
 POINTS_A_COLUMN = 4
 
@@ -98,12 +99,31 @@ def thinned(x: FloatArray, y: FloatArray, columns: int) -> tuple[FloatArray, Flo
     """
     if x.size <= POINTS_A_COLUMN * columns or not x[-1] > x[0]:
         return x, y
-    column = np.minimum((x - x[0]) / (x[-1] - x[0]) * columns, columns - 1).astype(np.int64)
-    order = np.lexsort((y, column))
-    starts = np.flatnonzero(np.diff(column, prepend=-1))
-    ends = np.append(starts[1:], x.size) - 1
+    starts, ends, order = _by_column(x, y, columns)
     keep = np.unique(np.concatenate([starts, ends, order[starts], order[ends]]))
     return x[keep], y[keep]
+
+
+def outline(x: FloatArray, y: FloatArray, columns: int) -> tuple[IndexArray, IndexArray]:
+    """Give the indices of the lowest and of the highest point of each column's worth of y over x.
+
+    Parameters
+    ----------
+    x, y : array, shape (N,)
+        Points, x not falling and not all the same.
+    """
+    starts, ends, order = _by_column(x, y, columns)
+    return order[starts], order[ends]
+
+
+def _by_column(
+    x: FloatArray, y: FloatArray, columns: int
+) -> tuple[IndexArray, IndexArray, IndexArray]:
+    """First and last index of each column's points, and the order by height within columns."""
+    column = np.minimum((x - x[0]) / (x[-1] - x[0]) * columns, columns - 1).astype(np.int64)
+    starts = np.flatnonzero(np.diff(column, prepend=-1))
+    ends = np.append(starts[1:], x.size) - 1
+    return starts, ends, np.lexsort((y, column))
 
 
 def _pieces(curve: Curve, limits: Limits) -> list[tuple[list[float], list[float]]]:

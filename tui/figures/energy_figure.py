@@ -12,11 +12,22 @@ import math
 from dataclasses import dataclass
 
 import numpy as np
-from numpy.typing import NDArray
 
 from physics.field import Profile
+from physics.structure import Layer
+from tui.figures.axes import lower_axis
 from tui.figures.cells import Cells, Glyphs
-from tui.figures.curves import Curve, Limits, band_of, column_of, draw, row_of, thinned
+from tui.figures.curves import (
+    Curve,
+    FloatArray,
+    Limits,
+    band_of,
+    column_of,
+    draw,
+    outline,
+    row_of,
+    thinned,
+)
 from tui.figures.ticks import round_ticks, tick_text
 from tui.reading import Reading
 from tui.study import Study
@@ -24,19 +35,21 @@ from tui.study import Study
 LABEL_WIDTH = 8
 NUMBER_WIDTH = 3
 AXIS_ROWS = 2
-TICK_COLUMNS = 9
-"""A lower axis has at most one tick in so many columns."""
 MIN_WIDTH, MIN_HEIGHT = 44, 7
 PANEL_SHARE = 0.60
 """Share of the width that position gets."""
-PAD_ABOVE, PAD_BELOW = 0.12, 0.04
+PAD_ABOVE, PAD_BELOW = 0.18, 0.04
 """Room above and below the window, as shares of its span."""
+WALL_COLUMNS = 2.5
+"""Columns that a wall needs on the average to be drawn."""
 CONTACT_SHARE = 0.06
 """Length of each contact that is drawn, as a share of the stack's."""
-DENSITY_SHARE = 0.30
-"""Height of the density, as a share of the energy axis."""
+DENSITY_SHARE, LEAST_DENSITY = 0.30, 0.10
+"""Largest and least height of the density, as shares of the energy axis."""
 SITS_FROM = 0.08
-"""Share of a level in a layer from which its stroke is drawn there."""
+"""Share of a level in a layer from which its stroke is drawn there ..."""
+SITS_FROM_MOST = 0.5
+"""... or, where it is spread thin, share of its largest share."""
 SEEN_FROM_DOTS = 0.5
 """A density lower than this many dots is left to the base line."""
 EVEN_POINTS = 200
@@ -66,6 +79,11 @@ class Base:
     def log10_t_column(self) -> int:
         """First column of the right panel."""
         return self.position_column + self.position_width + 1
+
+    @property
+    def layers(self) -> tuple[Layer, ...]:
+        """The layers that are drawn."""
+        return self.study.scene.structure.layers
 
     def row_of(self, energy_eV: float) -> int:
         """Row of an energy."""
@@ -98,8 +116,9 @@ def base_figure(study: Study, width: int, height: int, glyphs: Glyphs) -> Base:
     )
     # One drawing across both panels, x counted in columns: plotext costs by the drawing.
     both = Limits(0.0, room, base.position.bottom, base.position.top)
+    edges = _edges(study.profile, base)
     curves = [
-        _in_columns(_edge(study.profile, base), base.position, position_width, 0),
+        *(_in_columns(edge, base.position, position_width, 0) for edge in edges),
         _in_columns(_transmission(base), base.log10_t, base.log10_t_width, position_width + 1),
     ]
     base.cells.paste(draw(curves, both, room + 1, rows, glyphs), 0, base.position_column)
@@ -146,12 +165,23 @@ def _log10_limits(study: Study) -> Limits:
     return Limits(max(LOWEST_LOG10, min(-2.0, low)), 0.0, position.bottom, position.top)
 
 
-def _edge(profile: Profile, base: Base) -> Curve:
-    x = np.repeat(profile.position_nm, 2)
+def _edges(profile: Profile, base: Base) -> list[Curve]:
+    """Draw the band edge; of walls too close to be told apart, their lower and upper outline."""
+    x = np.repeat(profile.position_nm, 2)[1:-1]
     inner = np.stack([profile.edge_left_eV, profile.edge_right_eV], axis=1).ravel()
-    left, right = profile.contact_edge_eV
-    x = np.concatenate([[base.position.left], x, [base.position.right]])
-    return Curve(x, np.concatenate([[left, left], inner, [right, right]]), "edge")
+    walls = np.count_nonzero(np.diff(inner)[1::2])
+    if walls * WALL_COLUMNS <= base.position_width:
+        return [_with_contacts(x, inner, base)]
+    parts = outline(x, inner, base.position_width)
+    return [_with_contacts(x[n], inner[n], base) for n in parts]
+
+
+def _with_contacts(x_nm: FloatArray, edge_eV: FloatArray, base: Base) -> Curve:
+    """Go on with an edge into both contacts, down or up their faces."""
+    left, right = base.study.profile.contact_edge_eV
+    faces = (0.0, base.study.profile.length_nm)
+    x = np.concatenate([[base.position.left, faces[0]], x_nm, [faces[1], base.position.right]])
+    return Curve(x, np.concatenate([[left, left], edge_eV, [right, right]]), "edge")
 
 
 def _transmission(base: Base) -> Curve:
@@ -169,12 +199,11 @@ def _in_columns(curve: Curve, limits: Limits, width: int, start: int) -> Curve:
 
 
 def _axes(base: Base) -> None:
-    glyphs, cells = base.glyphs, base.cells
+    glyphs, cells, limits = base.glyphs, base.cells, base.position
     columns = (LABEL_WIDTH, base.log10_t_column - 1)
     for row in range(base.rows):
         for column in columns:
             cells.put(row, column, glyphs.upright, "axis")
-    limits = base.position
     ticks = round_ticks(limits.bottom, limits.top, max(2, base.rows // 3))
     for tick in ticks:
         row = base.row_of(tick)
@@ -185,50 +214,35 @@ def _axes(base: Base) -> None:
     if cells.is_blank(0, LABEL_WIDTH - 2):
         cells.put(0, 0, "eV".rjust(LABEL_WIDTH - 1), "axis")
     cells.put(base.rows, LABEL_WIDTH, glyphs.corner, "axis")
-    _lower_axis(base, base.position_column, base.position_width, limits, "x nm")
     cells.put(base.rows, base.log10_t_column - 1, glyphs.cross_below, "axis")
-    _lower_axis(base, base.log10_t_column, base.log10_t_width, base.log10_t, "log10 T")
-
-
-def _lower_axis(base: Base, start: int, width: int, limits: Limits, title: str) -> None:
-    """Draw a panel's lower axis; its title stands in the axis itself, between two ticks."""
-    cells, row = base.cells, base.rows
-    cells.put(row, start, base.glyphs.across * width, "axis")
-    ticks = round_ticks(limits.left, limits.right, max(2, width // TICK_COLUMNS))
-    columns = [column_of(tick, limits, width) for tick in ticks]
-    for tick, column in zip(ticks, columns, strict=True):
-        text = tick_text(tick, ticks)
-        at = min(max(column - len(text) // 2, 0), width - len(text))
-        cells.put(row, start + column, base.glyphs.tick_below, "axis")
-        cells.put(row + 1, start + at, text, "axis")
-    _axis_title(cells, row, start, [-1, *columns, width], title)
-
-
-def _axis_title(cells: Cells, row: int, start: int, ends: list[int], title: str) -> None:
-    """Write a title into the last gap of an axis that has room for it, or else at its end."""
-    gaps = [(a, b) for a, b in itertools.pairwise(ends) if b - a - 1 >= len(title)]
-    first, last = gaps[-1] if gaps else (ends[-1] - len(title) - 1, ends[-1])
-    room = last - first - 1
-    text = f" {title} " if room >= len(title) + 2 else title
-    cells.put(row, start + first + 1 + (room - len(text)) // 2, text, "axis")
+    for start, width, seen, title in (
+        (base.position_column, base.position_width, limits, "x nm"),
+        (base.log10_t_column, base.log10_t_width, base.log10_t, "log10 T"),
+    ):
+        cells.paste(lower_axis(width, seen, title, glyphs), base.rows, start)
 
 
 def _levels(base: Base) -> None:
     """Draw each level where it sits, and its number at the right of both panels."""
-    profile, cells = base.study.profile, base.cells
+    spans, cells, taken = _layer_columns(base), base.cells, set()
     for number, level in enumerate(base.study.levels.levels, start=1):
         row = base.row_of(level.energy_eV)
-        for layer, share in enumerate(level.share_by_layer):
-            if share < SITS_FROM:
-                continue
-            pieces = np.flatnonzero(profile.layer_index == layer)
-            start, stop = profile.position_nm[pieces[0]], profile.position_nm[pieces[-1] + 1]
-            first, last = (column_of(x, base.position, base.position_width) for x in (start, stop))
-            stroke = base.glyphs.level * max(1, last - first - 1)
-            cells.put(row, base.position_column + first + 1, stroke, "level", over=False)
-        at = cells.width - NUMBER_WIDTH
-        if cells.is_blank(row, at + 1) and cells.is_blank(row, at + 2):
-            cells.put(row, at, str(number).rjust(NUMBER_WIDTH), "level")
+        if row in taken:  # there is one line for all of them
+            continue
+        taken.add(row)
+        least = min(SITS_FROM, SITS_FROM_MOST * max(level.share_by_layer))
+        for (first, last), share in zip(spans, level.share_by_layer, strict=True):
+            if share >= least:
+                stroke = base.glyphs.level * max(1, last - first - 1)
+                cells.put(row, base.position_column + first + 1, stroke, "level", over=False)
+        cells.put(row, cells.width - NUMBER_WIDTH, str(number).rjust(NUMBER_WIDTH), "level")
+
+
+def _layer_columns(base: Base) -> list[tuple[int, int]]:
+    """First and last column of each layer."""
+    faces = np.concatenate([[0.0], np.cumsum([x.thickness_nm for x in base.layers])])
+    columns = [column_of(x, base.position, base.position_width) for x in faces]
+    return list(itertools.pairwise(columns))
 
 
 def _fermi_energies(base: Base) -> None:
@@ -265,11 +279,10 @@ def _density(base: Base, cells: Cells, reading: Reading, row: int) -> None:
                 cells.put(n, at, base.glyphs.fill, "fill", over=False)
 
 
-def _heights(
-    density_per_nm: NDArray[np.float64], base: Base, energy_eV: float
-) -> NDArray[np.float64]:
+def _heights(density_per_nm: FloatArray, base: Base, energy_eV: float) -> FloatArray:
     """Energies that the density's curve runs through."""
     span = base.position.top - base.position.bottom
-    room = max(0.5 * DENSITY_SHARE * span, min(DENSITY_SHARE * span, base.position.top - energy_eV))
-    heights: NDArray[np.float64] = energy_eV + density_per_nm / density_per_nm.max() * room
+    room = min(DENSITY_SHARE * span, base.position.top - energy_eV)
+    room = max(room, LEAST_DENSITY * span)
+    heights: FloatArray = energy_eV + density_per_nm / density_per_nm.max() * room
     return heights

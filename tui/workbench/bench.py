@@ -31,7 +31,7 @@ from tui.workbench.form import Field, Row, rows_of
 from tui.workbench.keys import KEYS
 from tui.workbench.panes import FigurePane, Pane
 from tui.workbench.prompt import Accept, Prompt
-from tui.workbench.readout import dimmed, level_lines, note_lines, reading_lines
+from tui.workbench.readout import answer_state, dimmed, level_lines, note_lines, reading_lines
 from tui.workbench.screens import Question
 from tui.workbench.sheet import Cursor, field_at, field_place, moved, sheet_height, sheet_lines
 from tui.workbench.solver import Hand, Outcome, Solver, Task
@@ -162,7 +162,7 @@ class Bench(App[int], inherit_bindings=False):
 
     def _take(self, outcome: Outcome) -> None:
         """Show an outcome, unless something newer has been asked for."""
-        if outcome.task is not self.asked:
+        if outcome.task is not self.asked or not self.is_running:
             return
         self.asked = None
         self._take_trouble(outcome.trouble)
@@ -240,12 +240,8 @@ class Bench(App[int], inherit_bindings=False):
         pane.show([[(left[:room].ljust(room), "bar"), (right, role)]])
 
     def _state(self) -> str:
-        if self.asked is not None and time.monotonic() - self._asked_at > SLOW_S:
-            return f"computing {time.monotonic() - self._asked_at:.0f} s; old answer shown"
-        if self.trouble:
-            return "old answer shown" if self.study is not None else "no answer"
-        count = len(self.notes())
-        return "" if count == 0 else f"{count} note{'s' * (count > 1)}: i"
+        waited_s = 0.0 if self.asked is None else time.monotonic() - self._asked_at
+        return answer_state(self.study, self.trouble, waited_s if waited_s > SLOW_S else 0.0)
 
     def _show_progress(self) -> None:
         """Say how long it takes, for as long as it does; nothing ticks otherwise."""
@@ -292,7 +288,9 @@ class Bench(App[int], inherit_bindings=False):
         self._resizing = self.set_timer(RESIZE_PAUSE_S, self.show_all)
 
     def show_all(self) -> None:
-        """Show everything again."""
+        """Show everything again, unless it is just ending."""
+        if not self.is_running:
+            return
         width, height = self.size
         need = f"winze needs {SMALLEST[0]} x {SMALLEST[1]} cells; this is {width} x {height}"
         self.query_one("#small", Pane).show([[(need, "strong")]])

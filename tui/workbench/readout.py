@@ -47,6 +47,23 @@ def level_lines(study: Study, reading: Reading | None, height: int) -> list[Styl
     return lines + [[(text[number], "cursor" if number == here else "")] for number in seen]
 
 
+def answer_state(study: Study | None, trouble: str, waited_s: float) -> str:
+    """Say how the answer that is shown stands, in a few words.
+
+    Parameters
+    ----------
+    waited_s : float
+        How long the next one has been computed; 0 where that is not worth saying.
+    """
+    shown = "" if study is None else "old answer shown"
+    if waited_s:
+        return "; ".join(part for part in (f"computing {waited_s:.0f} s", shown) if part)
+    if trouble:
+        return shown or "no answer"
+    count = 0 if study is None else len(study.advice)
+    return f"{count} note{'s' * (count > 1)}: i" if count else ""
+
+
 def note_lines(notes: list[str], room: int) -> list[Styled]:
     """Write the notes below each other, under a head."""
     if not notes:
