@@ -58,6 +58,7 @@ class Solver:
     def __init__(self, deliver: Callable[[Outcome], None]) -> None:
         self._deliver = deliver
         self._wanted: Task | None = None
+        self._doing: Task | None = None
         self._closed = False
         self._changed = threading.Condition()
         self._study: Study | None = None
@@ -102,7 +103,7 @@ class Solver:
                 task, self._wanted = self._wanted, None
                 if self._closed or task is None:
                     return
-                self._busy = True
+                self._busy, self._doing = True, task
             begun = time.monotonic()
             try:
                 outcome = self._answer(task, self._watch)
@@ -115,7 +116,9 @@ class Solver:
 
     def _watch(self) -> None:
         # Read without the lock: a stale value only costs one more block of work.
-        if self._closed or self._wanted is not None:
+        wanted, doing = self._wanted, self._doing
+        is_other = wanted is not None and doing is not None and not _same_design(wanted, doing)
+        if self._closed or is_other:
             raise _Stale
 
     def _answer(self, task: Task, watch: Callable[[], None]) -> Outcome:
@@ -129,6 +132,11 @@ class Solver:
             return Outcome(task, None, None, str(error))
         except MemoryError:
             return Outcome(task, None, None, "there is not enough memory for this design")
+
+
+def _same_design(one: Task, other: Task) -> bool:
+    """Whether two tasks only differ in what is in hand, so that one's study serves the other."""
+    return one.request.session is other.request.session
 
 
 def watched(study: Study, watch: Callable[[], None]) -> Study:
