@@ -198,3 +198,45 @@ def test_redrawn_after_the_shell_had_the_screen(terminals: list[Terminal]) -> No
     os.kill(t.pid, signal.SIGCONT)
     t.read(0.8)
     assert t.screen.display == before
+
+
+@pytest.mark.parametrize(
+    ("burst", "shown"),
+    [
+        ("3.25\r", "3.2500"),
+        ("47\x7f.2\x7f5\r+", "4.7827"),  # 4.5 nm and a monolayer
+        ("e\x15.0875\rn", "level 2  245"),
+        ("q\x1b", "q quit"),
+        ("+q", "unsaved changes"),
+    ],
+)
+def test_what_comes_at_once_is_taken_in_turn(
+    terminals: list[Terminal], burst: str, shown: str
+) -> None:
+    t = Terminal(80, 24, TERM="xterm-256color", **UTF8)
+    terminals.append(t)
+    t.until("proved complete")
+    t.read(0.3)
+    t.press(burst)
+    t.until(shown, 5.0)
+
+
+def test_a_burst_may_quit(terminals: list[Terminal]) -> None:
+    t = Terminal(80, 24, TERM="xterm-256color", **UTF8)
+    terminals.append(t)
+    t.until("proved complete")
+    t.press("+++qd")
+    assert t.wait() == 0
+
+
+def test_a_slow_link_is_not_flooded(terminals: list[Terminal]) -> None:
+    t = Terminal(110, 35, TERM="xterm-256color", **UTF8)
+    terminals.append(t)
+    t.until("proved complete")
+    t.read(0.5)
+    before = len(t.raw)
+    for _ in range(60):  # nothing is read meanwhile: the link is as slow as can be
+        t.press("+")
+        time.sleep(0.03)
+    t.until("21.95", 5.0)  # 5 nm and 60 monolayers
+    assert len(t.raw) - before < 60_000

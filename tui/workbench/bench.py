@@ -11,7 +11,7 @@ from collections.abc import Callable
 from typing import Any, ClassVar
 
 from textual import events
-from textual.app import App, ComposeResult
+from textual.app import ComposeResult
 from textual.binding import Binding, BindingType
 from textual.containers import Container
 from textual.geometry import Region
@@ -28,7 +28,7 @@ from tui.session.resolve import resolve
 from tui.study import Request, Study
 from tui.workbench.document import Document
 from tui.workbench.form import Field, Row, rows_of
-from tui.workbench.keys import KEYS
+from tui.workbench.keys import KEYS, KeysInTurn
 from tui.workbench.panes import FigurePane, Pane
 from tui.workbench.prompt import Accept, Prompt
 from tui.workbench.readout import answer_state, dimmed, level_lines, note_lines, reading_lines
@@ -43,7 +43,7 @@ SLOW_S, PROGRESS_S = 0.3, 1.0
 HINT = "? keys   Enter change   + - step   n p level   a d x layer   w save   q quit"
 
 
-class Bench(App[int], inherit_bindings=False):
+class Bench(KeysInTurn[int], inherit_bindings=False):
     """State and panes of the workbench."""
 
     CSS_PATH = "bench.tcss"
@@ -72,6 +72,7 @@ class Bench(App[int], inherit_bindings=False):
         self.reading: Reading | None = None
         self.trouble = ""
         self.asked: Task | None = None
+        self._due: Task | None = None
         self._asked_at = 0.0
         self.field_region = Region(0, 0, 0, 0)
         self._form_height = 0
@@ -139,14 +140,16 @@ class Bench(App[int], inherit_bindings=False):
         self.compute()
 
     def compute(self) -> None:
-        """Ask the solver for the answer to what is there now."""
-        self.asked = Task(Request(self.session), self.hand)
+        """Ask for the answer to what is there now, once all keys that have come are acted on."""
+        self.asked = self._due = Task(Request(self.session), self.hand)
         self._asked_at = time.monotonic()
-        # Behind the keys that have come meanwhile: only the last of them is answered.
-        self.call_later(self._compute_now, self.asked)
+        if not self.are_keys_waiting:
+            self.all_keys_done()
 
-    def _compute_now(self, task: Task) -> None:
-        if task is not self.asked:
+    def all_keys_done(self) -> None:
+        """Compute what was asked for last."""
+        task, self._due = self._due, None
+        if task is None:
             return
         outcome = self.solver.answer_at_once(task)
         if outcome is None:
@@ -268,15 +271,13 @@ class Bench(App[int], inherit_bindings=False):
         self.query_one("#prompt", Prompt).ask(f" {label} ", initial, accept, field)
 
     def choose(self, question: str, answers: dict[str, str], then: Callable[[str], Any]) -> None:
-        """Ask a question; ``then`` is called with the key of an answer, not when it is left."""
+        """Ask a question; ``then`` is called with the key of an answer, unless it is left."""
         self.push_screen(Question(question, answers), lambda key: then(key) if key else None)
 
     @property
     def is_asking(self) -> bool:
         """Whether a line of text is being typed."""
         return self.query_one("#prompt", Prompt).is_open
-
-    # Size
 
     def on_resize(self, event: events.Resize) -> None:
         """Choose the layout; draw once the resizing has paused."""

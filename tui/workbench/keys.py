@@ -1,8 +1,19 @@
-"""The one registry of keys: the bindings and the help screen both come from it."""
+"""The one registry of keys: the bindings and the help screen both come from it.
+
+And keys one after the other: over a slow link a word arrives at once, and its first letter may open
+the line that the rest belongs into. Textual hands on all of them before it acts on the first.
+"""
 
 from __future__ import annotations
 
+import time
+from collections import deque
 from dataclasses import dataclass
+from typing import Generic, TypeVar
+
+from textual import events
+from textual.app import App
+from textual.message_pump import MessagePump
 
 
 @dataclass(frozen=True)
@@ -35,8 +46,8 @@ KEYS = (
     Key("left,shift+tab", "left", "go(0, -1)", "one field to the left", FORM),
     Key("right,tab", "right", "go(0, 1)", "one field to the right", FORM),
     Key("enter", "Enter", "change", "type a value; a digit begins one at once", FORM),
-    Key("plus,equals_sign", "+", "step(1)", "up by one monolayer or one unit", FORM),
-    Key("minus", "-", "step(-1)", "down by one monolayer or one unit", FORM),
+    Key("plus,equals_sign", "+", "step(1)", "up by a monolayer or a unit, an alloy by 0.01", FORM),
+    Key("minus", "-", "step(-1)", "down by a monolayer or a unit, an alloy by 0.01", FORM),
     Key("greater_than_sign", ">", "fine_step(1)", "up by a tenth of a unit", FORM),
     Key("less_than_sign", "<", "fine_step(-1)", "down by a tenth of a unit", FORM),
     Key("backspace,delete", "Backspace", "clear", "empty the field", FORM),
@@ -68,6 +79,58 @@ KEYS = (
     Key("ctrl+l", "Ctrl+L", "redraw", "draw the screen anew", SCREEN),
     Key("ctrl+z", "Ctrl+Z", "suspend_process", "leave for the shell; fg comes back", SCREEN),
 )
+
+
+LONGEST_KEY_S = 0.5
+"""A key that takes longer no longer holds up the next one; none should."""
+Result = TypeVar("Result")
+
+
+class KeysInTurn(App[Result], Generic[Result], inherit_bindings=False):
+    """An application that takes a key, or what is pasted, only when the one before is done."""
+
+    def __init__(self) -> None:
+        super().__init__()
+        self._typed: deque[events.Key | events.Paste] = deque()
+        self._begun_at = 0.0
+
+    @property
+    def are_keys_waiting(self) -> bool:
+        """Whether more has been typed than was acted on."""
+        return bool(self._typed)
+
+    async def on_event(self, event: events.Event) -> None:
+        """Put what is typed into the queue, anything else on its way."""
+        if not isinstance(event, (events.Key, events.Paste)) or event.is_forwarded:
+            await super().on_event(event)
+            return
+        self._typed.append(event)
+        late = time.monotonic() - self._begun_at > LONGEST_KEY_S
+        if len(self._typed) == 1 or late:
+            await self._take_next()
+
+    async def _take_next(self) -> None:
+        self._begun_at = time.monotonic()
+        target = self.focused or self.screen
+        event = self._typed[0]
+        await super().on_event(event)
+        # Twice: what a binding of the target does begins its own way once the first has ended.
+        await self._follow(event, 2 * list(target.ancestors_with_self))
+
+    async def _follow(self, event: events.Event, way: list[MessagePump]) -> None:
+        """Go the way that a key goes, behind it; where it ends the key has done what it does."""
+        while way:
+            if way.pop(0).call_later(self._follow, event, way):
+                return
+        if self._typed and self._typed[0] is event:
+            self._typed.popleft()
+            if self._typed:
+                await self._take_next()
+            else:
+                self.all_keys_done()
+
+    def all_keys_done(self) -> None:
+        """Do what is better done once than after each key of a burst."""
 
 
 def help_lines() -> list[str]:

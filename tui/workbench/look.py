@@ -1,12 +1,14 @@
-"""How roles look: colours that a colour-blind eye tells apart, and never colour alone.
+"""How roles look, and what the terminal can show and take.
 
-The palette is Okabe and Ito's (Color Universal Design, 2008; from memory), in its middle tones,
-which read on dark and on light backgrounds. All else is in the terminal's own colours.
+Nothing is said by colour alone. The palette is Okabe and Ito's (Color Universal Design, 2008; from
+memory), in its middle tones, which read on dark and on light backgrounds and which a colour-blind
+eye tells apart. All else is in the terminal's own colours.
 """
 
 from __future__ import annotations
 
 import os
+import select
 import sys
 from collections.abc import Mapping
 
@@ -41,6 +43,14 @@ def glyphs_for_terminal() -> Glyphs:
     if encoding != "utf8" or os.environ.get("TERM", "") == "linux":
         return PLAIN
     return RICH if _locale_is_utf8(os.environ) else PLAIN
+
+
+def takes_more() -> bool:
+    """Whether the terminal has taken what was sent: on a slow link it falls behind."""
+    screen = sys.__stderr__  # Textual writes there
+    if os.name != "posix" or screen is None or screen.closed:
+        return True
+    return bool(select.select([], [screen.fileno()], [], 0.0)[1])
 
 
 def _locale_is_utf8(environment: Mapping[str, str]) -> bool:

@@ -7,15 +7,18 @@ from collections.abc import Sequence
 from rich.segment import Segment
 from textual.geometry import Region, Size
 from textual.strip import Strip
+from textual.timer import Timer
 from textual.widget import Widget
 
 from tui.figures.cells import Glyphs
 from tui.figures.energy_figure import MIN_HEIGHT, MIN_WIDTH, Base, base_figure, figure
 from tui.reading import Reading
 from tui.study import Study
-from tui.workbench.look import STYLES
+from tui.workbench.look import STYLES, takes_more
 from tui.workbench.readout import dimmed
 
+BEHIND_PAUSE_S = 0.1
+"""How long a slow link is left alone before it is looked at again."""
 StyledLines = Sequence[Sequence[tuple[str, str]]]
 
 
@@ -27,6 +30,8 @@ class Pane(Widget):
     def __init__(self, *, id: str) -> None:  # noqa: A002  Textual's own name
         super().__init__(id=id)
         self._strips: list[Strip] = []
+        self._stale: set[int] = set()
+        self._waiting: Timer | None = None
 
     def show(self, lines: StyledLines) -> None:
         """Show these lines; the screen is touched only where they differ from what is there."""
@@ -43,8 +48,19 @@ class Pane(Widget):
         if grown and self.styles.height is not None and self.styles.height.is_auto:
             self.refresh(layout=True)
         elif changed:
+            self._stale.update(changed)
+            if self._waiting is None:
+                self._paint()
+
+    def _paint(self) -> None:
+        """Have the lines drawn that differ, once the terminal has taken what was sent before."""
+        self._waiting = None
+        if takes_more():
             width = max(1, self.size.width)
-            self.refresh(*(Region(0, n, width, 1) for n in changed))
+            self.refresh(*(Region(0, n, width, 1) for n in sorted(self._stale)))
+            self._stale.clear()
+        else:
+            self._waiting = self.set_timer(BEHIND_PAUSE_S, self._paint)
 
     def render_line(self, y: int) -> Strip:
         """Hand a line out, filled up to the pane's width."""

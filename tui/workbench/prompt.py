@@ -77,7 +77,8 @@ class Prompt(Horizontal):
         line = self.line
         line.value = initial
         line.cursor_position = len(initial)
-        line.focus()
+        # At once: the next letter belongs here.
+        self.screen.set_focus(line)
 
     def move_to(self, field: Region) -> None:
         """Put the line over a field of the form, if that is where it is typed."""
