@@ -25,7 +25,7 @@ def sector_series(
     mass: FloatArray,
     mass_rise: FloatArray,
     *,
-    reach: float,
+    reach: float | FloatArray,
     stops: FloatArray,
 ) -> FloatArray:
     """Sum the series of sectors with linear edge and mass.
@@ -41,7 +41,7 @@ def sector_series(
     length, edge, edge_rise, mass, mass_rise : ndarray, shape (S,)
         Length in nm, edge at the left face above the expansion's centre and its rise across the
         sector in eV, mass at the left face and its rise in m0.
-    reach : float
+    reach : float, or ndarray of shape (S, 1)
         Energy in eV that the expansion variable is scaled by.
     stops : ndarray, shape (P,)
         Fractions of the length at which the matrices are wanted.

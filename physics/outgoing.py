@@ -21,8 +21,8 @@ from numpy.typing import NDArray
 from physics.constants import HBAR2_OVER_2M0_EV_NM2 as C_EV_NM2
 from physics.errors import EnergyError
 from physics.field import Profile
-from physics.scattering import NODE_GUARD
-from physics.sectors import Sectors, matrices, matrices_and_slopes
+from physics.scattering import NODE_GUARD, Contacts
+from physics.sectors import Expanded, Sectors, matrices, matrices_and_slopes
 
 ComplexArray = NDArray[np.complex128]
 FloatArray = NDArray[np.float64]
@@ -50,7 +50,7 @@ class Sheet:
 
 
 def outward_ratio_eV_nm(
-    profile: Profile, side: int, is_open: bool, energy_eV: ComplexArray
+    profile: Contacts, side: int, is_open: bool, energy_eV: ComplexArray
 ) -> ComplexArray:
     """Outward f / psi of the wave that leaves (open) or decays (closed) in a contact.
 
@@ -67,7 +67,7 @@ def outward_ratio_eV_nm(
 
 
 def mismatch(
-    profile: Profile, sectors: Sectors, sheet: Sheet, energy_eV: ComplexArray
+    profile: Contacts, sectors: Expanded, sheet: Sheet, energy_eV: ComplexArray
 ) -> tuple[ComplexArray, ComplexArray]:
     """Evaluate F and dF/dE, both over one positive factor per energy, each of shape (E,)."""
     g = outward_ratio_eV_nm(profile, 1, sheet.right_open, energy_eV)
@@ -90,16 +90,20 @@ def mismatch(
 
 
 def states_below(
-    profile: Profile, sectors: Sectors, sheet: Sheet, energy_eV: FloatArray
+    profile: Contacts,
+    sectors: Expanded,
+    sheet: Sheet,
+    energy_eV: FloatArray,
+    wall_eV_nm: float = 0.0,
 ) -> NDArray[np.int64]:
-    """Count the eigenvalues of the closed stack below each real energy, shape (E,).
+    """Count the eigenvalues of the closed stack below each real energy, in the energies' shape.
 
     Sturm's oscillation theorem: the nodes of the state that satisfies the right end's condition.
-    A closed contact lets it decay; an open one is replaced by a wall with f = 0, so that on an
-    open sheet these are starting points for the levels, not the levels.
+    A closed contact lets it decay; an open one is replaced by a wall that imposes the inward
+    f = wall psi, so that on an open sheet these are starting points for the levels, not the levels.
     """
     ends = [
-        _closed_ratio(profile, side, is_open, energy_eV)
+        _closed_ratio(profile, side, is_open, energy_eV, wall_eV_nm)
         for side, is_open in enumerate((sheet.left_open, sheet.right_open))
     ]
     x = -ends[1]
@@ -111,10 +115,12 @@ def states_below(
     return count + (x > ends[0])
 
 
-def _closed_ratio(profile: Profile, side: int, is_open: bool, energy_eV: FloatArray) -> FloatArray:
-    """Inward f / psi of the decaying wave in a closed contact; 0 for the wall of an open one."""
+def _closed_ratio(
+    profile: Contacts, side: int, is_open: bool, energy_eV: FloatArray, wall_eV_nm: float
+) -> FloatArray:
+    """Inward f / psi of the decaying wave in a closed contact; the wall's for an open one."""
     if is_open:
-        return np.zeros_like(energy_eV)
+        return np.full_like(energy_eV, wall_eV_nm)
     below = np.maximum(profile.contact_edge_eV[side] - energy_eV, 0.0)
     return np.sqrt(C_EV_NM2 / profile.contact_mass[side] * below)
 

@@ -15,6 +15,7 @@ from __future__ import annotations
 
 import math
 from dataclasses import dataclass, fields
+from typing import Protocol
 
 import numpy as np
 from numpy.typing import NDArray
@@ -22,7 +23,7 @@ from numpy.typing import NDArray
 from physics.constants import HBAR2_OVER_2M0_EV_NM2 as C_EV_NM2
 from physics.constants import HBAR_EV_S
 from physics.field import Profile
-from physics.sectors import Sectors, cut, matrices_and_slopes
+from physics.sectors import Expanded, Sectors, cut, matrices, matrices_and_slopes
 
 FloatArray = NDArray[np.float64]
 
@@ -30,6 +31,18 @@ ENERGIES_AT_ONCE = 65_536
 """Energies carried through the stack at once: millions would fill the memory, not go faster."""
 NODE_GUARD = 1e-20
 """Relative shift that keeps a division by an exact node finite, far below rounding."""
+
+
+class Contacts(Protocol):
+    """What scattering wants to know of the contacts, of one profile or of a family of them."""
+
+    @property
+    def contact_edge_eV(self) -> tuple[float, float] | tuple[FloatArray, FloatArray]:
+        """Band edge in the left and in the right contact, bias included."""
+
+    @property
+    def contact_mass(self) -> tuple[float, float] | tuple[FloatArray, FloatArray]:
+        """Mass in the left and in the right contact, in m0."""
 
 
 @dataclass(frozen=True, eq=False)
@@ -124,7 +137,31 @@ def scatter_through(profile: Profile, sectors: Sectors, energy_eV: FloatArray) -
     )
 
 
-def contact_flux_eV_nm(profile: Profile, side: int, energy_eV: FloatArray) -> FloatArray:
+def log_transmission_through(
+    profile: Contacts, sectors: Expanded, energy_eV: FloatArray
+) -> FloatArray:
+    """Natural logarithm of T alone, in the shape of the energies; -inf where a contact is closed.
+
+    As `scatter_through`, at less than half its cost.
+    """
+    q_left = contact_flux_eV_nm(profile, 0, energy_eV)
+    q_right = contact_flux_eV_nm(profile, 1, energy_eV)
+    x, y = np.where(q_right < 0.0, q_right, 0.0), np.where(q_right > 0.0, q_right, 0.0)
+    log_amplitude = np.zeros_like(energy_eV)
+    for _, (a, b, c, d) in matrices(sectors, energy_eV):
+        by = b * y
+        w = d - b * x + NODE_GUARD * d
+        size = w * w + by * by
+        x, y = ((a * x - c) * w - a * by * y) / size, y / size
+        log_amplitude += np.log(size)
+    open_both = (q_left > 0.0) & (q_right > 0.0)
+    with np.errstate(divide="ignore", invalid="ignore"):
+        log_t = np.log(4.0 * q_left * q_right / ((q_left + y) ** 2 + x * x)) - log_amplitude
+    result: FloatArray = np.where(open_both, log_t, -np.inf)
+    return result
+
+
+def contact_flux_eV_nm(profile: Contacts, side: int, energy_eV: FloatArray) -> FloatArray:
     """``c k / m`` in a contact where it is open; ``-c kappa / m`` where it is closed.
 
     Parameters

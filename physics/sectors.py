@@ -18,7 +18,7 @@ from __future__ import annotations
 
 from collections.abc import Callable, Iterator, Sequence
 from dataclasses import dataclass
-from typing import Any
+from typing import Any, Protocol
 
 import numpy as np
 from numpy.typing import NDArray
@@ -34,12 +34,29 @@ SECTOR_PHASE = 1.5
 """Largest (wavevector x length) of a sector: the series loses less than one digit up to here."""
 BLOCK_ELEMENTS = 250_000
 """Matrix elements held at once (2 MB): blocks that stay in the cache run fastest."""
-BUILD_BLOCK = 2048
-"""Sectors whose series are summed at once."""
+BUILD_BLOCK = 256
+"""Sectors whose series are summed at once: what stays in the cache."""
 MAX_SECTORS = 400_000
 """A stack that needs more is refused rather than left to run for hours."""
 
 FloatArray = NDArray[np.float64]
+
+
+class Expanded(Protocol):
+    """Transfer matrices as polynomials in the energy, of one profile or of a family of them."""
+
+    @property
+    def centre_eV(self) -> float | FloatArray:
+        """Energy about which the polynomials are expanded."""
+
+    @property
+    def reach_eV(self) -> float | FloatArray:
+        """Energy distance that the expansion variable is scaled by."""
+
+    def each(
+        self, powers: tuple[NDArray[Any], ...], *, forward: bool
+    ) -> Iterator[tuple[int, list[NDArray[Any]]]]:
+        """Yield each sector's index with its elements (4, ...) for every set of powers."""
 
 
 @dataclass(frozen=True, eq=False)
@@ -77,6 +94,29 @@ class Sectors:
         """Length of each sector, shape (S,)."""
         return np.diff(self.position_nm)
 
+    def each(
+        self, powers: tuple[NDArray[Any], ...], *, forward: bool
+    ) -> Iterator[tuple[int, list[NDArray[Any]]]]:
+        """Yield each sector with its products, (4, E) for every set of powers.
+
+        Distinct sectors are multiplied out once where they are few; else in runs of sectors, short
+        enough to stay in the cache.
+        """
+        table = self.coefficients[-1]  # (4, U, D)
+        energies = max(1, powers[0].shape[1])
+        size = max(1, BLOCK_ELEMENTS // (4 * energies))
+        few = table.shape[1] <= min(size, self.count // 2)
+        whole = [_product(table, power) for power in powers] if few else []
+        starts = range(0, self.count, size)
+        for start in starts if forward else reversed(starts):
+            self.watch()
+            kinds = self.kind[start : start + size]
+            values = whole if few else [_product(table[:, kinds], power) for power in powers]
+            order = range(kinds.size)
+            for index in order if forward else reversed(order):
+                at = kinds[index] if few else index
+                yield start + index, [value[:, at] for value in values]
+
 
 def cut(
     profile: Profile,
@@ -112,18 +152,7 @@ def cut(
     position = np.append(start + (end - start) * left, profile.length_nm)
     centre = 0.5 * (low_eV + high_eV)
     reach = max(0.5 * (high_eV - low_eV) + depth_eV, 1e-3)
-    edge_rise = (profile.edge_right_eV - profile.edge_left_eV)[piece]
-    mass_rise = (profile.mass_right - profile.mass_left)[piece]
-    described = np.stack(
-        [
-            share * profile.thickness_nm[piece],
-            profile.edge_left_eV[piece] + edge_rise * left - centre,
-            edge_rise * share,
-            profile.mass_left[piece] + mass_rise * left,
-            mass_rise * share,
-        ],
-        axis=1,
-    )
+    described = described_sectors(profile, piece, left, share, centre)
     distinct, kind = np.unique(described, axis=0, return_inverse=True)
     stop_array = np.asarray(stops, dtype=np.float64)
     coefficients = np.empty((stop_array.size, 4, distinct.shape[0], DEGREE + 1))
@@ -135,16 +164,42 @@ def cut(
     )
 
 
+def described_sectors(
+    profile: Profile,
+    piece: NDArray[np.int64],
+    left: FloatArray,
+    share: FloatArray,
+    centre_eV: float,
+) -> FloatArray:
+    """Give what `sector_series` wants to know of each sector, shape (S, 5).
+
+    ``piece``, ``left`` and ``share``, each of shape (S,), say which piece a sector belongs to, at
+    which share of it the sector begins and which share of it the sector is.
+    """
+    edge_rise = (profile.edge_right_eV - profile.edge_left_eV)[piece]
+    mass_rise = (profile.mass_right - profile.mass_left)[piece]
+    return np.stack(
+        [
+            share * profile.thickness_nm[piece],
+            profile.edge_left_eV[piece] + edge_rise * left - centre_eV,
+            edge_rise * share,
+            profile.mass_left[piece] + mass_rise * left,
+            mass_rise * share,
+        ],
+        axis=1,
+    )
+
+
 def matrices(
-    sectors: Sectors, energy_eV: Energies, *, forward: bool = False
+    sectors: Expanded, energy_eV: Energies, *, forward: bool = False
 ) -> Iterator[tuple[int, NDArray[Any]]]:
     """Yield the transfer matrices sector by sector, by default from the last to the first.
 
     Parameters
     ----------
-    sectors : Sectors
+    sectors : Expanded
         As `cut` made them; the matrices are those to the last stop, the right face.
-    energy_eV : ndarray, shape (E,)
+    energy_eV : ndarray, shape (E,), or (B, E) for a family of B profiles
         Real or complex energies inside the window the sectors were cut for.
     forward : bool
         Go from the first sector to the last.
@@ -153,19 +208,19 @@ def matrices(
     ------
     index : int
         The sector, counted from 0.
-    matrix : ndarray, shape (4, E)
+    matrix : ndarray, shape (4, E), or (4, B, E)
         Elements a, b, c, d.
     """
     powers, _ = energy_powers(sectors, energy_eV)
-    for index, (matrix,) in _each(sectors, (powers,), forward=forward):
+    for index, (matrix,) in sectors.each((powers,), forward=forward):
         yield index, matrix
 
 
 def matrices_and_slopes(
-    sectors: Sectors, energy_eV: Energies
+    sectors: Expanded, energy_eV: Energies
 ) -> Iterator[tuple[int, NDArray[Any], NDArray[Any]]]:
     """As `matrices`, from the last sector to the first, with the derivatives per eV as well."""
-    for index, (matrix, slope) in _each(sectors, energy_powers(sectors, energy_eV), forward=False):
+    for index, (matrix, slope) in sectors.each(energy_powers(sectors, energy_eV), forward=False):
         yield index, matrix, slope
 
 
@@ -175,30 +230,6 @@ def all_matrices(sectors: Sectors, energy_eV: Energies, stops: slice = slice(Non
     return _product(sectors.coefficients[stops], powers)[:, :, sectors.kind]
 
 
-def _each(
-    sectors: Sectors, powers: tuple[NDArray[Any], ...], *, forward: bool
-) -> Iterator[tuple[int, list[NDArray[Any]]]]:
-    """Yield each sector with its products, (4, E) for every set of powers.
-
-    Distinct sectors are multiplied out once where they are few; else in runs of sectors, short
-    enough to stay in the cache.
-    """
-    table = sectors.coefficients[-1]  # (4, U, D)
-    energies = max(1, powers[0].shape[1])
-    size = max(1, BLOCK_ELEMENTS // (4 * energies))
-    few = table.shape[1] <= min(size, sectors.count // 2)
-    whole = [_product(table, power) for power in powers] if few else []
-    starts = range(0, sectors.count, size)
-    for start in starts if forward else reversed(starts):
-        sectors.watch()
-        kinds = sectors.kind[start : start + size]
-        values = whole if few else [_product(table[:, kinds], power) for power in powers]
-        order = range(kinds.size)
-        for index in order if forward else reversed(order):
-            at = kinds[index] if few else index
-            yield start + index, [value[:, at] for value in values]
-
-
 def _product(table: FloatArray, powers: NDArray[Any]) -> NDArray[Any]:
     """Multiply coefficients (..., D) with powers (D, E): one real product, also if E is complex."""
     flat = np.ascontiguousarray(table).reshape(-1, table.shape[-1])
@@ -206,15 +237,16 @@ def _product(table: FloatArray, powers: NDArray[Any]) -> NDArray[Any]:
     return product.reshape(*table.shape[:-1], powers.shape[1])
 
 
-def energy_powers(sectors: Sectors, energy_eV: Energies) -> tuple[NDArray[Any], NDArray[Any]]:
-    """Powers of the scaled energy and their derivatives per eV, each of shape (DEGREE + 1, E)."""
+def energy_powers(sectors: Expanded, energy_eV: Energies) -> tuple[NDArray[Any], NDArray[Any]]:
+    """Powers of the scaled energy and their derivatives per eV, of shape (DEGREE + 1, ...)."""
     scaled = (energy_eV - sectors.centre_eV) / sectors.reach_eV
-    powers = np.empty((DEGREE + 1, energy_eV.size), dtype=scaled.dtype)
+    powers = np.empty((DEGREE + 1, *energy_eV.shape), dtype=scaled.dtype)
     powers[0] = 1.0
     for n in range(1, DEGREE + 1):
         np.multiply(powers[n - 1], scaled, out=powers[n])
     slope = np.zeros_like(powers)
-    slope[1:] = powers[:-1] * (np.arange(1, DEGREE + 1) / sectors.reach_eV)[:, None]
+    order = np.arange(1, DEGREE + 1).reshape(-1, *(1,) * energy_eV.ndim)
+    slope[1:] = powers[:-1] * (order / sectors.reach_eV)
     return powers, slope
 
 
@@ -226,13 +258,11 @@ def _sector_shares(
     marks_nm: FloatArray | None,
 ) -> tuple[NDArray[np.int64], FloatArray, FloatArray]:
     """Piece of each sector, where in the piece it begins and how much of it it is, as shares."""
-    number = _sectors_per_piece(profile, low_eV, high_eV, depth_eV)
+    number = sectors_per_piece(profile, low_eV, high_eV, depth_eV)
     if int(number.sum()) > MAX_SECTORS:
         allowed = f"it needs more than {MAX_SECTORS} sectors at these energies; make it thinner"
         raise StructureError("stack", "thickness_nm", profile.length_nm, allowed)
-    piece = np.repeat(np.arange(number.size), number)
-    rank = np.arange(piece.size) - np.repeat(np.cumsum(number) - number, number)
-    left, share = rank / number[piece], 1.0 / number[piece]
+    piece, left, share = even_shares(number)
     if marks_nm is None:
         return piece, left, share
     piece, left = _with_marks(profile, piece, left, marks_nm)
@@ -240,9 +270,17 @@ def _sector_shares(
     return piece, left, np.where(last, 1.0, np.append(left[1:], 1.0)) - left
 
 
-def _sectors_per_piece(
+def even_shares(number: NDArray[np.int64]) -> tuple[NDArray[np.int64], FloatArray, FloatArray]:
+    """Cut every piece evenly: piece of each sector, where in it it begins and its share of it."""
+    piece = np.repeat(np.arange(number.size), number)
+    rank = np.arange(piece.size) - np.repeat(np.cumsum(number) - number, number)
+    return piece, rank / number[piece], 1.0 / number[piece]
+
+
+def sectors_per_piece(
     profile: Profile, low_eV: float, high_eV: float, depth_eV: float
 ) -> NDArray[np.int64]:
+    """Number of sectors that each piece needs, shape (P,)."""
     ends = np.stack([profile.edge_left_eV, profile.edge_right_eV])
     distance = np.maximum(np.abs(ends - low_eV), np.abs(ends - high_eV)).max(axis=0)
     mass = np.maximum(profile.mass_left, profile.mass_right)

@@ -1,0 +1,158 @@
+"""Many profiles of like pieces, computed side by side: one stack at many biases, say.
+
+All members are cut into the same sectors, so that one pass over the sectors serves all of them;
+every kernel that works elementwise on energies (`scattering`, `outgoing`) takes a family where it
+takes a profile. Energies then have the shape (B, E), one row a member. In Python the cost of a pass
+is that of its calls; side by side they are made once for all members.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Iterator, Sequence
+from dataclasses import dataclass, replace
+from typing import Any
+
+import numpy as np
+from numpy.typing import NDArray
+
+from physics.errors import StructureError
+from physics.field import Profile
+from physics.frobenius import sector_series
+from physics.sectors import (
+    BUILD_BLOCK,
+    MAX_SECTORS,
+    described_sectors,
+    even_shares,
+    sectors_per_piece,
+)
+
+FloatArray = NDArray[np.float64]
+
+
+@dataclass(frozen=True, eq=False)
+class Family:
+    """Profiles that differ in numbers, not in the count of their pieces."""
+
+    members: tuple[Profile, ...]
+    contact_edge_eV: tuple[FloatArray, FloatArray]
+    """Band edge in the left and in the right contacts, each of shape (B, 1)."""
+    contact_mass: tuple[FloatArray, FloatArray]
+    """Mass in the left and in the right contacts, in m0, each of shape (B, 1)."""
+
+    @property
+    def watch(self) -> Callable[[], None]:
+        """What the first member calls while something is computed."""
+        return self.members[0].watch
+
+    def rows(self, index: NDArray[np.int64]) -> Family:
+        """Give some of the members."""
+        return Family(
+            tuple(self.members[n] for n in index.tolist()),
+            (self.contact_edge_eV[0][index], self.contact_edge_eV[1][index]),
+            (self.contact_mass[0][index], self.contact_mass[1][index]),
+        )
+
+
+@dataclass(frozen=True, eq=False)
+class FamilySectors:
+    """Sectors of a family, with their transfer matrices as polynomials in the energy."""
+
+    piece_index: NDArray[np.int64]
+    """Piece that each sector belongs to, shape (S,)."""
+    centre_eV: FloatArray
+    """Energy about which each member's polynomials are expanded, shape (B, 1)."""
+    reach_eV: FloatArray
+    """Energy distance that the expansion variable is scaled by, shape (B, 1)."""
+    coefficients: FloatArray
+    """Shape (S, B, 4, D): sector, member, element (a, b, c, d), power of the energy."""
+    watch: Callable[[], None]
+
+    @property
+    def count(self) -> int:
+        """Number of sectors."""
+        return self.piece_index.size
+
+    def rows(self, index: NDArray[np.int64]) -> FamilySectors:
+        """Give the sectors of some of the members."""
+        return replace(
+            self,
+            centre_eV=self.centre_eV[index],
+            reach_eV=self.reach_eV[index],
+            coefficients=self.coefficients[:, index],
+        )
+
+    def each(
+        self, powers: tuple[NDArray[Any], ...], *, forward: bool
+    ) -> Iterator[tuple[int, list[NDArray[Any]]]]:
+        """Yield each sector with its products, (4, B, E) for every set of powers (D, B, E)."""
+        self.watch()
+        by_member = [np.ascontiguousarray(np.moveaxis(power, 0, 1)) for power in powers]
+        order = range(self.count)
+        for index in order if forward else reversed(order):
+            table = self.coefficients[index]  # (B, 4, D)
+            products = [(table @ p.view(np.float64)).view(p.dtype) for p in by_member]
+            yield index, [np.moveaxis(product, 1, 0) for product in products]
+
+
+def family_of(profiles: Sequence[Profile]) -> Family:
+    """Put profiles of like pieces side by side."""
+    edges = np.array([profile.contact_edge_eV for profile in profiles])
+    masses = np.array([profile.contact_mass for profile in profiles])
+    return Family(
+        tuple(profiles),
+        (edges[:, :1], edges[:, 1:]),
+        (masses[:, :1], masses[:, 1:]),
+    )
+
+
+def cut_family(
+    family: Family, low_eV: FloatArray, high_eV: FloatArray, *, depth_eV: float = 0.0
+) -> FamilySectors:
+    """Cut a family for energies in a window of each member.
+
+    Parameters
+    ----------
+    low_eV, high_eV : ndarray, shape (B,)
+        The windows of the energy's real part.
+    depth_eV : float
+        Largest distance of a complex energy from the real axis.
+
+    Raises
+    ------
+    StructureError
+        More than `MAX_SECTORS` sectors would be needed.
+    """
+    members = family.members
+    ends = list(zip(low_eV.tolist(), high_eV.tolist(), strict=True))
+    number = np.max(
+        [sectors_per_piece(member, *window, depth_eV) for member, window in zip(members, ends, strict=True)],
+        axis=0,
+    )
+    if int(number.sum()) > MAX_SECTORS:
+        allowed = f"it needs more than {MAX_SECTORS} sectors at these energies; make it thinner"
+        raise StructureError("stack", "thickness_nm", members[0].length_nm, allowed)
+    piece, left, share = even_shares(number)
+    centre = 0.5 * (low_eV + high_eV)
+    reach = np.maximum(0.5 * (high_eV - low_eV) + depth_eV, 1e-3)
+    described = np.stack(
+        [
+            described_sectors(member, piece, left, share, middle)
+            for member, middle in zip(members, centre.tolist(), strict=True)
+        ],
+        axis=1,
+    )  # (S, B, 5)
+    coefficients = _series(described.reshape(-1, described.shape[-1]), np.tile(reach, piece.size))
+    coefficients = coefficients.reshape(piece.size, len(members), *coefficients.shape[1:])
+    return FamilySectors(
+        piece, centre[:, None], reach[:, None], coefficients, family.watch
+    )
+
+
+def _series(described: FloatArray, reach_eV: FloatArray) -> FloatArray:
+    """Sum the series of sectors with a reach of their own, shape (S, 4, D)."""
+    parts = []
+    for first in range(0, reach_eV.size, BUILD_BLOCK):
+        part = slice(first, first + BUILD_BLOCK)
+        reach = reach_eV[part, None]
+        parts.append(sector_series(*described[part].T, reach=reach, stops=np.ones(1))[0])
+    return np.ascontiguousarray(np.moveaxis(np.concatenate(parts, axis=1), 0, 1))
