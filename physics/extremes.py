@@ -1,0 +1,238 @@
+"""What a current curve is bought for: peaks, valleys, onset and the steepest falls, off the grid.
+
+A feature that the curve's points bracket is sought again on Chebyshev nodes in its bracket, whose
+interpolating polynomial gives place and value; the bracket narrows to a share of itself each round
+(L. N. Trefethen, Approximation Theory and Approximation Practice, ch. 2 and 18, from memory). What
+is reported is the current computed at that very bias.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import dataclass
+from itertools import pairwise
+
+import numpy as np
+from numpy.polynomial import Chebyshev
+from numpy.typing import NDArray
+
+from physics.curve import Curve, Drive, curve_at
+
+FloatArray = NDArray[np.float64]
+
+NODES = 9
+"""Chebyshev nodes in a bracket."""
+NARROWING = (1.0, 0.2, 0.05)
+"""Width of the bracket in each round, as a share of the first."""
+LEAST_DROP = 1e-4
+"""Share of a peak that the current has to fall by, lest rounding makes peaks."""
+
+
+@dataclass(frozen=True)
+class Point:
+    """A current at a bias."""
+
+    bias_V: float
+    current_density_A_per_cm2: float
+    error_A_per_cm2: float
+
+
+@dataclass(frozen=True)
+class Slope:
+    """A differential conductance at a bias, and the current there."""
+
+    bias_V: float
+    current_density_A_per_cm2: float
+    conductance_S_per_cm2: float
+
+
+@dataclass(frozen=True)
+class Region:
+    """A peak and the fall behind it."""
+
+    peak: Point
+    valley: Point | None
+    """None where the current still falls at the end of the range."""
+    steepest_rise: Slope | None
+    """Before the peak."""
+    steepest_fall: Slope | None
+    """Behind it."""
+
+    @property
+    def peak_to_valley(self) -> float | None:
+        """Ratio of both currents."""
+        if self.valley is None or self.valley.current_density_A_per_cm2 == 0.0:
+            return None
+        return self.peak.current_density_A_per_cm2 / self.valley.current_density_A_per_cm2
+
+    @property
+    def onset_V(self) -> float | None:
+        """Bias at which the tangent of the steepest rise meets zero current."""
+        rise = self.steepest_rise
+        if rise is None or rise.conductance_S_per_cm2 == 0.0:
+            return None
+        return rise.bias_V - rise.current_density_A_per_cm2 / rise.conductance_S_per_cm2
+
+
+def regions(drive: Drive, curve: Curve) -> tuple[Region, ...]:
+    """Find the peaks of a curve on both sides of zero bias, by distance from it, each refined."""
+    found: list[Region] = []
+    for sign in (1.0, -1.0):
+        side = sign * curve.bias_V >= 0.0
+        x = curve.bias_V[side]
+        y = curve.current_density_A_per_cm2[side]
+        outward = np.argsort(sign * x)
+        found += _side_regions(drive, x[outward], y[outward], sign)
+    return tuple(sorted(found, key=lambda region: abs(region.peak.bias_V)))
+
+
+def main_region(found: Sequence[Region], curve: Curve) -> Region | None:
+    """Choose the region that a reader asks for: with the largest fall, at positive bias if any."""
+    ahead = [region for region in found if region.peak.bias_V > 0.0] or list(found)
+    return max(ahead, key=lambda region: _fall(region, curve), default=None)
+
+
+def _fall(region: Region, curve: Curve) -> float:
+    peak = region.peak.current_density_A_per_cm2
+    if region.valley is not None:
+        return abs(peak - region.valley.current_density_A_per_cm2)
+    end = curve.current_density_A_per_cm2[-1 if region.peak.bias_V > 0.0 else 0]
+    return abs(peak - float(end))
+
+
+def _side_regions(drive: Drive, x: FloatArray, y: FloatArray, sign: float) -> list[Region]:
+    """Regions on one side of zero; x goes outward."""
+    size = sign * y
+    tops = _turns(size)
+    if not tops:
+        return []
+    brackets: list[tuple[float, float, int, float]] = []  # ends, order of derivative, sign
+    start = 0
+    for top, bottom in tops:
+        brackets.append((*_around(x, top), 0, sign))
+        if bottom is not None:
+            brackets.append((*_around(x, bottom), 0, -sign))
+        brackets.append((*_steepest(x, size, start, top, 1.0), 1, 1.0))
+        last = x.size - 1 if bottom is None else bottom
+        brackets.append((*_steepest(x, size, top, last, -1.0), 1, -1.0))
+        start = last
+    places = iter(_refined(drive, brackets))
+    result = []
+    for _, bottom in tops:
+        peak = _point(next(places))
+        valley = None if bottom is None else _point(next(places))
+        result.append(Region(peak, valley, _slope(next(places)), _slope(next(places))))
+    return result
+
+
+def _turns(size: FloatArray) -> list[tuple[int, int | None]]:
+    """Indices of each peak and of the valley behind it, by walking outward."""
+    turns: list[tuple[int, int | None]] = []
+    top = bottom = 0
+    falling = False
+    for n in range(1, size.size):
+        least = LEAST_DROP * abs(size[top])
+        if not falling:
+            top = n if size[n] > size[top] else top
+            if top > 0 and size[top] - size[n] > least:
+                falling, bottom = True, n
+        else:
+            bottom = n if size[n] < size[bottom] else bottom
+            if size[n] - size[bottom] > least:
+                turns.append((top, bottom))
+                falling, top = False, n
+    if falling:
+        turns.append((top, None))
+    return turns
+
+
+def _around(x: FloatArray, n: int) -> tuple[float, float]:
+    ends = sorted((float(x[max(n - 1, 0)]), float(x[min(n + 1, x.size - 1)])))
+    return ends[0], ends[1]
+
+
+def _steepest(
+    x: FloatArray, size: FloatArray, first: int, last: int, sign: float
+) -> tuple[float, float]:
+    """Two neighbouring steps that hold the steepest rise or fall between two points."""
+    steps = sign * np.diff(size[first : last + 1]) / np.abs(np.diff(x[first : last + 1]))
+    n = first + int(np.argmax(steps))
+    ends = (x[max(n - 1, first)], x[min(n + 2, last)])
+    return float(min(ends)), float(max(ends))
+
+
+Place = tuple[float, float, float, float]
+"""Bias, current, its error, and conductance."""
+
+
+def _refined(drive: Drive, brackets: list[tuple[float, float, int, float]]) -> list[Place]:
+    """Seek every bracket's extreme of the current (order 0) or of its slope (order 1)."""
+    spans = [(low, high) for low, high, _, _ in brackets]
+    fits: list[Chebyshev] = []
+    angle = (np.arange(NODES) + 0.5) * np.pi / NODES
+    for share in NARROWING:
+        half = [0.5 * share * (high - low) for low, high, _, _ in brackets]
+        windows = [
+            _window(span, fit, bracket, width)
+            for span, fit, bracket, width in zip(
+                spans, fits or [None] * len(spans), brackets, half, strict=True
+            )
+        ]
+        nodes = [
+            0.5 * (low + high) + 0.5 * (high - low) * np.cos(angle) for low, high in windows
+        ]
+        currents = _currents(drive, np.concatenate(nodes)).reshape(len(nodes), NODES)
+        fits = [
+            Chebyshev.fit(x, y, NODES - 1, domain=list(window))
+            for x, y, window in zip(nodes, currents, windows, strict=True)
+        ]
+    best = [_extreme(fit, order, sign) for fit, (_, _, order, sign) in zip(fits, brackets, strict=True)]
+    at = curve_at(drive, np.array(best))
+    where = np.searchsorted(at.bias_V, best)
+    return [
+        (
+            bias,
+            float(at.current_density_A_per_cm2[n]),
+            float(at.error_A_per_cm2[n]),
+            float(fit.deriv()(bias)),
+        )
+        for bias, n, fit in zip(best, where, fits, strict=True)
+    ]
+
+
+def _window(
+    span: tuple[float, float],
+    fit: Chebyshev | None,
+    bracket: tuple[float, float, int, float],
+    half: float,
+) -> tuple[float, float]:
+    """Next window: the bracket itself, then one around the extreme that was found, inside it."""
+    if fit is None:
+        return span
+    middle = _extreme(fit, bracket[2], bracket[3])
+    middle = min(max(middle, span[0] + half), span[1] - half)
+    return middle - half, middle + half
+
+
+def _extreme(fit: Chebyshev, order: int, sign: float) -> float:
+    """Place of the largest ``sign`` times derivative of that order, ends included."""
+    sought = fit.deriv(order) if order else fit
+    low, high = (float(end) for end in fit.domain)
+    roots = sought.deriv().roots()
+    inside = [float(r.real) for r in roots if abs(r.imag) < 1e-9 and low < r.real < high]
+    return max([low, high, *inside], key=lambda x: sign * float(sought(x)))
+
+
+def _currents(drive: Drive, bias_V: FloatArray) -> FloatArray:
+    """Currents in the order of the biases, which may repeat."""
+    curve = curve_at(drive, bias_V)
+    found: FloatArray = curve.current_density_A_per_cm2[np.searchsorted(curve.bias_V, bias_V)]
+    return found
+
+
+def _point(place: Place) -> Point:
+    return Point(*place[:3])
+
+
+def _slope(place: Place) -> Slope:
+    return Slope(place[0], place[1], place[3])
