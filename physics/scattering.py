@@ -21,7 +21,7 @@ from numpy.typing import NDArray
 
 from physics.constants import HBAR2_OVER_2M0_EV_NM2 as C_EV_NM2
 from physics.constants import HBAR_EV_S
-from physics.field import Profile
+from physics.field import Profile, contact_mass_at
 from physics.sectors import Sectors, cut, matrices_and_slopes
 
 FloatArray = NDArray[np.float64]
@@ -64,7 +64,7 @@ class Carried:
     phase_rad: FloatArray
     """Phase of psi(left face) / psi(right face)."""
     content_nm: FloatArray
-    """Integral of |psi|^2 over the stack, over |psi(left face)|^2."""
+    """Integral of the density over the stack, over |psi(left face)|^2."""
 
 
 def scatter(profile: Profile, energy_eV: FloatArray) -> Scattering:
@@ -125,7 +125,7 @@ def scatter_through(profile: Profile, sectors: Sectors, energy_eV: FloatArray) -
 
 
 def contact_flux_eV_nm(profile: Profile, side: int, energy_eV: FloatArray) -> FloatArray:
-    """``c k / m`` in a contact where it is open; ``-c kappa / m`` where it is closed.
+    """``c k / m(E)`` in a contact where it is open; ``-c kappa / m(E)`` where it is closed.
 
     Parameters
     ----------
@@ -134,7 +134,7 @@ def contact_flux_eV_nm(profile: Profile, side: int, energy_eV: FloatArray) -> Fl
     energy_eV : ndarray, shape (E,)
     """
     above = energy_eV - profile.contact_edge_eV[side]
-    scale = C_EV_NM2 / profile.contact_mass[side]
+    scale = C_EV_NM2 / contact_mass_at(profile, side, energy_eV)
     return np.sign(above) * np.sqrt(scale * np.abs(above))
 
 
@@ -164,9 +164,11 @@ def carry_left(profile: Profile, sectors: Sectors, energy_eV: FloatArray) -> Car
 def sector_content_nm(
     matrix: FloatArray, slopes: FloatArray, x: FloatArray, y: FloatArray
 ) -> FloatArray:
-    """Integral of |psi|^2 over a sector for psi = 1, f = x + i y at its left face.
+    """Integral of the density over a sector for psi = 1, f = x + i y at its left face.
 
-    From ``d/dx (u df/dE - f du/dE) = -u^2`` for real solutions u at real energy.
+    From ``d/dx (u df/dE - f du/dE) = -u^2 - (b/c) f^2`` for real solutions u at real energy: the
+    density is |psi|^2 and, where the mass goes with the energy, the valence component's
+    ``(b/c) |f|^2``.
     """
     a, b, c, d = matrix
     da, db, dc, dd = slopes

@@ -1,17 +1,18 @@
 """A profile cut into sectors, and their transfer matrices at any energy, real or complex.
 
-In one sector edge and mass are linear, so that with the outward flux ``f = c psi'/m``,
+In one sector edge, mass and mass slope are linear, so that with the outward flux ``f = c psi'/m``,
 ``c = hbar^2 / 2 m0``, the one-band equation of D. J. BenDaniel and C. B. Duke, Phys. Rev. 152, 683
 (1966), is a first-order pair with polynomial coefficients::
 
-    psi' = (m(x) / c) f          f' = (V(x) - E) psi
+    psi' = (m / c) f          f' = (V(x) - E) psi          m = m(x) + b(x) (E - V(x))
 
 Both unknowns are continuous across every interface. The Frobenius series of the two fundamental
 solutions is summed over position once, keeping the energy as a polynomial variable: the transfer
 matrix of a sector is an entire function of the energy, hence a polynomial of low degree to
 rounding while (local wavevector) x (length) stays below `SECTOR_PHASE`. One matrix product then
 gives the matrices of all sectors at all energies; there is no pole, no special case at a band
-edge, and no difference between flat, tilted and graded layers.
+edge, and no difference between flat, tilted and graded layers. A mass that goes with the energy
+(b > 0, `physics.band`) is linear in it and changes nothing but the polynomial's degree.
 """
 
 from __future__ import annotations
@@ -25,8 +26,8 @@ from numpy.typing import NDArray
 
 from physics.constants import HBAR2_OVER_2M0_EV_NM2 as C_EV_NM2
 from physics.errors import StructureError
-from physics.field import Profile
-from physics.frobenius import DEGREE, sector_series
+from physics.field import Profile, require_above_valence
+from physics.frobenius import DEGREE, TWO_BAND_DEGREE, sector_series
 
 Energies = NDArray[np.float64] | NDArray[np.complex128]
 
@@ -61,11 +62,13 @@ class Sectors:
     kind: NDArray[np.int64]
     """Which of the distinct sectors each one is like, shape (S,): a superlattice has few."""
     coefficients: FloatArray
-    """Shape (P, 4, U, DEGREE + 1): stop, element (a, b, c, d), distinct sector, power of energy."""
+    """Shape (P, 4, U, D): stop, element (a, b, c, d), distinct sector, power of energy."""
     stops: FloatArray
     """Where in each sector the matrices end, as fractions of its length, shape (P,)."""
     watch: Callable[[], None]
     """`Profile.watch`, called once a block of sectors."""
+    mass_slope: FloatArray
+    """Mass slope at each sector's left and right face, in m0 per eV, shape (2, S)."""
 
     @property
     def count(self) -> int:
@@ -106,7 +109,10 @@ def cut(
     ------
     StructureError
         More than `MAX_SECTORS` sectors would be needed.
+    EnergyError
+        The window reaches into a valence band, where a mass is not above 0.
     """
+    require_above_valence(profile, low_eV)
     piece, left, share = _sector_shares(profile, low_eV, high_eV, depth_eV, marks_nm)
     start, end = profile.position_nm[piece], profile.position_nm[piece + 1]
     position = np.append(start + (end - start) * left, profile.length_nm)
@@ -114,6 +120,8 @@ def cut(
     reach = max(0.5 * (high_eV - low_eV) + depth_eV, 1e-3)
     edge_rise = (profile.edge_right_eV - profile.edge_left_eV)[piece]
     mass_rise = (profile.mass_right - profile.mass_left)[piece]
+    slope_rise = (profile.mass_slope_right - profile.mass_slope_left)[piece]
+    slope = profile.mass_slope_left[piece] + slope_rise * left
     described = np.stack(
         [
             share * profile.thickness_nm[piece],
@@ -121,17 +129,23 @@ def cut(
             edge_rise * share,
             profile.mass_left[piece] + mass_rise * left,
             mass_rise * share,
+            slope,
+            slope_rise * share,
         ],
         axis=1,
     )
+    degree = DEGREE if profile.is_parabolic else TWO_BAND_DEGREE
     distinct, kind = np.unique(described, axis=0, return_inverse=True)
     stop_array = np.asarray(stops, dtype=np.float64)
-    coefficients = np.empty((stop_array.size, 4, distinct.shape[0], DEGREE + 1))
+    coefficients = np.empty((stop_array.size, 4, distinct.shape[0], degree + 1))
     for first in range(0, distinct.shape[0], BUILD_BLOCK):
         part = slice(first, first + BUILD_BLOCK)
-        coefficients[:, :, part] = sector_series(*distinct[part].T, reach=reach, stops=stop_array)
+        coefficients[:, :, part] = sector_series(
+            distinct[part], degree=degree, reach=reach, stops=stop_array
+        )
+    ends = np.stack([slope, slope + slope_rise * share])
     return Sectors(
-        position, piece, centre, reach, kind.ravel(), coefficients, stop_array, profile.watch
+        position, piece, centre, reach, kind.ravel(), coefficients, stop_array, profile.watch, ends
     )
 
 
@@ -207,14 +221,15 @@ def _product(table: FloatArray, powers: NDArray[Any]) -> NDArray[Any]:
 
 
 def energy_powers(sectors: Sectors, energy_eV: Energies) -> tuple[NDArray[Any], NDArray[Any]]:
-    """Powers of the scaled energy and their derivatives per eV, each of shape (DEGREE + 1, E)."""
+    """Powers of the scaled energy and their derivatives per eV, each of shape (D, E)."""
+    degree = sectors.coefficients.shape[-1] - 1
     scaled = (energy_eV - sectors.centre_eV) / sectors.reach_eV
-    powers = np.empty((DEGREE + 1, energy_eV.size), dtype=scaled.dtype)
+    powers = np.empty((degree + 1, energy_eV.size), dtype=scaled.dtype)
     powers[0] = 1.0
-    for n in range(1, DEGREE + 1):
+    for n in range(1, degree + 1):
         np.multiply(powers[n - 1], scaled, out=powers[n])
     slope = np.zeros_like(powers)
-    slope[1:] = powers[:-1] * (np.arange(1, DEGREE + 1) / sectors.reach_eV)[:, None]
+    slope[1:] = powers[:-1] * (np.arange(1, degree + 1) / sectors.reach_eV)[:, None]
     return powers, slope
 
 
@@ -246,10 +261,23 @@ def _sectors_per_piece(
     ends = np.stack([profile.edge_left_eV, profile.edge_right_eV])
     distance = np.maximum(np.abs(ends - low_eV), np.abs(ends - high_eV)).max(axis=0)
     mass = np.maximum(profile.mass_left, profile.mass_right)
+    if not profile.is_parabolic:
+        mass = _largest_mass(profile, mass, high_eV, depth_eV)
     wavevector = np.sqrt(mass * np.hypot(distance, depth_eV) / C_EV_NM2)
     length = np.diff(profile.position_nm)
     number: NDArray[np.int64] = np.ceil(wavevector * length / SECTOR_PHASE).astype(np.int64)
     return np.maximum(number, 1)
+
+
+def _largest_mass(
+    profile: Profile, mass: FloatArray, high_eV: float, depth_eV: float
+) -> FloatArray:
+    """Bound |m(E)| in each piece for energies up to ``high_eV``, shape (P,)."""
+    slopes = np.stack([profile.mass_slope_left, profile.mass_slope_right])
+    above = high_eV - np.minimum(profile.edge_left_eV, profile.edge_right_eV)
+    grown = mass + (slopes * above).max(axis=0)
+    bound: FloatArray = np.hypot(grown, slopes.max(axis=0) * depth_eV)
+    return bound
 
 
 def _with_marks(
