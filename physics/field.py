@@ -161,7 +161,7 @@ def valence_top(profile: Profile) -> tuple[float, str]:
         if slope:
             top = profile.contact_edge_eV[side] - profile.contact_mass[side] / slope
             found.append((top, name))
-    return max(found)
+    return max(found, key=lambda item: item[0])
 
 
 def _piece_tops_eV(profile: Profile) -> NDArray[np.float64]:
@@ -190,9 +190,10 @@ def require_above_valence(profile: Profile, energy_eV: float) -> None:
     """
     top, where = valence_top(profile)
     if not energy_eV > top:
+        allowed = (np.floor(top * 1e4) + 1.0) / 1e4  # to be typed in
         raise EnergyError(
             f"{where}: {energy_eV:g} eV lies in its valence band, where band = kane has no mass "
-            f"above 0; energies above {top:.6g} eV are allowed"
+            f"above 0; energies from {allowed:.8g} eV on are allowed"
         )
 
 
