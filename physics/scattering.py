@@ -8,7 +8,7 @@ resonance and T = 1e-400 a number (through its logarithm). The ratio form is the
 embedding of Light and Walker, J. Chem. Phys. 65, 4272 (1976), here on the matrix of `sectors`.
 
 The dwell time is the probability in the stack over the incident flux (F. T. Smith, Phys. Rev. 118,
-349 (1960)), with the integral of the density over a sector from the energy derivative of its matrix.
+349 (1960)), with the density's integral over a sector from the energy derivative of its matrix.
 """
 
 from __future__ import annotations

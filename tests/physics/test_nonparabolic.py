@@ -79,7 +79,7 @@ TRIED = {
     ),
     "three barriers": (
         narrow_gap([(3.0, 0.3, *BARRIER), (6.0, 0.0, *GAAS)] * 2 + [(3.0, 0.3, *BARRIER)]),
-        0.03,
+        0.0,
     ),
     "one contact closed": (
         narrow_gap([(7.0, 0.0, *GAAS), (3.0, 0.3, *BARRIER)], (0.4, *BARRIER)),
