@@ -6,9 +6,9 @@ R. Tsu and L. Esaki, Appl. Phys. Lett. 22, 562 (1973)::
                                                    / (1 + exp((mu_R - E)/kT))] dE
 
 with the left contact's mass in the plane and both spins. The integral runs over panels cut at the
-contact's edge, around both Fermi energies and half-way between levels; through a level the energy is
-E_r + (Gamma/2) sinh(s), so that no line is too narrow (`quadrature`). Panels are halved until the
-error estimate is met. What is left out above the last panel is bounded by T <= 1.
+higher contact edge, around both Fermi energies and half-way between levels; through a level the
+energy is E_r + (Gamma/2) sinh(s), so that no line is too narrow (`quadrature`). Panels are halved
+until the error estimate is met. What is left out above the last panel is bounded by T <= 1.
 
 Within `NEAR_EV` of a level narrower than `NARROW_EV`, where stepping in double precision cannot
 resolve the line, T is its Breit-Wigner line with the partial widths of the flux, as in `spectrum`.
@@ -49,6 +49,8 @@ MOST_PANELS = 4000
 """Panels of one member at which halving is given up."""
 DEPTH_EV = 0.06
 """Levels broader than twice this make no feature that plain panels would not resolve."""
+FAR_KT, OVER_KT = 100.0, 32.0
+"""Range above the Fermi energies in kT, and above the highest edge, where T is of order 1."""
 ROUNDING = 1e-16
 """Relative rounding of an energy: by so much the distance from a level is off."""
 
@@ -94,7 +96,14 @@ def tsu_esaki(
     fermi = np.stack([mu_left_eV, mu_right_eV], axis=1)
     panels = joined(
         [
-            energy_panels(n, low[n], high[n], fermi[n], kT, levels.energy_eV[n], levels.width_eV[n])
+            energy_panels(
+                n,
+                (float(low[n]), float(high[n])),
+                fermi_eV=fermi[n],
+                kT_eV=kT,
+                level_eV=levels.energy_eV[n],
+                width_eV=levels.width_eV[n],
+            )
             for n in range(low.size)
         ]
     )
@@ -129,10 +138,6 @@ def _window(family: Family, mu_eV: FloatArray, kT: float) -> tuple[FloatArray, F
     above = np.maximum(mu_eV, low)
     high = np.minimum(above + FAR_KT * kT, np.maximum(above, highest) + OVER_KT * kT)
     return low, high
-
-
-FAR_KT, OVER_KT = 100.0, 32.0
-"""Range above the Fermi energies in kT, and above the highest edge, where T is of order 1."""
 
 
 def _by_rows(transmission: Transmission, owner: IndexArray, energy_eV: FloatArray) -> FloatArray:
@@ -194,13 +199,14 @@ def _integrate(
 def _currents(done: _Done, levels: Resonances, tail: FloatArray, scale: float) -> Currents:
     members, ranks = levels.energy_eV.shape
     owner = done.panels.owner
-    current = np.bincount(owner, done.integral, members)
+    current = np.asarray(np.bincount(owner, done.integral, members), dtype=np.float64)
     by_level = np.zeros((members, ranks))
     if ranks:
         np.add.at(by_level, (owner, done.panels.group), done.integral)
     blurred = ROUNDING * np.abs(levels.energy_eV) / (0.5 * levels.width_eV)
     plain = np.isnan(levels.line_peak) & np.isfinite(levels.energy_eV)
     rounding = np.sum(np.where(plain, np.minimum(1.0, blurred), 0.0) * np.abs(by_level), axis=1)
-    error = np.bincount(owner, done.error, members) + tail + rounding
-    reached = error <= 10.0 * RELATIVE_ERROR * np.abs(current)
+    error: FloatArray = np.bincount(owner, done.error, members) + tail + rounding
+    size: FloatArray = np.abs(current)
+    reached = error <= 10.0 * RELATIVE_ERROR * size
     return Currents(scale * current, scale * error, reached, levels, scale * by_level)

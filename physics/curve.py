@@ -54,7 +54,9 @@ class Drive:
         """
         left = self.structure.left
         if left.fermi_eV is None:
-            allowed = "a current needs the contacts' electrons: state donors_cm3 or fermi_eV of both"
+            allowed = (
+                "a current needs the contacts' electrons: state donors_cm3 or fermi_eV of both"
+            )
             raise StructureError("left", "fermi_eV", None, allowed)
         return left.edge_eV + left.fermi_eV
 

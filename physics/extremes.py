@@ -10,7 +10,6 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 from dataclasses import dataclass
-from itertools import pairwise
 
 import numpy as np
 from numpy.polynomial import Chebyshev
@@ -22,8 +21,10 @@ FloatArray = NDArray[np.float64]
 
 NODES = 9
 """Chebyshev nodes in a bracket."""
-NARROWING = (1.0, 0.2, 0.05)
-"""Width of the bracket in each round, as a share of the first."""
+NARROWING = (0.2, 0.05)
+"""Width of the windows after the first, as a share of the bracket."""
+Place = tuple[float, float, float, float]
+"""Bias, current, its error, and conductance."""
 LEAST_DROP = 1e-4
 """Share of a peak that the current has to fall by, lest rounding makes peaks."""
 
@@ -74,6 +75,17 @@ class Region:
         return rise.bias_V - rise.current_density_A_per_cm2 / rise.conductance_S_per_cm2
 
 
+@dataclass(frozen=True)
+class Bracket:
+    """Where an extreme is sought: of the current (order 0) or of its slope (order 1)."""
+
+    low: float
+    high: float
+    order: int
+    sign: float
+    """1 for a maximum, -1 for a minimum."""
+
+
 def regions(drive: Drive, curve: Curve) -> tuple[Region, ...]:
     """Find the peaks of a curve on both sides of zero bias, by distance from it, each refined."""
     found: list[Region] = []
@@ -106,15 +118,15 @@ def _side_regions(drive: Drive, x: FloatArray, y: FloatArray, sign: float) -> li
     tops = _turns(size)
     if not tops:
         return []
-    brackets: list[tuple[float, float, int, float]] = []  # ends, order of derivative, sign
+    brackets: list[Bracket] = []
     start = 0
     for top, bottom in tops:
-        brackets.append((*_around(x, top), 0, sign))
+        brackets.append(Bracket(*_around(x, top), 0, sign))
         if bottom is not None:
-            brackets.append((*_around(x, bottom), 0, -sign))
-        brackets.append((*_steepest(x, size, start, top, 1.0), 1, 1.0))
+            brackets.append(Bracket(*_around(x, bottom), 0, -sign))
+        brackets.append(Bracket(*_steepest(x, size, (start, top), 1.0), 1, 1.0))
         last = x.size - 1 if bottom is None else bottom
-        brackets.append((*_steepest(x, size, top, last, -1.0), 1, -1.0))
+        brackets.append(Bracket(*_steepest(x, size, (top, last), -1.0), 1, -1.0))
         start = last
     places = iter(_refined(drive, brackets))
     result = []
@@ -126,7 +138,7 @@ def _side_regions(drive: Drive, x: FloatArray, y: FloatArray, sign: float) -> li
 
 
 def _turns(size: FloatArray) -> list[tuple[int, int | None]]:
-    """Indices of each peak and of the valley behind it, by walking outward."""
+    """Find the indices of each peak and of the valley behind it, by walking outward."""
     turns: list[tuple[int, int | None]] = []
     top = bottom = 0
     falling = False
@@ -152,41 +164,27 @@ def _around(x: FloatArray, n: int) -> tuple[float, float]:
 
 
 def _steepest(
-    x: FloatArray, size: FloatArray, first: int, last: int, sign: float
+    x: FloatArray, size: FloatArray, between: tuple[int, int], sign: float
 ) -> tuple[float, float]:
-    """Two neighbouring steps that hold the steepest rise or fall between two points."""
+    """Give the steps around the steepest rise or fall between two points."""
+    first, last = between
     steps = sign * np.diff(size[first : last + 1]) / np.abs(np.diff(x[first : last + 1]))
     n = first + int(np.argmax(steps))
     ends = (x[max(n - 1, first)], x[min(n + 2, last)])
     return float(min(ends)), float(max(ends))
 
 
-Place = tuple[float, float, float, float]
-"""Bias, current, its error, and conductance."""
-
-
-def _refined(drive: Drive, brackets: list[tuple[float, float, int, float]]) -> list[Place]:
-    """Seek every bracket's extreme of the current (order 0) or of its slope (order 1)."""
-    spans = [(low, high) for low, high, _, _ in brackets]
-    fits: list[Chebyshev] = []
-    angle = (np.arange(NODES) + 0.5) * np.pi / NODES
+def _refined(drive: Drive, brackets: list[Bracket]) -> list[Place]:
+    """Seek every bracket's extreme of the current or of its slope, all of them side by side."""
+    windows = [(bracket.low, bracket.high) for bracket in brackets]
+    fits = _fitted(drive, windows)
     for share in NARROWING:
-        half = [0.5 * share * (high - low) for low, high, _, _ in brackets]
         windows = [
-            _window(span, fit, bracket, width)
-            for span, fit, bracket, width in zip(
-                spans, fits or [None] * len(spans), brackets, half, strict=True
-            )
+            _narrowed(bracket, _extreme(fit, bracket), share)
+            for bracket, fit in zip(brackets, fits, strict=True)
         ]
-        nodes = [
-            0.5 * (low + high) + 0.5 * (high - low) * np.cos(angle) for low, high in windows
-        ]
-        currents = _currents(drive, np.concatenate(nodes)).reshape(len(nodes), NODES)
-        fits = [
-            Chebyshev.fit(x, y, NODES - 1, domain=list(window))
-            for x, y, window in zip(nodes, currents, windows, strict=True)
-        ]
-    best = [_extreme(fit, order, sign) for fit, (_, _, order, sign) in zip(fits, brackets, strict=True)]
+        fits = _fitted(drive, windows)
+    best = [_extreme(fit, bracket) for fit, bracket in zip(fits, brackets, strict=True)]
     at = curve_at(drive, np.array(best))
     where = np.searchsorted(at.bias_V, best)
     return [
@@ -200,27 +198,31 @@ def _refined(drive: Drive, brackets: list[tuple[float, float, int, float]]) -> l
     ]
 
 
-def _window(
-    span: tuple[float, float],
-    fit: Chebyshev | None,
-    bracket: tuple[float, float, int, float],
-    half: float,
-) -> tuple[float, float]:
-    """Next window: the bracket itself, then one around the extreme that was found, inside it."""
-    if fit is None:
-        return span
-    middle = _extreme(fit, bracket[2], bracket[3])
-    middle = min(max(middle, span[0] + half), span[1] - half)
+def _fitted(drive: Drive, windows: list[tuple[float, float]]) -> list[Chebyshev]:
+    """Lay a polynomial through the currents at the Chebyshev nodes of each window."""
+    angle = (np.arange(NODES) + 0.5) * np.pi / NODES
+    nodes = [0.5 * (low + high) + 0.5 * (high - low) * np.cos(angle) for low, high in windows]
+    currents = _currents(drive, np.concatenate(nodes)).reshape(len(nodes), NODES)
+    return [
+        Chebyshev.fit(x, y, NODES - 1, domain=list(window))
+        for x, y, window in zip(nodes, currents, windows, strict=True)
+    ]
+
+
+def _narrowed(bracket: Bracket, middle: float, share: float) -> tuple[float, float]:
+    """Give a window around an extreme, inside the bracket."""
+    half = 0.5 * share * (bracket.high - bracket.low)
+    middle = min(max(middle, bracket.low + half), bracket.high - half)
     return middle - half, middle + half
 
 
-def _extreme(fit: Chebyshev, order: int, sign: float) -> float:
-    """Place of the largest ``sign`` times derivative of that order, ends included."""
-    sought = fit.deriv(order) if order else fit
-    low, high = (float(end) for end in fit.domain)
-    roots = sought.deriv().roots()
-    inside = [float(r.real) for r in roots if abs(r.imag) < 1e-9 and low < r.real < high]
-    return max([low, high, *inside], key=lambda x: sign * float(sought(x)))
+def _extreme(fit: Chebyshev, bracket: Bracket) -> float:
+    """Find the place of the largest ``sign`` times derivative of that order, ends included."""
+    sought = fit.deriv(bracket.order) if bracket.order else fit
+    low, high = float(fit.domain[0]), float(fit.domain[1])
+    roots = [complex(root) for root in sought.deriv().roots()]
+    inside = [r.real for r in roots if abs(r.imag) < 1e-9 and low < r.real < high]
+    return max([low, high, *inside], key=lambda x: bracket.sign * float(sought(x)))
 
 
 def _currents(drive: Drive, bias_V: FloatArray) -> FloatArray:

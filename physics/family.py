@@ -15,16 +15,11 @@ from typing import Any
 import numpy as np
 from numpy.typing import NDArray
 
+from physics.cuts import MAX_SECTORS, described_sectors, even_shares, sectors_per_piece
 from physics.errors import StructureError
-from physics.field import Profile
-from physics.frobenius import sector_series
-from physics.sectors import (
-    BUILD_BLOCK,
-    MAX_SECTORS,
-    described_sectors,
-    even_shares,
-    sectors_per_piece,
-)
+from physics.field import Profile, require_above_valence
+from physics.frobenius import DEGREE, TWO_BAND_DEGREE, sector_series
+from physics.sectors import BUILD_BLOCK
 
 FloatArray = NDArray[np.float64]
 
@@ -38,6 +33,8 @@ class Family:
     """Band edge in the left and in the right contacts, each of shape (B, 1)."""
     contact_mass: tuple[FloatArray, FloatArray]
     """Mass in the left and in the right contacts, in m0, each of shape (B, 1)."""
+    contact_mass_slope: tuple[FloatArray, FloatArray]
+    """Their mass slopes, in m0 per eV, each of shape (B, 1)."""
 
     @property
     def watch(self) -> Callable[[], None]:
@@ -46,11 +43,7 @@ class Family:
 
     def rows(self, index: NDArray[np.int64]) -> Family:
         """Give some of the members."""
-        return Family(
-            tuple(self.members[n] for n in index.tolist()),
-            (self.contact_edge_eV[0][index], self.contact_edge_eV[1][index]),
-            (self.contact_mass[0][index], self.contact_mass[1][index]),
-        )
+        return family_of([self.members[n] for n in index.tolist()])
 
 
 @dataclass(frozen=True, eq=False)
@@ -98,10 +91,12 @@ def family_of(profiles: Sequence[Profile]) -> Family:
     """Put profiles of like pieces side by side."""
     edges = np.array([profile.contact_edge_eV for profile in profiles])
     masses = np.array([profile.contact_mass for profile in profiles])
+    slopes = np.array([profile.contact_mass_slope for profile in profiles])
     return Family(
         tuple(profiles),
         (edges[:, :1], edges[:, 1:]),
         (masses[:, :1], masses[:, 1:]),
+        (slopes[:, :1], slopes[:, 1:]),
     )
 
 
@@ -121,12 +116,15 @@ def cut_family(
     ------
     StructureError
         More than `MAX_SECTORS` sectors would be needed.
+    EnergyError
+        A window reaches into a valence band.
     """
     members = family.members
-    ends = list(zip(low_eV.tolist(), high_eV.tolist(), strict=True))
+    for member, low in zip(members, low_eV.tolist(), strict=True):
+        require_above_valence(member, low)
+    ends = zip(members, low_eV.tolist(), high_eV.tolist(), strict=True)
     number = np.max(
-        [sectors_per_piece(member, *window, depth_eV) for member, window in zip(members, ends, strict=True)],
-        axis=0,
+        [sectors_per_piece(member, low, high, depth_eV) for member, low, high in ends], axis=0
     )
     if int(number.sum()) > MAX_SECTORS:
         allowed = f"it needs more than {MAX_SECTORS} sectors at these energies; make it thinner"
@@ -140,19 +138,20 @@ def cut_family(
             for member, middle in zip(members, centre.tolist(), strict=True)
         ],
         axis=1,
-    )  # (S, B, 5)
-    coefficients = _series(described.reshape(-1, described.shape[-1]), np.tile(reach, piece.size))
+    )  # (S, B, 7)
+    degree = DEGREE if all(member.is_parabolic for member in members) else TWO_BAND_DEGREE
+    flat = described.reshape(-1, described.shape[-1])
+    coefficients = _series(flat, degree, np.tile(reach, piece.size))
     coefficients = coefficients.reshape(piece.size, len(members), *coefficients.shape[1:])
-    return FamilySectors(
-        piece, centre[:, None], reach[:, None], coefficients, family.watch
-    )
+    return FamilySectors(piece, centre[:, None], reach[:, None], coefficients, family.watch)
 
 
-def _series(described: FloatArray, reach_eV: FloatArray) -> FloatArray:
+def _series(described: FloatArray, degree: int, reach_eV: FloatArray) -> FloatArray:
     """Sum the series of sectors with a reach of their own, shape (S, 4, D)."""
     parts = []
     for first in range(0, reach_eV.size, BUILD_BLOCK):
         part = slice(first, first + BUILD_BLOCK)
         reach = reach_eV[part, None]
-        parts.append(sector_series(*described[part].T, reach=reach, stops=np.ones(1))[0])
+        series = sector_series(described[part], degree=degree, reach=reach, stops=np.ones(1))
+        parts.append(series[0])
     return np.ascontiguousarray(np.moveaxis(np.concatenate(parts, axis=1), 0, 1))

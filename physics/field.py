@@ -9,14 +9,20 @@ displacement field is continuous, so each layer's field is proportional to 1/per
 from __future__ import annotations
 
 from collections.abc import Callable
-from dataclasses import dataclass, replace
+from dataclasses import dataclass, field, replace
+from typing import Any, Protocol
 
 import numpy as np
 from numpy.typing import NDArray
 
-from physics.errors import StructureError
+from physics.band import Band, masses_of
+from physics.errors import EnergyError, StructureError
 from physics.ranges import BIAS_V
 from physics.structure import Structure
+
+Energies = NDArray[np.float64] | NDArray[np.complex128]
+
+FloatArray = NDArray[np.float64]
 
 SAME_EDGE_EV = 1e-14
 """Band edges closer than this differ by rounding."""
@@ -28,9 +34,16 @@ def go_on() -> None:
     """Let the work go on: what `Profile.watch` is where nobody watches."""
 
 
+def _unsaid() -> NDArray[np.float64]:
+    return np.empty(0)
+
+
 @dataclass(frozen=True, eq=False)
 class Profile:
-    """Band edge and mass over position, as linear pieces between flat contacts."""
+    """Band edge and mass over position, as linear pieces between flat contacts.
+
+    The mass at an energy E is ``m + b (E - V)`` with the mass slope b (`physics.band`).
+    """
 
     position_nm: NDArray[np.float64]
     """Faces of the pieces, shape (P + 1,); 0 at the left contact's face."""
@@ -41,17 +54,34 @@ class Profile:
     edge_right_eV: NDArray[np.float64]
     """Band edge at each piece's right face, shape (P,)."""
     mass_left: NDArray[np.float64]
-    """Mass at each piece's left face, in m0, shape (P,)."""
+    """Mass at the band edge at each piece's left face, in m0, shape (P,)."""
     mass_right: NDArray[np.float64]
-    """Mass at each piece's right face, in m0, shape (P,)."""
+    """Mass at the band edge at each piece's right face, in m0, shape (P,)."""
     layer_index: NDArray[np.int64]
     """Index of the layer that each piece belongs to, counted from 0, shape (P,)."""
     contact_edge_eV: tuple[float, float]
     """Band edge in the left and in the right contact, bias included."""
     contact_mass: tuple[float, float]
-    """Mass in the left and in the right contact, in m0."""
+    """Mass at the band edge in the left and in the right contact, in m0."""
     watch: Callable[[], None] = go_on
     """Called again and again while something is computed; by raising it ends the work."""
+    mass_slope_left: NDArray[np.float64] = field(default_factory=_unsaid)
+    """Growth of the mass with E - V at each left face, in m0 per eV, shape (P,); unsaid: 0."""
+    mass_slope_right: NDArray[np.float64] = field(default_factory=_unsaid)
+    """The same at each piece's right face, shape (P,)."""
+    contact_mass_slope: tuple[float, float] = (0.0, 0.0)
+    """The same in the left and in the right contact."""
+
+    def __post_init__(self) -> None:
+        for name in ("mass_slope_left", "mass_slope_right"):
+            if getattr(self, name).size == 0:
+                object.__setattr__(self, name, np.zeros(self.mass_left.shape))
+
+    @property
+    def is_parabolic(self) -> bool:
+        """Whether no mass goes with the energy."""
+        pieces = self.mass_slope_left.any() or self.mass_slope_right.any()
+        return not (pieces or any(self.contact_mass_slope))
 
     @property
     def length_nm(self) -> float:
@@ -88,9 +118,12 @@ def without_runways(profile: Profile) -> Profile:
     """
     edges = np.stack([profile.edge_left_eV, profile.edge_right_eV])
     masses = np.stack([profile.mass_left, profile.mass_right])
+    slopes = np.stack([profile.mass_slope_left, profile.mass_slope_right])
     like = [
-        (np.abs(edges - edge) <= SAME_EDGE_EV).all(axis=0) & (masses == mass).all(axis=0)
-        for edge, mass in zip(profile.contact_edge_eV, profile.contact_mass, strict=True)
+        (np.abs(edges - profile.contact_edge_eV[side]) <= SAME_EDGE_EV).all(axis=0)
+        & (masses == profile.contact_mass[side]).all(axis=0)
+        & (slopes == profile.contact_mass_slope[side]).all(axis=0)
+        for side in (0, 1)
     ]
     count = profile.thickness_nm.size
     first = int(np.argmin(np.append(like[0], False)))
@@ -105,8 +138,91 @@ def without_runways(profile: Profile) -> Profile:
         edge_right_eV=profile.edge_right_eV[kept],
         mass_left=profile.mass_left[kept],
         mass_right=profile.mass_right[kept],
+        mass_slope_left=profile.mass_slope_left[kept],
+        mass_slope_right=profile.mass_slope_right[kept],
         layer_index=profile.layer_index[kept],
     )
+
+
+def valence_top(profile: Profile) -> tuple[float, str]:
+    """Find the highest energy at which a two-band mass is 0 somewhere, the top of a valence band.
+
+    Returns
+    -------
+    energy_eV : float
+        Largest of ``V - m / b``; -inf where every mass is parabolic.
+    where : str
+        The layer or contact, as `StructureError` names it.
+    """
+    if profile.is_parabolic:
+        return -np.inf, ""
+    tops = _piece_tops_eV(profile)
+    at = int(np.argmax(tops))
+    found = [(float(tops[at]), f"layer {int(profile.layer_index[at]) + 1}")]
+    for side, name in enumerate(("left", "right")):
+        slope = profile.contact_mass_slope[side]
+        if slope:
+            top = profile.contact_edge_eV[side] - profile.contact_mass[side] / slope
+            found.append((top, name))
+    return max(found, key=lambda item: item[0])
+
+
+def _piece_tops_eV(profile: Profile) -> NDArray[np.float64]:
+    """Largest V - m / b in each piece, shape (P,), -inf for a parabolic one."""
+    b0, b1 = profile.mass_slope_left, profile.mass_slope_right - profile.mass_slope_left
+    m0, m1 = profile.mass_left, profile.mass_right - profile.mass_left
+    v0, v1 = profile.edge_left_eV, profile.edge_right_eV - profile.edge_left_eV
+    with np.errstate(divide="ignore", invalid="ignore"):
+        # Inside a piece the derivative is 0 where b^2 = (m1 b0 - m0 b1) / v1.
+        turn = (np.sqrt((m1 * b0 - m0 * b1) / v1) - b0) / b1
+        inner = np.where(np.isfinite(turn), np.clip(turn, 0.0, 1.0), 0.0)
+        shares = np.stack([np.zeros_like(inner), inner, np.ones_like(inner)])
+        slope = b0 + b1 * shares
+        top = v0 + v1 * shares - (m0 + m1 * shares) / slope
+    highest: NDArray[np.float64] = np.where(slope > 0.0, top, -np.inf).max(axis=0)
+    return highest
+
+
+def require_above_valence(profile: Profile, energy_eV: float) -> None:
+    """Refuse an energy at which the mass is not above 0 everywhere.
+
+    Raises
+    ------
+    EnergyError
+        It names the layer or contact, and the lowest energy allowed.
+    """
+    top, where = valence_top(profile)
+    if not energy_eV > top:
+        allowed = (np.floor(top * 1e4) + 1.0) / 1e4  # to be typed in
+        raise EnergyError(
+            f"{where}: {energy_eV:g} eV lies in its valence band, where band = kane has no mass "
+            f"above 0; energies from {allowed:.8g} eV on are allowed"
+        )
+
+
+class Contacts(Protocol):
+    """What scattering wants to know of the contacts, of one profile or of a family of them."""
+
+    @property
+    def contact_edge_eV(self) -> tuple[float, float] | tuple[FloatArray, FloatArray]:
+        """Band edge in the left and in the right contact, bias included."""
+
+    @property
+    def contact_mass(self) -> tuple[float, float] | tuple[FloatArray, FloatArray]:
+        """Mass at the edge of the left and of the right contact, in m0."""
+
+    @property
+    def contact_mass_slope(self) -> tuple[float, float] | tuple[FloatArray, FloatArray]:
+        """Mass slopes of the left and of the right contact, in m0 per eV."""
+
+
+def contact_mass_at(profile: Contacts, side: int, energy_eV: Energies) -> Any:
+    """Mass of the left (0) or right (1) contact at real or complex energies, in m0.
+
+    In the shape of the energies; not laid out over them where the contact is parabolic.
+    """
+    mass, slope = profile.contact_mass[side], profile.contact_mass_slope[side]
+    return mass + slope * (energy_eV - profile.contact_edge_eV[side]) if np.any(slope) else mass
 
 
 def built_in_eV(structure: Structure) -> float:
@@ -117,7 +233,9 @@ def built_in_eV(structure: Structure) -> float:
     return (right.edge_eV + right.fermi_eV) - (left.edge_eV + left.fermi_eV)
 
 
-def uniform_field(structure: Structure, bias_V: float = 0.0) -> Profile:
+def uniform_field(
+    structure: Structure, bias_V: float = 0.0, *, band: Band = "parabolic"
+) -> Profile:
     """Lay the uniform field of a bias over a structure.
 
     Parameters
@@ -126,6 +244,8 @@ def uniform_field(structure: Structure, bias_V: float = 0.0) -> Profile:
         The layers and contacts.
     bias_V : float
         Right contact relative to the left; positive lowers the right contact's band edge.
+    band : {"parabolic", "kane"}
+        Whether the mass goes with the energy (`physics.band`).
 
     Returns
     -------
@@ -135,11 +255,11 @@ def uniform_field(structure: Structure, bias_V: float = 0.0) -> Profile:
     Raises
     ------
     StructureError
-        The bias is not a number or outside `BIAS_V`.
+        The bias is not a number or outside `BIAS_V`, or the band needs a gap that is not stated.
     """
     if not BIAS_V.holds(bias_V):
         raise StructureError("conditions", "bias_V", bias_V, BIAS_V.allowed)
-    layers = structure.layers
+    layers, masses = structure.layers, masses_of(structure, band)
     thickness = np.array([layer.thickness_nm for layer in layers])
     permittivity = np.array(
         [
@@ -155,9 +275,12 @@ def uniform_field(structure: Structure, bias_V: float = 0.0) -> Profile:
         thickness_nm=thickness,
         edge_left_eV=np.array([layer.edge_eV for layer in layers]) - drop[:-1],
         edge_right_eV=np.array([layer.right_edge_eV for layer in layers]) - drop[1:],
-        mass_left=np.array([layer.mass for layer in layers]),
-        mass_right=np.array([layer.right_mass for layer in layers]),
+        mass_left=masses.left,
+        mass_right=masses.right,
         layer_index=np.arange(len(layers), dtype=np.int64),
         contact_edge_eV=(structure.left.edge_eV, structure.right.edge_eV - float(drop[-1])),
-        contact_mass=(structure.left.mass, structure.right.mass),
+        contact_mass=masses.contact,
+        mass_slope_left=masses.slope_left,
+        mass_slope_right=masses.slope_right,
+        contact_mass_slope=masses.contact_slope,
     )

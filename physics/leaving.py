@@ -5,7 +5,9 @@ which it grows and is therefore computed to full relative accuracy however opaqu
 two are joined at the face where their product is largest, which is the well that the level lives
 in. The flux at each face over the norm is the partial width (G. Gamow, Z. Phys. 51, 204 (1928);
 the identity ``Gamma N = flux out`` holds exactly for a Siegert state), so that widths keep their
-relative accuracy far below the rounding of the energy.
+relative accuracy far below the rounding of the energy. Where the mass goes with the energy the
+density is ``|psi|^2 + (b/c) |f|^2``, with the valence component of the two-band wave: what the
+imaginary part of the energy multiplies in ``d/dx Im(psi* f)``, so that the identity stays exact.
 
 States are computed for many levels at once; arrays end in the level axis N.
 """
@@ -13,12 +15,13 @@ States are computed for many levels at once; arrays end in the level axis N.
 from __future__ import annotations
 
 from dataclasses import dataclass
+from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
 
 from physics.constants import HBAR2_OVER_2M0_EV_NM2 as C_EV_NM2
-from physics.field import Profile
+from physics.field import Profile, contact_mass_at
 from physics.outgoing import Sheet, outward_ratio_eV_nm
 from physics.sectors import Sectors, all_matrices
 
@@ -87,16 +90,48 @@ def leaving_states(
     from_left = _carry(whole, -ratio[0])
     from_right = _carry_left(whole, ratio[1])
     joined, log_scale = _join(from_left, from_right, flux_scale(profile, sectors))
-    inside = inner[:, 0] * joined[0][:-1] + inner[:, 1] * joined[1][:-1]
-    density = np.tensordot(WEIGHTS, np.abs(inside) ** 2, axes=(0, 0))
+    inside = density(sectors, inner, joined[0], joined[1], sectors.stops[:GAUSS_POINTS])
+    mean = np.tensordot(WEIGHTS, inside, axes=(0, 0))
     with np.errstate(under="ignore"):
-        content = density * np.exp(2.0 * log_scale[:-1]) * sectors.length_nm[:, None]
+        content = mean * np.exp(2.0 * log_scale[:-1]) * sectors.length_nm[:, None]
         size = np.abs(joined[0]) * np.exp(log_scale)
-        norm = content.sum(axis=0) + _tails(profile, sheet, ratio, size)
+        norm = content.sum(axis=0) + _tails(profile, sheet, ratio, energy_eV, size)
         factor = np.exp(log_scale) / np.sqrt(norm)
         psi, flux = joined[0] * factor, joined[1] * factor
     widths = _log_widths(sheet, ratio, joined[0], log_scale, norm)
     return Leaving(energy_eV, sheet, psi, flux, content / norm, widths)
+
+
+def density(
+    sectors: Sectors,
+    matrix: NDArray[Any],
+    psi: ComplexArray,
+    flux: ComplexArray,
+    stops: FloatArray,
+) -> FloatArray:
+    """Density of waves at stops inside the sectors, the valence component included.
+
+    Parameters
+    ----------
+    matrix : ndarray, shape (P, 4, S, N)
+        Matrices to the stops.
+    psi, flux : ndarray, shape (S + 1, N)
+        The waves at the sectors' faces.
+    stops : ndarray, shape (P,)
+        The stops, as fractions of a sector.
+
+    Returns
+    -------
+    ndarray, shape (P, S, N)
+    """
+    inside = matrix[:, 0] * psi[:-1] + matrix[:, 1] * flux[:-1]
+    result: FloatArray = np.abs(inside) ** 2
+    if sectors.mass_slope.any():
+        first, last = sectors.mass_slope
+        slope = first + (last - first) * stops[:, None]
+        inside = matrix[:, 2] * psi[:-1] + matrix[:, 3] * flux[:-1]
+        result += (slope / C_EV_NM2)[..., None] * np.abs(inside) ** 2
+    return result
 
 
 def flux_scale(profile: Profile, sectors: Sectors) -> float:
@@ -171,14 +206,20 @@ def _join(
 
 
 def _tails(
-    profile: Profile, sheet: Sheet, ratio: list[ComplexArray], size: FloatArray
+    profile: Profile,
+    sheet: Sheet,
+    ratio: list[ComplexArray],
+    energy_eV: ComplexArray,
+    size: FloatArray,
 ) -> FloatArray:
     """Probability in the closed contacts, for the wave's size at the faces; shape (N,)."""
     total = np.zeros(size.shape[1])
     for side, is_open in enumerate((sheet.left_open, sheet.right_open)):
         if not is_open:
-            decay = -ratio[side].real * profile.contact_mass[side] / C_EV_NM2
-            total = total + size[-side] ** 2 / (2.0 * decay)
+            mass = contact_mass_at(profile, side, energy_eV)
+            decay = -(ratio[side] * mass).real / C_EV_NM2
+            valence = profile.contact_mass_slope[side] / C_EV_NM2 * np.abs(ratio[side]) ** 2
+            total = total + size[-side] ** 2 * (1.0 + valence) / (2.0 * decay)
     return total
 
 

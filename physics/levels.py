@@ -19,7 +19,7 @@ from numpy.typing import NDArray
 
 from physics.constants import HBAR_EV_S
 from physics.errors import EnergyError
-from physics.field import Profile, without_runways
+from physics.field import Profile, valence_top, without_runways
 from physics.leaving import STOPS, Leaving, leaving_states
 from physics.outgoing import Sheet, closed_stack_energies, mismatch
 from physics.rootfinding import MOST_POINTS, Rectangle, zeros_in
@@ -46,6 +46,8 @@ LEVELS_AT_ONCE = 4_000_000
 """Matrix elements held at once while states are computed."""
 CONTOUR_WORK = 400_000_000
 """Points of a contour times sectors from which the proof is given up."""
+ABOVE_VALENCE_EV = 1e-6
+"""Starting points are gathered no nearer to a valence band, where the mass falls to 0."""
 WINDOW_LIMIT_EV = 200.0
 SAME_EV = 1e-13
 """Energies closer than this are one energy."""
@@ -133,7 +135,8 @@ def find_levels(
     ------
     EnergyError
         The window is empty, or beyond `WINDOW_LIMIT_EV`, or the width limit is not positive, or
-        more levels lie in it than can be computed in reasonable time.
+        more levels lie in it than can be computed in reasonable time, or it reaches into a valence
+        band.
     StructureError
         The stack is too thick for these energies.
     """
@@ -192,7 +195,8 @@ def _find_poles(profile: Profile, low: float, high: float, max_width_eV: float) 
     depth = 0.5 * max_width_eV * (1.0 + 1e-9)
     height = HEIGHT * max(depth, 0.1 * (high - low))
     margin = MARGIN * (high - low)
-    wide = (low - margin, high + margin)
+    floor = min(low, valence_top(profile)[0] + ABOVE_VALENCE_EV)
+    wide = (max(low - margin, floor), high + margin)
     sectors = cut(profile, *wide, depth_eV=max(depth, height))
     starts = closed_stack_energies(profile, sectors, sheet, wide, COARSE)
     inset = min(THRESHOLD_EV, 0.01 * (high - low))

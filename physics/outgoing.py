@@ -20,8 +20,8 @@ from numpy.typing import NDArray
 
 from physics.constants import HBAR2_OVER_2M0_EV_NM2 as C_EV_NM2
 from physics.errors import EnergyError
-from physics.field import Profile
-from physics.scattering import NODE_GUARD, Contacts
+from physics.field import Contacts, Profile, contact_mass_at
+from physics.scattering import NODE_GUARD
 from physics.sectors import Expanded, Sectors, matrices, matrices_and_slopes
 
 ComplexArray = NDArray[np.complex128]
@@ -62,8 +62,9 @@ def outward_ratio_eV_nm(
         Complex energies on the sheet that ``is_open`` names.
     """
     above = energy_eV - profile.contact_edge_eV[side]
-    scale = C_EV_NM2 / profile.contact_mass[side]
-    return 1j * np.sqrt(scale * above) if is_open else -np.sqrt(-scale * above)
+    scale = C_EV_NM2 / contact_mass_at(profile, side, energy_eV)
+    ratio: ComplexArray = 1j * np.sqrt(scale * above) if is_open else -np.sqrt(-scale * above)
+    return ratio
 
 
 def mismatch(
@@ -73,7 +74,7 @@ def mismatch(
     g = outward_ratio_eV_nm(profile, 1, sheet.right_open, energy_eV)
     psi, flux = np.ones_like(energy_eV), g
     psi_slope = np.zeros_like(energy_eV)
-    flux_slope = 0.5 * g / (energy_eV - profile.contact_edge_eV[1])
+    flux_slope = _ratio_slope(profile, 1, g, energy_eV)
     for index, (a, b, c, d), (da, db, dc, dd) in matrices_and_slopes(sectors, energy_eV):
         psi_slope, flux_slope = (
             dd * psi - db * flux + d * psi_slope - b * flux_slope,
@@ -85,8 +86,17 @@ def mismatch(
             psi, flux = psi * scale, flux * scale
             psi_slope, flux_slope = psi_slope * scale, flux_slope * scale
     g = outward_ratio_eV_nm(profile, 0, sheet.left_open, energy_eV)
-    g_slope = 0.5 * g / (energy_eV - profile.contact_edge_eV[0])
+    g_slope = _ratio_slope(profile, 0, g, energy_eV)
     return flux + g * psi, flux_slope + g * psi_slope + g_slope * psi
+
+
+def _ratio_slope(
+    profile: Contacts, side: int, ratio: ComplexArray, energy_eV: ComplexArray
+) -> ComplexArray:
+    """Give the derivative per eV of `outward_ratio_eV_nm`; (E - V) / m(E) grows by m / m(E)^2."""
+    share = profile.contact_mass[side] / contact_mass_at(profile, side, energy_eV)
+    slope: ComplexArray = 0.5 * ratio * share / (energy_eV - profile.contact_edge_eV[side])
+    return slope
 
 
 def states_below(
@@ -122,7 +132,8 @@ def _closed_ratio(
     if is_open:
         return np.full_like(energy_eV, wall_eV_nm)
     below = np.maximum(profile.contact_edge_eV[side] - energy_eV, 0.0)
-    return np.sqrt(C_EV_NM2 / profile.contact_mass[side] * below)
+    ratio: FloatArray = np.sqrt(C_EV_NM2 / contact_mass_at(profile, side, energy_eV) * below)
+    return ratio
 
 
 def closed_stack_energies(

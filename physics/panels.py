@@ -9,9 +9,7 @@ from physics.quadrature import EVEN, PEAK, ROOT, Panels
 
 FloatArray = NDArray[np.float64]
 
-AROUND_FERMI_KT = np.array(
-    [-20.0, -12.0, -6.0, -3.0, 0.0, 3.0, 6.0, 12.0, 20.0, 30.0, 45.0, 70.0]
-)
+AROUND_FERMI_KT = np.array([-20.0, -12.0, -6.0, -3.0, 0.0, 3.0, 6.0, 12.0, 20.0, 30.0, 45.0, 70.0])
 """Cuts around a Fermi energy: the logarithm's nearest poles lie at +- i pi kT."""
 TOO_CLOSE_KT = 0.7
 """Cuts for the Fermi energies are left out closer than this to another."""
@@ -23,8 +21,8 @@ LONGEST_S = 3.0
 
 def energy_panels(
     owner: int,
-    low_eV: float,
-    high_eV: float,
+    range_eV: tuple[float, float],
+    *,
     fermi_eV: FloatArray,
     kT_eV: float,
     level_eV: FloatArray,
@@ -36,17 +34,21 @@ def energy_panels(
     ----------
     owner : int
         Number of the member.
-    low_eV, high_eV : float
-        The range; ``low_eV`` is the edge above which both contacts are open.
+    range_eV : tuple of float
+        From the edge above which both contacts are open to where hardly an electron is.
     fermi_eV : ndarray
         Fermi energies that the integrand is not smooth around.
     level_eV, width_eV : ndarray, shape (R,)
         The levels, sorted; nan at the end is left out.
     """
+    low_eV, high_eV = range_eV
     there = np.isfinite(level_eV)
     level, half_width = level_eV[there], 0.5 * width_eV[there]
     between = 0.5 * (level[1:] + level[:-1])
-    cuts = _cuts(low_eV, high_eV, fermi_eV, kT_eV, between, level)
+    fixed = [low_eV, *between.tolist(), high_eV]
+    if level.size:
+        fixed.append(0.5 * (low_eV + float(level[0])))  # the first panel, at the edge, has no level
+    cuts = _cuts(fixed, fermi_eV, kT_eV)
     start, stop = cuts[:-1], cuts[1:]
     number = np.ceil((stop - start) / WIDEST_EV).astype(np.int64)
     group = np.searchsorted(between, 0.5 * (start + stop))
@@ -75,21 +77,11 @@ def energy_panels(
     )
 
 
-def _cuts(
-    low_eV: float,
-    high_eV: float,
-    fermi_eV: FloatArray,
-    kT_eV: float,
-    between: FloatArray,
-    level: FloatArray,
-) -> FloatArray:
-    """Sorted energies at which panels end, ends included."""
-    kept = [low_eV, *between.tolist(), high_eV]
-    if level.size:
-        kept.append(0.5 * (low_eV + float(level[0])))  # the first panel, at the edge, has no level
+def _cuts(fixed_eV: list[float], fermi_eV: FloatArray, kT_eV: float) -> FloatArray:
+    """Sorted energies at which panels end: the fixed ones, and some around the Fermi energies."""
+    low, high = min(fixed_eV), max(fixed_eV)
+    kept = list(fixed_eV)
     for cut in np.unique((fermi_eV[:, None] + AROUND_FERMI_KT * kT_eV).ravel()).tolist():
-        if min(abs(cut - other) for other in kept) > TOO_CLOSE_KT * kT_eV:
+        if low < cut < high and min(abs(cut - other) for other in kept) > TOO_CLOSE_KT * kT_eV:
             kept.append(cut)
-    cuts = np.unique(kept)
-    cuts = cuts[(cuts >= low_eV) & (cuts <= high_eV)]
-    return cuts
+    return np.unique(kept)

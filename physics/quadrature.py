@@ -1,7 +1,7 @@
 """Adaptive quadrature on many panels at once, each with a substitution of its own (no physics).
 
-The rule is the pair of Gauss (7 points) and Kronrod (15 points), A. S. Kronrod, Nodes and Weights of
-Quadrature Formulas (1965); figures from R. Piessens et al., QUADPACK (1983), from memory, and
+The rule is the pair of Gauss (7 points) and Kronrod (15 points), A. S. Kronrod, Nodes and Weights
+of Quadrature Formulas (1965); figures from R. Piessens et al., QUADPACK (1983), from memory, and
 tested by the polynomials that they integrate exactly. The error estimate is QUADPACK's.
 
 A panel integrates over s, from which x = centre + scale * shape(s):

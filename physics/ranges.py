@@ -30,6 +30,7 @@ CONTACT_DONORS_CM3 = Range(
     0.0, 1e22, "a contact's donors are above 0 and at most 1e22 cm^-3", open_below=True
 )
 PERMITTIVITY = Range(1.0, 1e4, "a relative permittivity lies between 1 and 1e4")
+GAP_EV = Range(1e-3, 20.0, "a gap lies between 1e-3 and 20 eV")
 LATTICE_NM = Range(0.1, 10.0, "a lattice constant lies between 0.1 and 10 nm")
 MONOLAYER_NM = Range(0.05, 5.0, "a monolayer is between 0.05 and 5 nm thick")
 TEMPERATURE_K = Range(0.01, 2000.0, "a temperature lies between 0.01 and 2000 K")

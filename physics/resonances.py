@@ -119,7 +119,7 @@ def fast_poles(
     closed = _closed_energies(family, sectors, low_eV, high_eV)
     pole, settled = _polished(family, sectors, closed, depth_eV)
     sure = _all_accounted_for(family, sectors, closed, np.where(settled, pole, np.nan))
-    sure &= ~_coincide(np.where(settled, pole, np.nan))
+    sure = sure & ~_coincide(np.where(settled, pole, np.nan))
     settled &= (pole.real >= low_eV[:, None]) & (pole.real <= high_eV[:, None])
     pole = np.where(settled, pole, complex(np.nan, np.nan))
     order = np.argsort(pole.real, axis=1)  # nan last
@@ -186,8 +186,7 @@ def _coincide(pole_eV: ComplexArray) -> NDArray[np.bool_]:
     """Say for each member whether two starts have ended at one pole, shape (B,)."""
     gap = np.abs(pole_eV[:, :, None] - pole_eV[:, None, :])
     same = (gap <= 10.0 * SETTLED_EV) & ~np.eye(pole_eV.shape[1], dtype=bool)
-    coincide: NDArray[np.bool_] = same.any(axis=(1, 2))
-    return coincide
+    return np.asarray(same.any(axis=(1, 2)))
 
 
 def _all_accounted_for(
@@ -203,5 +202,4 @@ def _all_accounted_for(
     ends = np.concatenate([middle - NEAR_EV, middle + NEAR_EV], axis=1)
     count = states_below(family, sectors, OPEN, ends, OTHER_WALL_EV_NM)
     jump = count[:, middle.shape[1] :] - count[:, : middle.shape[1]]
-    sure: NDArray[np.bool_] = ~np.any(bare & (jump > 0), axis=1)
-    return sure
+    return np.asarray(~np.any(bare & (jump > 0), axis=1))

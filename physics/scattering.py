@@ -8,21 +8,20 @@ resonance and T = 1e-400 a number (through its logarithm). The ratio form is the
 embedding of Light and Walker, J. Chem. Phys. 65, 4272 (1976), here on the matrix of `sectors`.
 
 The dwell time is the probability in the stack over the incident flux (F. T. Smith, Phys. Rev. 118,
-349 (1960)), with the integral of |psi|^2 over a sector from the energy derivative of its matrix.
+349 (1960)), with the density's integral over a sector from the energy derivative of its matrix.
 """
 
 from __future__ import annotations
 
 import math
 from dataclasses import dataclass, fields
-from typing import Protocol
 
 import numpy as np
 from numpy.typing import NDArray
 
 from physics.constants import HBAR2_OVER_2M0_EV_NM2 as C_EV_NM2
 from physics.constants import HBAR_EV_S
-from physics.field import Profile
+from physics.field import Contacts, Profile, contact_mass_at
 from physics.sectors import Expanded, Sectors, cut, matrices, matrices_and_slopes
 
 FloatArray = NDArray[np.float64]
@@ -31,18 +30,6 @@ ENERGIES_AT_ONCE = 65_536
 """Energies carried through the stack at once: millions would fill the memory, not go faster."""
 NODE_GUARD = 1e-20
 """Relative shift that keeps a division by an exact node finite, far below rounding."""
-
-
-class Contacts(Protocol):
-    """What scattering wants to know of the contacts, of one profile or of a family of them."""
-
-    @property
-    def contact_edge_eV(self) -> tuple[float, float] | tuple[FloatArray, FloatArray]:
-        """Band edge in the left and in the right contact, bias included."""
-
-    @property
-    def contact_mass(self) -> tuple[float, float] | tuple[FloatArray, FloatArray]:
-        """Mass in the left and in the right contact, in m0."""
 
 
 @dataclass(frozen=True, eq=False)
@@ -77,7 +64,7 @@ class Carried:
     phase_rad: FloatArray
     """Phase of psi(left face) / psi(right face)."""
     content_nm: FloatArray
-    """Integral of |psi|^2 over the stack, over |psi(left face)|^2."""
+    """Integral of the density over the stack, over |psi(left face)|^2."""
 
 
 def scatter(profile: Profile, energy_eV: FloatArray) -> Scattering:
@@ -162,7 +149,7 @@ def log_transmission_through(
 
 
 def contact_flux_eV_nm(profile: Contacts, side: int, energy_eV: FloatArray) -> FloatArray:
-    """``c k / m`` in a contact where it is open; ``-c kappa / m`` where it is closed.
+    """``c k / m(E)`` in a contact where it is open; ``-c kappa / m(E)`` where it is closed.
 
     Parameters
     ----------
@@ -171,8 +158,9 @@ def contact_flux_eV_nm(profile: Contacts, side: int, energy_eV: FloatArray) -> F
     energy_eV : ndarray, shape (E,)
     """
     above = energy_eV - profile.contact_edge_eV[side]
-    scale = C_EV_NM2 / profile.contact_mass[side]
-    return np.sign(above) * np.sqrt(scale * np.abs(above))
+    scale = C_EV_NM2 / contact_mass_at(profile, side, energy_eV)
+    flux: FloatArray = np.sign(above) * np.sqrt(scale * np.abs(above))
+    return flux
 
 
 def carry_left(profile: Profile, sectors: Sectors, energy_eV: FloatArray) -> Carried:
@@ -201,9 +189,11 @@ def carry_left(profile: Profile, sectors: Sectors, energy_eV: FloatArray) -> Car
 def sector_content_nm(
     matrix: FloatArray, slopes: FloatArray, x: FloatArray, y: FloatArray
 ) -> FloatArray:
-    """Integral of |psi|^2 over a sector for psi = 1, f = x + i y at its left face.
+    """Integral of the density over a sector for psi = 1, f = x + i y at its left face.
 
-    From ``d/dx (u df/dE - f du/dE) = -u^2`` for real solutions u at real energy.
+    From ``d/dx (u df/dE - f du/dE) = -u^2 - (b/c) f^2`` for real solutions u at real energy: the
+    density is |psi|^2 and, where the mass goes with the energy, the valence component's
+    ``(b/c) |f|^2``.
     """
     a, b, c, d = matrix
     da, db, dc, dd = slopes

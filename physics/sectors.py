@@ -1,17 +1,18 @@
 """A profile cut into sectors, and their transfer matrices at any energy, real or complex.
 
-In one sector edge and mass are linear, so that with the outward flux ``f = c psi'/m``,
+In one sector edge, mass and mass slope are linear, so that with the outward flux ``f = c psi'/m``,
 ``c = hbar^2 / 2 m0``, the one-band equation of D. J. BenDaniel and C. B. Duke, Phys. Rev. 152, 683
 (1966), is a first-order pair with polynomial coefficients::
 
-    psi' = (m(x) / c) f          f' = (V(x) - E) psi
+    psi' = (m / c) f          f' = (V(x) - E) psi          m = m(x) + b(x) (E - V(x))
 
 Both unknowns are continuous across every interface. The Frobenius series of the two fundamental
 solutions is summed over position once, keeping the energy as a polynomial variable: the transfer
 matrix of a sector is an entire function of the energy, hence a polynomial of low degree to
 rounding while (local wavevector) x (length) stays below `SECTOR_PHASE`. One matrix product then
 gives the matrices of all sectors at all energies; there is no pole, no special case at a band
-edge, and no difference between flat, tilted and graded layers.
+edge, and no difference between flat, tilted and graded layers. A mass that goes with the energy
+(b > 0, `physics.band`) is linear in it and changes nothing but the polynomial's degree.
 """
 
 from __future__ import annotations
@@ -23,27 +24,26 @@ from typing import Any, Protocol
 import numpy as np
 from numpy.typing import NDArray
 
-from physics.constants import HBAR2_OVER_2M0_EV_NM2 as C_EV_NM2
-from physics.errors import StructureError
-from physics.field import Profile
-from physics.frobenius import DEGREE, sector_series
+from physics.cuts import described_sectors, sector_shares
+from physics.field import Profile, require_above_valence
+from physics.frobenius import DEGREE, TWO_BAND_DEGREE, sector_series
 
 Energies = NDArray[np.float64] | NDArray[np.complex128]
 
-SECTOR_PHASE = 1.5
-"""Largest (wavevector x length) of a sector: the series loses less than one digit up to here."""
 BLOCK_ELEMENTS = 250_000
 """Matrix elements held at once (2 MB): blocks that stay in the cache run fastest."""
 BUILD_BLOCK = 256
 """Sectors whose series are summed at once: what stays in the cache."""
-MAX_SECTORS = 400_000
-"""A stack that needs more is refused rather than left to run for hours."""
 
 FloatArray = NDArray[np.float64]
 
 
 class Expanded(Protocol):
     """Transfer matrices as polynomials in the energy, of one profile or of a family of them."""
+
+    @property
+    def coefficients(self) -> FloatArray:
+        """Coefficients of the polynomials; the last axis counts the powers."""
 
     @property
     def centre_eV(self) -> float | FloatArray:
@@ -78,11 +78,13 @@ class Sectors:
     kind: NDArray[np.int64]
     """Which of the distinct sectors each one is like, shape (S,): a superlattice has few."""
     coefficients: FloatArray
-    """Shape (P, 4, U, DEGREE + 1): stop, element (a, b, c, d), distinct sector, power of energy."""
+    """Shape (P, 4, U, D): stop, element (a, b, c, d), distinct sector, power of energy."""
     stops: FloatArray
     """Where in each sector the matrices end, as fractions of its length, shape (P,)."""
     watch: Callable[[], None]
     """`Profile.watch`, called once a block of sectors."""
+    mass_slope: FloatArray
+    """Mass slope at each sector's left and right face, in m0 per eV, shape (2, S)."""
 
     @property
     def count(self) -> int:
@@ -146,47 +148,28 @@ def cut(
     ------
     StructureError
         More than `MAX_SECTORS` sectors would be needed.
+    EnergyError
+        The window reaches into a valence band, where a mass is not above 0.
     """
-    piece, left, share = _sector_shares(profile, low_eV, high_eV, depth_eV, marks_nm)
+    require_above_valence(profile, low_eV)
+    piece, left, share = sector_shares(profile, low_eV, high_eV, depth_eV, marks_nm)
     start, end = profile.position_nm[piece], profile.position_nm[piece + 1]
     position = np.append(start + (end - start) * left, profile.length_nm)
     centre = 0.5 * (low_eV + high_eV)
     reach = max(0.5 * (high_eV - low_eV) + depth_eV, 1e-3)
     described = described_sectors(profile, piece, left, share, centre)
+    degree = DEGREE if profile.is_parabolic else TWO_BAND_DEGREE
     distinct, kind = np.unique(described, axis=0, return_inverse=True)
     stop_array = np.asarray(stops, dtype=np.float64)
-    coefficients = np.empty((stop_array.size, 4, distinct.shape[0], DEGREE + 1))
+    coefficients = np.empty((stop_array.size, 4, distinct.shape[0], degree + 1))
     for first in range(0, distinct.shape[0], BUILD_BLOCK):
         part = slice(first, first + BUILD_BLOCK)
-        coefficients[:, :, part] = sector_series(*distinct[part].T, reach=reach, stops=stop_array)
+        coefficients[:, :, part] = sector_series(
+            distinct[part], degree=degree, reach=reach, stops=stop_array
+        )
+    ends = np.stack([described[:, -2], described[:, -2] + described[:, -1]])
     return Sectors(
-        position, piece, centre, reach, kind.ravel(), coefficients, stop_array, profile.watch
-    )
-
-
-def described_sectors(
-    profile: Profile,
-    piece: NDArray[np.int64],
-    left: FloatArray,
-    share: FloatArray,
-    centre_eV: float,
-) -> FloatArray:
-    """Give what `sector_series` wants to know of each sector, shape (S, 5).
-
-    ``piece``, ``left`` and ``share``, each of shape (S,), say which piece a sector belongs to, at
-    which share of it the sector begins and which share of it the sector is.
-    """
-    edge_rise = (profile.edge_right_eV - profile.edge_left_eV)[piece]
-    mass_rise = (profile.mass_right - profile.mass_left)[piece]
-    return np.stack(
-        [
-            share * profile.thickness_nm[piece],
-            profile.edge_left_eV[piece] + edge_rise * left - centre_eV,
-            edge_rise * share,
-            profile.mass_left[piece] + mass_rise * left,
-            mass_rise * share,
-        ],
-        axis=1,
+        position, piece, centre, reach, kind.ravel(), coefficients, stop_array, profile.watch, ends
     )
 
 
@@ -238,69 +221,14 @@ def _product(table: FloatArray, powers: NDArray[Any]) -> NDArray[Any]:
 
 
 def energy_powers(sectors: Expanded, energy_eV: Energies) -> tuple[NDArray[Any], NDArray[Any]]:
-    """Powers of the scaled energy and their derivatives per eV, of shape (DEGREE + 1, ...)."""
+    """Powers of the scaled energy and their derivatives per eV, each of shape (D, ...)."""
+    degree = sectors.coefficients.shape[-1] - 1
     scaled = (energy_eV - sectors.centre_eV) / sectors.reach_eV
-    powers = np.empty((DEGREE + 1, *energy_eV.shape), dtype=scaled.dtype)
+    powers = np.empty((degree + 1, *energy_eV.shape), dtype=scaled.dtype)
     powers[0] = 1.0
-    for n in range(1, DEGREE + 1):
+    for n in range(1, degree + 1):
         np.multiply(powers[n - 1], scaled, out=powers[n])
     slope = np.zeros_like(powers)
-    order = np.arange(1, DEGREE + 1).reshape(-1, *(1,) * energy_eV.ndim)
+    order = np.arange(1, degree + 1).reshape(-1, *(1,) * energy_eV.ndim)
     slope[1:] = powers[:-1] * (order / sectors.reach_eV)
     return powers, slope
-
-
-def _sector_shares(
-    profile: Profile,
-    low_eV: float,
-    high_eV: float,
-    depth_eV: float,
-    marks_nm: FloatArray | None,
-) -> tuple[NDArray[np.int64], FloatArray, FloatArray]:
-    """Piece of each sector, where in the piece it begins and how much of it it is, as shares."""
-    number = sectors_per_piece(profile, low_eV, high_eV, depth_eV)
-    if int(number.sum()) > MAX_SECTORS:
-        allowed = f"it needs more than {MAX_SECTORS} sectors at these energies; make it thinner"
-        raise StructureError("stack", "thickness_nm", profile.length_nm, allowed)
-    piece, left, share = even_shares(number)
-    if marks_nm is None:
-        return piece, left, share
-    piece, left = _with_marks(profile, piece, left, marks_nm)
-    last = np.append(piece[1:] != piece[:-1], True)
-    return piece, left, np.where(last, 1.0, np.append(left[1:], 1.0)) - left
-
-
-def even_shares(number: NDArray[np.int64]) -> tuple[NDArray[np.int64], FloatArray, FloatArray]:
-    """Cut every piece evenly: piece of each sector, where in it it begins and its share of it."""
-    piece = np.repeat(np.arange(number.size), number)
-    rank = np.arange(piece.size) - np.repeat(np.cumsum(number) - number, number)
-    return piece, rank / number[piece], 1.0 / number[piece]
-
-
-def sectors_per_piece(
-    profile: Profile, low_eV: float, high_eV: float, depth_eV: float
-) -> NDArray[np.int64]:
-    """Number of sectors that each piece needs, shape (P,)."""
-    ends = np.stack([profile.edge_left_eV, profile.edge_right_eV])
-    distance = np.maximum(np.abs(ends - low_eV), np.abs(ends - high_eV)).max(axis=0)
-    mass = np.maximum(profile.mass_left, profile.mass_right)
-    wavevector = np.sqrt(mass * np.hypot(distance, depth_eV) / C_EV_NM2)
-    length = np.diff(profile.position_nm)
-    number: NDArray[np.int64] = np.ceil(wavevector * length / SECTOR_PHASE).astype(np.int64)
-    return np.maximum(number, 1)
-
-
-def _with_marks(
-    profile: Profile, piece: NDArray[np.int64], left: FloatArray, marks_nm: FloatArray
-) -> tuple[NDArray[np.int64], FloatArray]:
-    """Add cuts at given positions, unless a cut is there already to within rounding."""
-    faces = profile.position_nm
-    inside = np.unique(marks_nm[(marks_nm > 0.0) & (marks_nm < faces[-1])])
-    home = np.searchsorted(faces, inside, side="right") - 1
-    share = (inside - faces[home]) / (faces[home + 1] - faces[home])
-    pieces = np.concatenate([piece, home])
-    shares = np.concatenate([left, share])
-    order = np.lexsort((shares, pieces))
-    pieces, shares = pieces[order], shares[order]
-    fresh = np.append(True, (pieces[1:] != pieces[:-1]) | (np.diff(shares) > 1e-12))
-    return pieces[fresh], shares[fresh]

@@ -15,6 +15,7 @@ from physics.ranges import (
     DONORS_CM3,
     EDGE_EV,
     FERMI_EV,
+    GAP_EV,
     MASS,
     PERMITTIVITY,
     THICKNESS_NM,
@@ -39,6 +40,8 @@ class Contact:
     permittivity: float | None = None
     lattice_nm: float | None = None
     """Lattice constant; the left contact's is taken for the substrate's."""
+    gap_eV: float | None = None
+    """Direct gap, that the mass grows with the energy by where the band is not parabolic."""
 
     def check(self, where: str) -> None:
         """Raise `StructureError` where a value lies outside its range."""
@@ -47,6 +50,7 @@ class Contact:
         _require(where, "fermi_eV", self.fermi_eV, FERMI_EV)
         _require(where, "donors_cm3", self.donors_cm3, DONORS_CM3)
         _require(where, "permittivity", self.permittivity, PERMITTIVITY)
+        _require(where, "gap_eV", self.gap_eV, GAP_EV)
 
 
 @dataclass(frozen=True)
@@ -69,6 +73,10 @@ class Layer:
     x_edge_eV: float | None = None
     """Lowest conduction-band edge at X, on the same scale as ``edge_eV``, where it is known."""
     l_edge_eV: float | None = None
+    gap_eV: float | None = None
+    """Direct gap, that the mass grows with the energy by where the band is not parabolic."""
+    to_gap_eV: float | None = None
+    """Direct gap at the right face; None: as at the left one."""
 
     @property
     def right_edge_eV(self) -> float:
@@ -80,6 +88,11 @@ class Layer:
         """Mass at the right face."""
         return self.mass if self.to_mass is None else self.to_mass
 
+    @property
+    def right_gap_eV(self) -> float | None:
+        """Direct gap at the right face."""
+        return self.gap_eV if self.to_gap_eV is None else self.to_gap_eV
+
     def check(self, where: str) -> None:
         """Raise `StructureError` where a value lies outside its range."""
         _require(where, "thickness_nm", self.thickness_nm, THICKNESS_NM)
@@ -89,6 +102,8 @@ class Layer:
         _require(where, "to_mass", self.to_mass, MASS)
         _require(where, "permittivity", self.permittivity, PERMITTIVITY)
         _require(where, "donors_cm3", self.donors_cm3, DONORS_CM3)
+        _require(where, "gap_eV", self.gap_eV, GAP_EV)
+        _require(where, "to_gap_eV", self.to_gap_eV, GAP_EV)
 
 
 @dataclass(frozen=True)

@@ -1,4 +1,8 @@
-"""Density of scattering states and levels, and the local density of states."""
+"""Density of scattering states and levels, and the local density of states.
+
+Where the mass goes with the energy, densities hold the valence component ``(b/c) |f|^2`` as well
+as |psi|^2, and step where the mass slope b does.
+"""
 
 from __future__ import annotations
 
@@ -8,9 +12,10 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
+from physics.constants import HBAR2_OVER_2M0_EV_NM2 as C_EV_NM2
 from physics.errors import EnergyError, StructureError
-from physics.field import Profile
-from physics.leaving import STOPS, carry_from, leaving_states
+from physics.field import Profile, require_above_valence
+from physics.leaving import STOPS, carry_from, density, leaving_states
 from physics.levels import Level
 from physics.outgoing import Sheet
 from physics.scattering import NODE_GUARD, contact_flux_eV_nm
@@ -50,8 +55,9 @@ def scattering_state(profile: Profile, energy_eV: float, points: int = 400) -> D
     Raises
     ------
     EnergyError
-        Both contacts are closed at this energy: there is no scattering state.
+        Both contacts are closed at this energy, or it lies in a valence band.
     """
+    require_above_valence(profile, energy_eV)
     energy = np.array([energy_eV])
     q_left, q_right = (float(contact_flux_eV_nm(profile, side, energy)[0]) for side in (0, 1))
     if q_left <= 0.0 and q_right <= 0.0:
@@ -69,7 +75,8 @@ def scattering_state(profile: Profile, energy_eV: float, points: int = 400) -> D
     face = 0 if from_left else -1
     inward = 1.0 if from_left else -1.0
     incident = 0.5 * abs(psi[face, 0] + inward * flux[face, 0] / (1j * q_in))
-    scale = log_scale[:, 0] - log_scale[face, 0] - math.log(incident)
+    valence = profile.contact_mass_slope[face] / C_EV_NM2 * q_in**2
+    scale = log_scale[:, 0] - log_scale[face, 0] - math.log(incident * math.sqrt(1.0 + valence))
     return _density(
         profile,
         sectors,
@@ -107,7 +114,8 @@ def local_density_of_states(
 
     ``-Im G(x, x; E) / pi`` with ``G = 1 / (eta_right - eta_left)`` from the ratios f / psi of the
     two leaving solutions (E. N. Economou, Green's Functions in Quantum Physics, ch. 1, from
-    memory).
+    memory). A mass slope adds the valence component, ``-(b/c) Im(eta_left eta_right G) / pi``, with
+    the slope of the piece to the right at a face.
     Bound levels, which no wave reaches, are not part of it.
 
     Parameters
@@ -137,8 +145,15 @@ def local_density_of_states(
     left = _ratios(profile, sectors, energy, face, from_right=False)
     real, imag = right[0] - left[0], right[1] - left[1]
     size = real**2 + imag**2
+    waves = imag
+    if not profile.is_parabolic:
+        slope = np.append(sectors.mass_slope[0], sectors.mass_slope[1, -1])[face][:, None]
+        # Waves from the left have the right solution's f / psi, and the other way round.
+        from_left = left[1] * (right[0] ** 2 + right[1] ** 2)
+        from_right = right[1] * (left[0] ** 2 + left[1] ** 2)
+        waves = imag + slope / C_EV_NM2 * (from_right - from_left)
     with np.errstate(invalid="ignore", divide="ignore"):
-        return np.where(imag > 0.0, imag / size, 0.0) / np.pi
+        return np.where(imag > 0.0, waves / size, 0.0) / np.pi
 
 
 def _ratios(
@@ -193,13 +208,14 @@ def _density(
     """Evaluate a wave, known with its flux at the faces, at the even stops of every sector."""
     psi, flux, log_scale = wave
     even = all_matrices(sectors, np.array([energy]), slice(len(STOPS) - 1, None))  # (P, 4, S, 1)
-    inside = even[:, 0, :, 0] * psi[:-1] + even[:, 1, :, 0] * flux[:-1]  # (P, S)
-    density = np.abs(inside) ** 2 * np.exp(2.0 * log_scale[:-1])
-    first = abs(psi[0]) ** 2 * math.exp(2.0 * float(log_scale[0]))
     stops = sectors.stops[len(STOPS) - 1 :]
+    inside = density(sectors, even, psi[:, None], flux[:, None], stops)[..., 0]  # (P, S)
+    inside *= np.exp(2.0 * log_scale[:-1])
+    valence = sectors.mass_slope[0, 0] / C_EV_NM2 * abs(flux[0]) ** 2
+    first = (abs(psi[0]) ** 2 + valence) * math.exp(2.0 * float(log_scale[0]))
     x = sectors.position_nm[:-1] + stops[:, None] * sectors.length_nm
     x = np.append(0.0, x.T.ravel())
     x[-1] = profile.length_nm
     return Density(
-        x, profile.edge_eV(x), np.append(first, density.T.ravel()), float(np.real(energy)), norm
+        x, profile.edge_eV(x), np.append(first, inside.T.ravel()), float(np.real(energy)), norm
     )

@@ -7,7 +7,7 @@ from dataclasses import dataclass, replace
 
 from physics.advice import Advice, advise
 from physics.errors import EnergyError
-from physics.field import Profile, go_on, uniform_field
+from physics.field import Profile, go_on, uniform_field, valence_top
 from physics.levels import LevelSet, find_levels
 from physics.scattering import Scattering
 from physics.spectrum import adaptive_spectrum
@@ -17,6 +17,8 @@ from tui.session.resolve import resolve
 
 FLAT_EV = 1e-3
 """A stack whose edges differ by less has no barrier to take a window from."""
+ABOVE_VALENCE_EV = 1e-3
+"""A window taken from the edges begins this far above any valence band, where masses vanish."""
 ABOVE_FLAT_EV = 0.5
 """Then the window reaches this far above the edge."""
 
@@ -79,7 +81,8 @@ def set_scene(request: Request, watch: Callable[[], None] = go_on) -> Scene:
         The session does not describe something that can be computed.
     """
     structure = resolve(request.session)
-    profile = uniform_field(structure, request.session.conditions.bias_V)
+    conditions = request.session.conditions
+    profile = uniform_field(structure, conditions.bias_V, band=conditions.band)
     profile = replace(profile, watch=watch)
     low, high = energy_window(profile)
     view = request.session.view
@@ -111,9 +114,13 @@ def solve(request: Request, watch: Callable[[], None] = go_on) -> Study:
 
 
 def energy_window(profile: Profile) -> tuple[float, float]:
-    """Give the window that shows a profile: from its lowest to its highest edge, in eV."""
-    low, high = profile.lowest_eV, profile.highest_eV
-    return low, high if high - low >= FLAT_EV else high + ABOVE_FLAT_EV
+    """Give the window that shows a profile: from its lowest to its highest edge, in eV.
+
+    Where the mass goes with the energy, it begins above the valence bands.
+    """
+    floor = valence_top(profile)[0] + ABOVE_VALENCE_EV
+    low, high = max(profile.lowest_eV, floor), profile.highest_eV
+    return low, high if high - low >= FLAT_EV else max(low, high) + ABOVE_FLAT_EV
 
 
 def _first(*values: float | None) -> float:

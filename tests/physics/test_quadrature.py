@@ -1,6 +1,7 @@
 """The pair of rules and the substitutions, against integrals in closed form."""
 
 import math
+from itertools import pairwise
 
 import numpy as np
 import pytest
@@ -10,7 +11,9 @@ from physics.quadrature import EVEN, GAUSS, KRONROD, NODE, PEAK, ROOT, Panels, e
 
 def panel(kind: int, centre: float, scale: float, start: float, stop: float) -> Panels:
     one = np.array([0])
-    return Panels(one, one, np.array([kind]), *(np.array([x]) for x in (centre, scale, start, stop)))
+    return Panels(
+        one, one, np.array([kind]), *(np.array([x]) for x in (centre, scale, start, stop))
+    )
 
 
 @pytest.mark.parametrize("power", range(24))
@@ -35,7 +38,7 @@ def test_a_line_however_narrow(half_width: float) -> None:
     """Integral of 1 / (1 + (x/g)^2) from -a to a is 2 g atan(a/g)."""
     ends = np.linspace(-math.asinh(0.1 / half_width), math.asinh(0.1 / half_width), 120)
     panels = joined(
-        [panel(PEAK, 0.3, half_width, a, b) for a, b in zip(ends[:-1], ends[1:], strict=True)]
+        [panel(PEAK, 0.3, half_width, a, b) for a, b in pairwise(ends)]
     )
     distance, dx = panels.nodes()
     integral, error = estimate(1.0 / (1.0 + (distance / half_width) ** 2), dx)

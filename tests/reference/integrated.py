@@ -18,8 +18,9 @@ C = float(constant())
 def only_leaves(stack: Stack, energy: NDArray[np.complex128]) -> NDArray[np.complex128]:
     """Evaluate what vanishes at the poles; all energies on the sheet of their mean."""
     ratio = []
-    for edge, mass in (stack.left, stack.right):
-        above = (energy - float(edge)) * C / float(mass)
+    for edge, edge_mass, *gap in (stack.left, stack.right):
+        mass = edge_mass * (1 + (energy - float(edge)) / gap[0]) if gap else float(edge_mass)
+        above = (energy - float(edge)) * C / mass
         is_open = energy.real.mean() > float(edge)
         ratio.append(1j * np.sqrt(above) if is_open else -np.sqrt(-above))
     wave = np.concatenate([np.ones_like(energy), -ratio[0]])
@@ -36,9 +37,12 @@ def _through(
     to_v = v if slab.to_edge is None else float(slab.to_edge)
     to_m = m if slab.to_mass is None else float(slab.to_mass)
 
+    first, last = (float(value) for value in slab.mass_slopes())
+
     def slope(x: float, y: NDArray[np.complex128]) -> NDArray[np.complex128]:
         psi, flux = y[: energy.size], y[energy.size :]
-        mass, edge = m + (to_m - m) * x / d, v + (to_v - v) * x / d
+        edge = v + (to_v - v) * x / d
+        mass = m + (to_m - m) * x / d + (first + (last - first) * x / d) * (energy - edge)
         return np.concatenate([mass / C * flux, (edge - energy) * psi])
 
     result = scipy.integrate.solve_ivp(

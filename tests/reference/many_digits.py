@@ -3,7 +3,8 @@
 Written for the tests alone and sharing no code with ``physics``. A flat layer uses cosh and sinh; a
 linear edge with one mass the Airy functions (NIST Digital Library of Mathematical Functions, 9.2),
 with Wronskian 1/pi (9.2.7). With linear mass there is no such closed form: the pair
-psi' = (m/c) f, f' = (V - E) psi is summed as its Taylor series on short steps.
+psi' = (m/c) f, f' = (V - E) psi is summed as its Taylor series on short steps. With a gap the mass
+is m (1 + (E - V) / gap), where m and m / gap go linearly from face to face.
 """
 
 from __future__ import annotations
@@ -26,21 +27,38 @@ class Slab:
     mass: float
     to_edge: float | None = None
     to_mass: float | None = None
+    gap: float | None = None
+    to_gap: float | None = None
+
+    def mass_slopes(self) -> tuple[mp.mpf, mp.mpf]:
+        """Growth of the mass with E - V at both faces; 0 without a gap."""
+        if self.gap is None:
+            return mp.mpf(0), mp.mpf(0)
+        to_mass = self.mass if self.to_mass is None else self.to_mass
+        to_gap = self.gap if self.to_gap is None else self.to_gap
+        return mp.mpf(self.mass) / mp.mpf(self.gap), mp.mpf(to_mass) / mp.mpf(to_gap)
 
 
 @dataclass(frozen=True)
 class Stack:
-    """Slabs between contacts given as (edge, mass); the edges already hold the bias."""
+    """Slabs between contacts given as (edge, mass) or (edge, mass, gap), the bias in the edges."""
 
-    left: tuple[float, float]
+    left: tuple[float, ...]
     slabs: tuple[Slab, ...]
-    right: tuple[float, float]
+    right: tuple[float, ...]
 
 
 def constant() -> mp.mpf:
     """hbar^2 / 2 m0 in eV nm^2 from the CODATA 2022 values."""
     h, e, m = mp.mpf("6.62607015e-34"), mp.mpf("1.602176634e-19"), mp.mpf("9.1093837139e-31")
     return (h / (2 * mp.pi)) ** 2 / (2 * m) / e * mp.mpf(10) ** 18
+
+
+def contact_mass(contact: tuple[float, ...], energy: mp.mpc) -> mp.mpc:
+    """Mass of a contact at an energy."""
+    mass = mp.mpf(contact[1])
+    gap = contact[2:]
+    return mass * (1 + (energy - mp.mpf(contact[0])) / mp.mpf(gap[0])) if gap else mass
 
 
 def biased(stack: Stack, drop: float) -> Stack:
@@ -57,10 +75,12 @@ def biased(stack: Stack, drop: float) -> Stack:
                 slab.mass,
                 mp.mpf(to_edge) - mp.mpf(drop) * end / length,
                 slab.to_mass,
+                slab.gap,
+                slab.to_gap,
             )
         )
         x = end
-    right = (mp.mpf(stack.right[0]) - mp.mpf(drop), stack.right[1])
+    right = (mp.mpf(stack.right[0]) - mp.mpf(drop), *stack.right[1:])
     return Stack(stack.left, tuple(slabs), right)
 
 
@@ -69,10 +89,11 @@ def slab_matrix(slab: Slab, energy: mp.mpc) -> mp.matrix:
     d, v, m = mp.mpf(slab.thickness), mp.mpf(slab.edge), mp.mpf(slab.mass)
     to_v = v if slab.to_edge is None else mp.mpf(slab.to_edge)
     to_m = m if slab.to_mass is None else mp.mpf(slab.to_mass)
-    if to_m != m:
-        return _taylor(d, v, to_v, m, to_m, energy)
-    if to_v == v:
-        return _flat(d, v, m, energy)
+    b, to_b = slab.mass_slopes()
+    if to_v == v and to_m == m and to_b == b:
+        return _flat(d, v, m + b * (energy - v), energy)
+    if to_m != m or b != 0:
+        return _taylor(d, (v, to_v), (m, to_m), (b, to_b), energy)
     return _airy(d, v, to_v, m, energy)
 
 
@@ -109,22 +130,30 @@ def _airy(d: mp.mpf, v: mp.mpf, to_v: mp.mpf, m: mp.mpf, energy: mp.mpc) -> mp.m
     return fundamental(stop) * inverse
 
 
-def _taylor(  # noqa: PLR0917
-    d: mp.mpf, v: mp.mpf, to_v: mp.mpf, m: mp.mpf, to_m: mp.mpf, energy: mp.mpc
+def _taylor(
+    d: mp.mpf,
+    edge: tuple[mp.mpf, mp.mpf],
+    mass: tuple[mp.mpf, mp.mpf],
+    slope: tuple[mp.mpf, mp.mpf],
+    energy: mp.mpc,
 ) -> mp.matrix:
     c, steps = constant(), 1 + int(d)
+    (v, to_v), (m, to_m), (b, to_b) = edge, mass, slope
     total = mp.eye(2)
     for n in range(steps):
         h = d / steps
         v0, v1 = v + (to_v - v) * n / steps - energy, (to_v - v) / steps
         m0, m1 = m + (to_m - m) * n / steps, (to_m - m) / steps
+        b0, b1 = b + (to_b - b) * n / steps, (to_b - b) / steps
+        at_energy = m0 - b0 * v0, m1 - b0 * v1 - b1 * v0, -b1 * v1
         columns = []
         for psi, flux in ((mp.mpf(1), mp.mpf(0)), (mp.mpf(0), mp.mpf(1))):
             p, f = [mp.mpc(psi)], [mp.mpc(flux)]
             for k in range(60):
-                before = (p[k - 1], f[k - 1]) if k else (0, 0)
-                p.append(h / c * (m0 * f[k] + m1 * before[1]) / (k + 1))
-                f.append(h * (v0 * p[k] + v1 * before[0]) / (k + 1))
+                past = zip(at_energy, (f[k], *reversed(f[:k])), strict=False)
+                slower = p[k - 1] if k else 0
+                p.append(h / c * mp.fsum(factor * value for factor, value in past) / (k + 1))
+                f.append(h * (v0 * p[k] + v1 * slower) / (k + 1))
             columns.append((mp.fsum(p), mp.fsum(f)))
         total = mp.matrix([[columns[0][0], columns[1][0]], [columns[0][1], columns[1][1]]]) * total
     return total
@@ -141,7 +170,10 @@ def whole_matrix(stack: Stack, energy: mp.mpc) -> mp.matrix:
 def transmission(stack: Stack, energy: float) -> tuple[mp.mpf, mp.mpf]:
     """T and R of a wave from the left; both contacts open."""
     c, e = constant(), mp.mpf(energy)
-    q = [mp.sqrt(c / mp.mpf(m) * (e - mp.mpf(v))) for v, m in (stack.left, stack.right)]
+    q = [
+        mp.sqrt(c / contact_mass(contact, e) * (e - mp.mpf(contact[0])))
+        for contact in (stack.left, stack.right)
+    ]
     big = whole_matrix(stack, e)
     # (1 + r, i q0 (1 - r)) at the left face becomes (t, i q1 t) at the right one.
     a, b, cc, d = big[0, 0], big[0, 1], big[1, 0], big[1, 1]
@@ -164,10 +196,10 @@ def pole(stack: Stack, guess: complex) -> mp.mpc:
 def only_leaves(stack: Stack, energy: float) -> Callable[[mp.mpc], mp.mpc]:
     """Give the function that vanishes at the poles on the sheet of a real energy."""
     c = constant()
-    open_left, open_right = (energy > mp.mpf(v) for v, _ in (stack.left, stack.right))
+    open_left, open_right = (energy > mp.mpf(v) for v, *_ in (stack.left, stack.right))
 
-    def outward(contact: tuple[float, float], is_open: bool, energy: mp.mpc) -> mp.mpc:
-        above = (energy - mp.mpf(contact[0])) * c / mp.mpf(contact[1])
+    def outward(contact: tuple[float, ...], is_open: bool, energy: mp.mpc) -> mp.mpc:
+        above = (energy - mp.mpf(contact[0])) * c / contact_mass(contact, energy)
         return mp.mpc(0, 1) * mp.sqrt(above) if is_open else -mp.sqrt(-above)
 
     def condition(energy: mp.mpc) -> mp.mpc:

@@ -25,9 +25,20 @@ def two_barriers(
 def as_reference(structure: Structure, bias: float = 0.0) -> Stack:
     """Say the same structure to the reference (one permittivity, no Fermi energies)."""
     slabs = tuple(
-        Slab(layer.thickness_nm, layer.edge_eV, layer.mass, layer.to_edge_eV, layer.to_mass)
+        Slab(
+            layer.thickness_nm,
+            layer.edge_eV,
+            layer.mass,
+            layer.to_edge_eV,
+            layer.to_mass,
+            layer.gap_eV,
+            layer.to_gap_eV,
+        )
         for layer in structure.layers
     )
-    left, right = structure.left, structure.right
-    plain = Stack((left.edge_eV, left.mass), slabs, (right.edge_eV, right.mass))
+    left, right = (
+        (side.edge_eV, side.mass) if side.gap_eV is None else (side.edge_eV, side.mass, side.gap_eV)
+        for side in (structure.left, structure.right)
+    )
+    plain = Stack(left, slabs, right)
     return biased(plain, bias) if bias else plain

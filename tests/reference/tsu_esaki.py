@@ -6,6 +6,8 @@ nodes. The level's energy is mpmath's too, so that a line of 1e-12 eV is met in 
 
 from __future__ import annotations
 
+from itertools import pairwise
+
 import mpmath as mp
 import numpy as np
 
@@ -70,9 +72,8 @@ def _pieces(
         ends |= {mp.mpf(fermi) + kT * n for n in (-30, -15, -8, -4, -2, 0, 2, 4, 8, 15, 30, 50)}
     inside = sorted(end for end in ends if low <= end <= high)
     pieces = []
-    for start, stop in zip(inside[:-1], inside[1:], strict=True):
+    for start, stop in pairwise(inside):
         number = max(1, int(mp.ceil((stop - start) / WIDEST)))
         step = (stop - start) / number
         pieces += [(start + n * step, start + (n + 1) * step) for n in range(number)]
     return pieces
-

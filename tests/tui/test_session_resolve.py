@@ -227,3 +227,38 @@ def test_monolayers_are_counted_at_room_temperature() -> None:
 def test_a_stated_permittivity_goes_before_the_materials() -> None:
     assert resolve(with_layer(material="GaAs", permittivity=10.0)).layers[0].permittivity == 10.0
     assert resolve(with_layer(material="GaAs")).layers[0].permittivity == pytest.approx(12.9, 0.01)
+
+
+KANE = replace(DEMO, conditions=replace(DEMO.conditions, band="kane"))
+
+
+def test_gaps_are_the_materials_unless_stated() -> None:
+    structure = resolve(KANE)
+    assert structure.left.gap_eV == material("GaAs", 300.0).gap_eV
+    assert structure.layers[1].gap_eV == material("Al0.4Ga0.6As", 300.0).gap_eV
+    assert resolve(with_layer(material="GaAs", gap_eV=1.5)).layers[0].gap_eV == 1.5
+    grade = with_layer(material="GaAs", to_material="AlAs")
+    assert resolve(grade).layers[0].to_gap_eV == material("AlAs", 300.0).gap_eV
+    stated = with_layer(material="GaAs", to_material="AlAs", to_gap_eV=2.0)
+    assert resolve(stated).layers[0].to_gap_eV == 2.0
+    mine = MaterialEntry("Mine", 0.21, 0.085, gap_eV=1.1)
+    assert resolve(replace(with_layer(material="Mine"), materials=(mine,))).layers[0].gap_eV == 1.1
+
+
+@pytest.mark.parametrize(
+    ("changes", "key"),
+    [
+        ({"layers": (LayerEntry(edge_eV=0.3, mass=0.09, thickness_nm=2.0),)}, "layer 1 gap_eV"),
+        ({"right": replace(DEMO.right, material=None, edge_eV=0.0, mass=0.067)}, "right gap_eV"),
+        (
+            {"layers": (LayerEntry(material="GaAs", to_material="Mine", thickness_nm=2.0),)},
+            "layer 1 to_gap_eV",
+        ),
+    ],
+)
+def test_a_band_that_needs_gaps_is_refused_without(changes: dict[str, Any], key: str) -> None:
+    own = (MaterialEntry("Mine", 0.21, 0.085),)
+    assert resolve(replace(DEMO, materials=own, **changes))
+    error = refusal(replace(KANE, materials=own, **changes))
+    assert (error.key, error.found) == (key, "is missing")
+    assert "band = parabolic" in error.allowed

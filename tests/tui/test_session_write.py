@@ -99,6 +99,16 @@ def test_values_at_the_top_and_in_tables() -> None:
     assert written(session) == text
 
 
+def test_the_band_is_written_where_it_is_not_parabolic() -> None:
+    kane = replace(SESSION, conditions=replace(SESSION.conditions, band="kane"))
+    text = written(kane)
+    assert 'band = "kane"' in text
+    assert comments(text) == comments(COMMENTED)
+    assert 'band = "kane"' in written(kane, None)
+    assert "band" not in written(SESSION, None)
+    assert "kane" not in written(SESSION, text)
+
+
 def test_a_layer_moves_with_its_comment() -> None:
     first, well, last = SESSION.layers
     text = written(replace(SESSION, layers=(well, first, last)))
@@ -166,6 +176,7 @@ def test_windows_line_ends() -> None:
 words = st.text(st.characters(exclude_categories=["C", "Z"]), max_size=12)
 numbers = st.floats(0.02, 50.0)
 maybe = st.none() | numbers
+gaps = st.none() | st.floats(0.1, 10.0)
 layer = st.builds(
     LayerEntry,
     label=words,
@@ -175,15 +186,22 @@ layer = st.builds(
     donors_cm3=st.sampled_from([0.0, 1e17, 123456789.5]),
     permittivity=st.none() | st.floats(1.0, 20.0),
     to_edge_eV=maybe,
+    gap_eV=gaps,
+    to_gap_eV=gaps,
 )
-contact = st.builds(ContactEntry, edge_eV=numbers, mass=numbers, fermi_eV=maybe)
-own = st.builds(MaterialEntry, name=words.filter(bool), edge_eV=numbers, mass=numbers)
+contact = st.builds(ContactEntry, edge_eV=numbers, mass=numbers, fermi_eV=maybe, gap_eV=gaps)
+own = st.builds(MaterialEntry, name=words.filter(bool), edge_eV=numbers, mass=numbers, gap_eV=gaps)
 lines = st.lists(words, max_size=3).map("\n".join)
 session = st.builds(
     Session,
     title=words,
     notes=lines,
-    conditions=st.builds(Conditions, temperature_K=numbers, bias_V=numbers),
+    conditions=st.builds(
+        Conditions,
+        temperature_K=numbers,
+        bias_V=numbers,
+        band=st.sampled_from(["parabolic", "kane"]),
+    ),
     left=contact,
     layers=st.lists(layer, min_size=1, max_size=5).map(tuple),
     right=contact,

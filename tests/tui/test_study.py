@@ -83,3 +83,25 @@ def test_work_that_is_watched_can_be_ended() -> None:
 
     with pytest.raises(StaleError):
         solve(Request(DEMO), watch=stop)
+
+
+def kane(session: Session) -> Session:
+    return replace(session, conditions=replace(session.conditions, band="kane"))
+
+
+def test_the_band_reaches_the_answer() -> None:
+    plain, grown = (solve(Request(session)).levels.levels for session in (DEMO, kane(DEMO)))
+    assert 1e-4 < abs(plain[0].energy_eV - grown[0].energy_eV) < 0.01
+    assert not set_scene(Request(kane(DEMO))).profile.is_parabolic
+
+
+def test_the_window_begins_above_valence_bands() -> None:
+    """A contact's mass vanishes at 0.6 - 0.4 eV; what is asked for below is refused."""
+    contact = ContactEntry(edge_eV=0.6, mass=0.03, gap_eV=0.4)
+    well = LayerEntry(edge_eV=0.0, mass=0.05, thickness_nm=5.0, gap_eV=1.0)
+    session = kane(Session(left=contact, layers=(well,), right=contact))
+    scene = set_scene(Request(session))
+    assert (scene.from_eV, scene.to_eV) == (pytest.approx(0.201), 0.6)
+    assert solve(Request(session)).reached
+    with pytest.raises(EnergyError, match=r"left: 0\.1 eV lies in its valence band"):
+        solve(Request(session, from_eV=0.1))

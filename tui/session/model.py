@@ -10,6 +10,7 @@ from __future__ import annotations
 from dataclasses import dataclass, field
 from typing import Literal
 
+from physics.band import Band
 from physics.levels import DEFAULT_MAX_WIDTH_EV
 
 FieldModel = Literal["uniform"]
@@ -17,11 +18,12 @@ FieldModel = Literal["uniform"]
 
 @dataclass(frozen=True)
 class Conditions:
-    """Temperature, bias and the field model."""
+    """Temperature, bias, the field model and the band model."""
 
     temperature_K: float = 300.0
     bias_V: float = 0.0
     field: FieldModel = "uniform"
+    band: Band = "parabolic"
 
 
 @dataclass(frozen=True)
@@ -34,6 +36,7 @@ class ContactEntry:
     donors_cm3: float | None = None
     fermi_eV: float | None = None
     permittivity: float | None = None
+    gap_eV: float | None = None
 
 
 @dataclass(frozen=True)
@@ -51,6 +54,8 @@ class LayerEntry:
     to_material: str | None = None
     to_edge_eV: float | None = None
     to_mass: float | None = None
+    gap_eV: float | None = None
+    to_gap_eV: float | None = None
 
 
 @dataclass(frozen=True)
@@ -62,6 +67,7 @@ class MaterialEntry:
     mass: float
     permittivity: float | None = None
     monolayer_nm: float | None = None
+    gap_eV: float | None = None
 
 
 @dataclass(frozen=True)

@@ -183,6 +183,10 @@ def _conditions(table: dict[str, Any]) -> Conditions:
         path = ("conditions", "field")
         raise _refuse(path, "conditions field", f"is {shown(field)}", tables.FIELD_RULE)
     values["field"] = cast("FieldModel", field)
+    band = values.get("band", "parabolic")
+    if band not in tables.BANDS:
+        path = ("conditions", "band")
+        raise _refuse(path, "conditions band", f"is {shown(band)}", tables.BAND_RULE)
     return Conditions(**values)
 
 

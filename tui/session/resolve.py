@@ -10,6 +10,7 @@ from __future__ import annotations
 from dataclasses import dataclass, replace
 from functools import lru_cache
 
+from physics.band import NEEDS_GAP, Band, masses_of
 from physics.errors import MaterialError, PhysicsError, StructureError
 from physics.materials import Material, material
 from physics.occupation import fermi_from_donors
@@ -32,6 +33,7 @@ class Scale:
     temperature_K: float
     zero_eV: float | None
     """Catalogue edge of the left contact; None where it is no catalogue material."""
+    band: Band = "parabolic"
 
 
 def resolve(session: Session) -> Structure:
@@ -48,9 +50,11 @@ def resolve(session: Session) -> Structure:
     layers = tuple(_layer(entry, n, scale) for n, entry in enumerate(session.layers))
     right = _contact(session.right, "right", scale, session.conditions.temperature_K)
     try:
-        return Structure(left, layers, right)
+        structure = Structure(left, layers, right)
+        masses_of(structure, session.conditions.band)  # refuses a missing gap
     except StructureError as error:
         raise _from_structure(error) from error
+    return structure
 
 
 def scale_of(session: Session) -> Scale:
@@ -59,9 +63,9 @@ def scale_of(session: Session) -> Scale:
     temperature = session.conditions.temperature_K
     name = session.left.material
     if name is None or name in own:
-        return Scale(own, temperature, None)
+        return Scale(own, temperature, None, session.conditions.band)
     zero = _catalogue(name, temperature, ("left", "material")).edge_eV
-    return Scale(own, temperature, zero)
+    return Scale(own, temperature, zero, session.conditions.band)
 
 
 def medium_of(name: str, scale: Scale, path: KeyPath) -> Material:
@@ -74,6 +78,7 @@ def medium_of(name: str, scale: Scale, path: KeyPath) -> Material:
             mass=entry.mass,
             permittivity=entry.permittivity,
             monolayer_nm=entry.monolayer_nm,
+            gap_eV=entry.gap_eV,
         )
     known = _catalogue(name, scale.temperature_K, path)
     if scale.zero_eV is None:
@@ -116,12 +121,16 @@ def thickness_nm(entry: LayerEntry, medium: Material, path: KeyPath) -> float:
 def _layer(entry: LayerEntry, index: int, scale: Scale) -> Layer:
     path: KeyPath = ("layer", index)
     medium = _medium(entry.material, entry.edge_eV, entry.mass, scale, path)
-    to_edge, to_mass = entry.to_edge_eV, entry.to_mass
+    to_edge, to_mass, to_gap = entry.to_edge_eV, entry.to_mass, entry.to_gap_eV
     if entry.to_material is not None:
         end = medium_of(entry.to_material, scale, (*path, "to_material"))
         _require_agreement(to_edge, end.edge_eV, (*path, "to_edge_eV"), "to_material")
         _require_agreement(to_mass, end.mass, (*path, "to_mass"), "to_material")
         to_edge, to_mass = end.edge_eV, end.mass
+        to_gap = end.gap_eV if to_gap is None else to_gap
+        if to_gap is None and scale.band == "kane":
+            key = (*path, "to_gap_eV")
+            raise SessionError(_said(key), "is missing", NEEDS_GAP, path=key)
     stated = medium.permittivity if entry.permittivity is None else entry.permittivity
     return Layer(
         thickness_nm=thickness_nm(entry, medium, path),
@@ -137,6 +146,8 @@ def _layer(entry: LayerEntry, index: int, scale: Scale) -> Layer:
         monolayer_nm=medium.monolayer_nm,
         x_edge_eV=medium.x_edge_eV,
         l_edge_eV=medium.l_edge_eV,
+        gap_eV=medium.gap_eV if entry.gap_eV is None else entry.gap_eV,
+        to_gap_eV=to_gap,
     )
 
 
@@ -159,6 +170,7 @@ def _contact(entry: ContactEntry, side: str, scale: Scale, temperature_K: float)
         donors_cm3=entry.donors_cm3,
         permittivity=medium.permittivity if entry.permittivity is None else entry.permittivity,
         lattice_nm=medium.lattice_nm,
+        gap_eV=medium.gap_eV if entry.gap_eV is None else entry.gap_eV,
     )
 
 

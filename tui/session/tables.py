@@ -19,6 +19,8 @@ TEXT_RULE = "a text without control characters, in quotation marks"
 
 FIELD_MODELS = ("uniform",)
 FIELD_RULE = 'this version computes field = "uniform" only'
+BANDS = ("parabolic", "kane")
+BAND_RULE = 'a band is "parabolic" or "kane"'
 
 
 @dataclass(frozen=True)
@@ -37,6 +39,7 @@ CONDITIONS: Table = {
     "temperature_K": ranges.TEMPERATURE_K,
     "bias_V": ranges.BIAS_V,
     "field": LINE_TEXT,
+    "band": LINE_TEXT,
 }
 CONTACT: Table = {
     "material": LINE_TEXT,
@@ -45,6 +48,7 @@ CONTACT: Table = {
     "donors_cm3": ranges.CONTACT_DONORS_CM3,
     "fermi_eV": ranges.FERMI_EV,
     "permittivity": ranges.PERMITTIVITY,
+    "gap_eV": ranges.GAP_EV,
 }
 LAYER: Table = {
     "label": LINE_TEXT,
@@ -58,12 +62,15 @@ LAYER: Table = {
     "thickness_ml": MONOLAYERS,
     "donors_cm3": ranges.DONORS_CM3,
     "permittivity": ranges.PERMITTIVITY,
+    "gap_eV": ranges.GAP_EV,
+    "to_gap_eV": ranges.GAP_EV,
 }
 MATERIAL: Table = {
     "edge_eV": ranges.EDGE_EV,
     "mass": ranges.MASS,
     "permittivity": ranges.PERMITTIVITY,
     "monolayer_nm": ranges.MONOLAYER_NM,
+    "gap_eV": ranges.GAP_EV,
 }
 VIEW: Table = {
     "from_eV": ENERGY_EV,
@@ -84,6 +91,8 @@ UNITLESS = {
     "doping": "donors_cm3",
     "fermi": "fermi_eV",
     "monolayer": "monolayer_nm",
+    "gap": "gap_eV",
+    "to_gap": "to_gap_eV",
     "width": "thickness_nm or thickness_ml",
     "from": "from_eV",
     "to": "to_eV",

@@ -21,7 +21,7 @@ if TYPE_CHECKING:
     from tui.session.blocks import Block
 
 Values = dict[str, Any]
-UNSAID: Values = {"donors_cm3": 0.0, "label": "", "title": "", "notes": ""}
+UNSAID: Values = {"band": "parabolic", "donors_cm3": 0.0, "label": "", "title": "", "notes": ""}
 """Values that a fresh text leaves out."""
 
 
