@@ -171,9 +171,9 @@ def _curve(bias_V: FloatArray, currents: Currents) -> Curve:
         currents.current_density_A_per_cm2,
         currents.error_A_per_cm2,
         currents.reached,
-        currents.levels.energy_eV,
-        currents.levels.width_eV,
-        currents.by_level_A_per_cm2,
+        np.where(currents.levels.is_level, currents.levels.energy_eV, np.nan),
+        np.where(currents.levels.is_level, currents.levels.width_eV, np.nan),
+        np.where(currents.levels.is_level, currents.by_level_A_per_cm2, np.nan),
     )
 
 

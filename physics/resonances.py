@@ -4,8 +4,9 @@
 the closed stack's states, counted exactly (Sturm), start Aberth's iteration for all members at
 once, without a contour. What could go wrong is that a narrow level's start ends at another pole.
 A narrow level keeps its energy whatever the walls of the closed stack are; so each closed state
-that no pole was found near is looked for again behind another wall, and where it is still there the
-member is not `sure`: it should be asked from `levels`.
+that no pole was found near is looked for again behind another wall. Where it is still there to within
+`NEAR_EV`, a mark is set for the quadrature to look closely; where it is to within `NARROW_FROM_EV`,
+closer than any quadrature looks, the member is asked from `levels`, which proves its answer.
 """
 
 from __future__ import annotations
@@ -27,7 +28,7 @@ ComplexArray = NDArray[np.complex128]
 FloatArray = NDArray[np.float64]
 
 OPEN = Sheet(left_open=True, right_open=True)
-START_EV = 1e-5
+START_EV = 1e-6
 """Width of the brackets that start the iteration."""
 START_GAP_EV = 1e-8
 """Starts in one bracket are set apart by this, lest they move as one."""
@@ -37,6 +38,8 @@ SETTLED_EV = 1e-13
 LONGEST_STEP_EV = 0.05
 NEAR_WIDTHS, NEAR_EV = 3.0, 2e-4
 """A closed state is accounted for by a pole within so many widths of it, or this distance."""
+NARROW_FROM_EV = 4e-6
+"""Distance within which a state behind either wall is a narrow level that was missed."""
 OTHER_WALL_EV_NM = 1e3
 """A wall all but impenetrable, against one that lets the wave stand free."""
 
@@ -48,6 +51,8 @@ class Resonances:
     energy_eV: FloatArray
     width_eV: FloatArray
     """Full width Gamma, from the flux where it is too narrow for the pole to tell."""
+    is_level: NDArray[np.bool_]
+    """False for marks, and for what rows are filled up with."""
     line_peak: FloatArray
     """T at the peak of a line so narrow, and so far from others, that it is put in as a line
     (`spectrum`); nan of all others."""
@@ -71,25 +76,39 @@ def find_resonances(
     depth_eV : float
         Poles deeper below the axis than this are let go; they make no feature of the spectrum.
     """
-    pole, sure = fast_poles(family, sectors, low_eV, high_eV, depth_eV)
-    rows = [pole[n][np.isfinite(pole[n])] for n in range(pole.shape[0])]
-    for n in np.flatnonzero(~sure):
+    fast = fast_poles(family, sectors, low_eV, high_eV, depth_eV)
+    rows = []
+    for n, sure in enumerate(fast.sure.tolist()):
+        if sure:
+            rows.append(_row(fast.pole_eV[n], fast.mark_eV[n]))
+            continue
         found = find_levels(family.members[n], float(low_eV[n]), float(high_eV[n]), 2.0 * depth_eV)
-        rows[n] = np.array([complex(x.energy_eV, -0.5 * x.width_eV) for x in found.levels])
+        poles = [complex(level.energy_eV, -0.5 * level.width_eV) for level in found.levels]
+        rows.append(_row(np.array(poles, dtype=np.complex128), np.empty(0)))
     return _described(family, rows)
 
 
-def _described(family: Family, rows: list[ComplexArray]) -> Resonances:
-    size = (len(rows), max(row.size for row in rows))
+def _row(pole_eV: ComplexArray, mark_eV: FloatArray) -> tuple[ComplexArray, NDArray[np.bool_]]:
+    """Sort poles and marks, which are given the width that they stand for; nan is left out."""
+    poles, marks = pole_eV[np.isfinite(pole_eV)], mark_eV[np.isfinite(mark_eV)]
+    both = np.append(poles, marks - 1j * NEAR_EV)
+    order = np.argsort(both.real)
+    return both[order], order < poles.size
+
+
+def _described(family: Family, rows: list[tuple[ComplexArray, NDArray[np.bool_]]]) -> Resonances:
+    size = (len(rows), max(pole.size for pole, _ in rows))
     energy, width, peak = (np.full(size, np.nan) for _ in range(3))
-    for n, row in enumerate(rows):
-        energy[n, : row.size], width[n, : row.size] = row.real, -2.0 * row.imag
+    is_level = np.zeros(size, dtype=bool)
+    for n, (pole, real) in enumerate(rows):
+        energy[n, : pole.size], width[n, : pole.size] = pole.real, -2.0 * pole.imag
+        is_level[n, : pole.size] = real
         narrow = np.flatnonzero(width[n] < NARROW_EV)
         if narrow.size:
-            width[n, narrow], peak[n, narrow] = _from_flux(family.members[n], row[narrow])
-        gap = np.diff(row.real, prepend=-np.inf, append=np.inf)
-        peak[n, : row.size][np.minimum(gap[1:], gap[:-1]) <= APART_EV] = np.nan
-    return Resonances(energy, width, peak)
+            width[n, narrow], peak[n, narrow] = _from_flux(family.members[n], pole[narrow])
+        gap = np.diff(pole.real, prepend=-np.inf, append=np.inf)
+        peak[n, : pole.size][np.minimum(gap[1:], gap[:-1]) <= APART_EV] = np.nan
+    return Resonances(energy, width, is_level, peak)
 
 
 def _from_flux(profile: Profile, pole_eV: ComplexArray) -> tuple[FloatArray, FloatArray]:
@@ -100,30 +119,38 @@ def _from_flux(profile: Profile, pole_eV: ComplexArray) -> tuple[FloatArray, Flo
     return np.exp(log_width), 4.0 * np.exp(states.log_width_eV.sum(axis=0) - 2.0 * log_width)
 
 
+@dataclass(frozen=True, eq=False)
+class FastPoles:
+    """Poles without a proof; rows are filled up with nan."""
+
+    pole_eV: ComplexArray
+    """Settled poles, shape (B, R)."""
+    mark_eV: FloatArray
+    """Energies that ask for a close look, shape (B, R)."""
+    sure: NDArray[np.bool_]
+    """Whether no narrow level can have been missed, shape (B,)."""
+
+
 def fast_poles(
     family: Family,
     sectors: FamilySectors,
     low_eV: FloatArray,
     high_eV: FloatArray,
     depth_eV: float,
-) -> tuple[ComplexArray, NDArray[np.bool_]]:
-    """Find poles without a proof; see `find_resonances`.
-
-    Returns
-    -------
-    pole_eV : ndarray, shape (B, R)
-        Settled poles, sorted by energy, filled up with nan.
-    sure : ndarray, shape (B,)
-        Whether no narrow level can have been missed.
-    """
+) -> FastPoles:
+    """Find poles without a proof; see `find_resonances`."""
     closed = _closed_energies(family, sectors, low_eV, high_eV)
     pole, settled = _polished(family, sectors, closed, depth_eV)
-    sure = _all_accounted_for(family, sectors, closed, np.where(settled, pole, np.nan))
-    sure = sure & ~_coincide(np.where(settled, pole, np.nan))
-    settled &= (pole.real >= low_eV[:, None]) & (pole.real <= high_eV[:, None])
     pole = np.where(settled, pole, complex(np.nan, np.nan))
-    order = np.argsort(pole.real, axis=1)  # nan last
-    return np.take_along_axis(pole, order, axis=1), sure
+    bare = _unaccounted_for(closed, pole)
+    marked = _still_there(family, sectors, np.where(bare, closed, np.nan), NEAR_EV)
+    missed = _still_there(family, sectors, np.where(marked, closed, np.nan), NARROW_FROM_EV)
+    inside = (pole.real >= low_eV[:, None]) & (pole.real <= high_eV[:, None])
+    return FastPoles(
+        np.where(inside, pole, complex(np.nan, np.nan)),
+        np.where(marked, closed, np.nan),
+        ~missed.any(axis=1) & ~_coincide(pole),
+    )
 
 
 def _closed_energies(
@@ -189,17 +216,22 @@ def _coincide(pole_eV: ComplexArray) -> NDArray[np.bool_]:
     return np.asarray(same.any(axis=(1, 2)))
 
 
-def _all_accounted_for(
-    family: Family, sectors: FamilySectors, closed_eV: FloatArray, pole_eV: ComplexArray
-) -> NDArray[np.bool_]:
-    """Say for each member whether every narrow closed state has a pole, shape (B,)."""
+def _unaccounted_for(closed_eV: FloatArray, pole_eV: ComplexArray) -> NDArray[np.bool_]:
+    """Say which closed states have no pole near them, shape (B, R)."""
     distance = np.abs(closed_eV[:, :, None] - pole_eV.real[:, None, :])
     reach = np.maximum(-2.0 * NEAR_WIDTHS * pole_eV.imag, NEAR_EV)[:, None, :]
-    bare = np.isfinite(closed_eV) & ~np.any(distance <= reach, axis=2)
-    if not bare.any():
-        return np.ones(bare.shape[0], dtype=bool)
-    middle = np.where(bare, closed_eV, sectors.centre_eV)
-    ends = np.concatenate([middle - NEAR_EV, middle + NEAR_EV], axis=1)
+    return np.asarray(np.isfinite(closed_eV) & ~np.any(distance <= reach, axis=2))
+
+
+def _still_there(
+    family: Family, sectors: FamilySectors, closed_eV: FloatArray, reach_eV: float
+) -> NDArray[np.bool_]:
+    """Say which closed states are within reach of their place behind another wall, too."""
+    asked = np.isfinite(closed_eV)
+    if not asked.any():
+        return asked
+    middle = np.where(asked, closed_eV, sectors.centre_eV)
+    ends = np.concatenate([middle - reach_eV, middle + reach_eV], axis=1)
     count = states_below(family, sectors, OPEN, ends, OTHER_WALL_EV_NM)
     jump = count[:, middle.shape[1] :] - count[:, : middle.shape[1]]
-    return np.asarray(~np.any(bare & (jump > 0), axis=1))
+    return np.asarray(asked & (jump > 0))

@@ -13,9 +13,9 @@ import numpy as np
 
 from reference.many_digits import Stack, pole, transmission
 
-NODES, WEIGHTS = np.polynomial.legendre.leggauss(24)
+NODES, WEIGHTS = np.polynomial.legendre.leggauss(10)
 WIDEST = 0.02
-DECADE = 4.0
+DECADE = 3.0
 
 
 def prefactor(mass: float) -> mp.mpf:
@@ -60,7 +60,7 @@ def _pieces(
 ) -> list[tuple[mp.mpf, mp.mpf]]:
     low, high = (mp.mpf(end) for end in span)
     ends = {low, high}
-    ends |= {low + (high - low) * mp.mpf(2) ** -n for n in range(1, 30)}  # the edge's root
+    ends |= {low + (high - low) * mp.mpf(2) ** -n for n in range(1, 24)}  # the edge's root
     for level in poles:
         width = -2 * level.imag
         ends.add(level.real)
