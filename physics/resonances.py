@@ -4,9 +4,10 @@
 the closed stack's states, counted exactly (Sturm), start Aberth's iteration for all members at
 once, without a contour. What could go wrong is that a narrow level's start ends at another pole.
 A narrow level keeps its energy whatever the walls of the closed stack are; so each closed state
-that no pole was found near is looked for again behind another wall. Where it is still there to within
-`NEAR_EV`, a mark is set for the quadrature to look closely; where it is to within `NARROW_FROM_EV`,
-closer than any quadrature looks, the member is asked from `levels`, which proves its answer.
+that no pole was found near is looked for again behind another wall. Where it is still there to
+within `NEAR_EV`, a mark is set for the quadrature to look closely; where it is to within
+`NARROW_FROM_EV`, closer than any quadrature looks, the member is asked from `levels`, which proves
+its answer.
 """
 
 from __future__ import annotations

@@ -82,6 +82,27 @@ class View:
 
 
 @dataclass(frozen=True)
+class SweepEntry:
+    """The range of a current curve, and what is laid over it."""
+
+    from_V: float | None = None
+    """None: 0."""
+    to_V: float | None = None
+    """None: what the barriers suggest."""
+    overlay_K: str = ""
+    """Further temperatures whose curves are shown, in K, blanks between."""
+
+
+@dataclass(frozen=True)
+class DeviceEntry:
+    """The device that the stack is made into; None: not stated."""
+
+    mesa_um2: float | None = None
+    series_ohm: float | None = None
+    parallel_fF: float | None = None
+
+
+@dataclass(frozen=True)
 class Session:
     """A whole session text."""
 
@@ -93,3 +114,5 @@ class Session:
     right: ContactEntry = field(default_factory=ContactEntry)
     materials: tuple[MaterialEntry, ...] = ()
     view: View = field(default_factory=View)
+    sweep: SweepEntry = field(default_factory=SweepEntry)
+    device: DeviceEntry = field(default_factory=DeviceEntry)

@@ -6,26 +6,27 @@ that good texts are read at full speed.
 
 from __future__ import annotations
 
-import difflib
-import math
 import re
 import tomllib
 from pathlib import Path
 from typing import Any, cast
 
+from physics.ranges import TEMPERATURE_K
 from tui.session import tables
+from tui.session.checked import refuse, require_known, table_values
 from tui.session.lines import MOST_PARTS, KeyPath, tangled
 from tui.session.model import (
     Conditions,
     ContactEntry,
+    DeviceEntry,
     FieldModel,
     LayerEntry,
     MaterialEntry,
     Session,
+    SweepEntry,
     View,
 )
 from tui.session.refusal import SessionError, has_controls, named, printable, shown
-from tui.session.tables import Table, Text
 
 FORMAT = 1
 REMEDY = "name a session text, or send it to standard input and give - for its name"
@@ -136,9 +137,9 @@ def _syntax(message: str, source: str) -> SessionError:
 
 
 def _session(document: dict[str, Any]) -> Session:
-    _require_known(document, tables.TOP_KEYS, (), "")
+    require_known(document, tables.TOP_KEYS, (), "")
     _require_format(document)
-    texts = _values(
+    texts = table_values(
         {key: value for key, value in document.items() if key in tables.TOP_TEXTS},
         tables.TOP_TEXTS,
         (),
@@ -147,7 +148,7 @@ def _session(document: dict[str, Any]) -> Session:
     for name in ("left", "right", "layer"):
         if name not in document:
             header = "[[layer]]" if name == "layer" else f"[{name}]"
-            raise _refuse((), header, "is missing", "a stack has two contacts and layers")
+            raise refuse((), header, "is missing", "a stack has two contacts and layers")
     layers = _layers(document["layer"])
     return Session(
         title=str(texts.get("title", "")),
@@ -158,58 +159,62 @@ def _session(document: dict[str, Any]) -> Session:
         right=_contact(_table(document, "right"), "right"),
         materials=_materials(_table(document, "material")),
         view=_view(_table(document, "view")),
+        sweep=_sweep(_table(document, "sweep")),
+        device=DeviceEntry(
+            **table_values(_table(document, "device"), tables.DEVICE, ("device",), "device")
+        ),
     )
 
 
 def _require_format(document: dict[str, Any]) -> None:
     if "format" not in document:
-        raise _refuse((), "format", "is missing", f"write format = {FORMAT} at the top")
+        raise refuse((), "format", "is missing", f"write format = {FORMAT} at the top")
     value = document["format"]
     if type(value) is not int or value != FORMAT:
-        raise _refuse(("format",), "format", f"is {shown(value)}", f"this version reads {FORMAT}")
+        raise refuse(("format",), "format", f"is {shown(value)}", f"this version reads {FORMAT}")
 
 
 def _table(document: dict[str, Any], name: str) -> dict[str, Any]:
     value = document.get(name, {})
     if not isinstance(value, dict):
-        raise _refuse((name,), name, f"is {shown(value)}", f"a table [{name}] is expected")
+        raise refuse((name,), name, f"is {shown(value)}", f"a table [{name}] is expected")
     return value
 
 
 def _conditions(table: dict[str, Any]) -> Conditions:
-    values = _values(table, tables.CONDITIONS, ("conditions",), "conditions")
+    values = table_values(table, tables.CONDITIONS, ("conditions",), "conditions")
     field = values.get("field", "uniform")
     if field not in tables.FIELD_MODELS:
         path = ("conditions", "field")
-        raise _refuse(path, "conditions field", f"is {shown(field)}", tables.FIELD_RULE)
+        raise refuse(path, "conditions field", f"is {shown(field)}", tables.FIELD_RULE)
     values["field"] = cast("FieldModel", field)
     band = values.get("band", "parabolic")
     if band not in tables.BANDS:
         path = ("conditions", "band")
-        raise _refuse(path, "conditions band", f"is {shown(band)}", tables.BAND_RULE)
+        raise refuse(path, "conditions band", f"is {shown(band)}", tables.BAND_RULE)
     return Conditions(**values)
 
 
 def _contact(table: dict[str, Any], name: str) -> ContactEntry:
-    entry = ContactEntry(**_values(table, tables.CONTACT, (name,), name))
+    entry = ContactEntry(**table_values(table, tables.CONTACT, (name,), name))
     _require_medium(table, (name,), name)
     return entry
 
 
 def _layers(value: Any) -> tuple[LayerEntry, ...]:
     if not isinstance(value, list) or not all(isinstance(item, dict) for item in value):
-        raise _refuse(("layer",), "layer", f"is {shown(value)}", "write each layer under [[layer]]")
+        raise refuse(("layer",), "layer", f"is {shown(value)}", "write each layer under [[layer]]")
     if not value:
-        raise _refuse(("layer",), "layer", "is an empty list", "a stack has at least one layer")
+        raise refuse(("layer",), "layer", "is an empty list", "a stack has at least one layer")
     return tuple(_layer(item, index) for index, item in enumerate(value))
 
 
 def _layer(table: dict[str, Any], index: int) -> LayerEntry:
     path, name = ("layer", index), f"layer {index + 1}"
-    entry = LayerEntry(**_values(table, tables.LAYER, path, name))
+    entry = LayerEntry(**table_values(table, tables.LAYER, path, name))
     _require_medium(table, path, name)
     if entry.thickness_nm is None and entry.thickness_ml is None:
-        raise _refuse(path, name, "has no thickness", "give thickness_nm or thickness_ml")
+        raise refuse(path, name, "has no thickness", "give thickness_nm or thickness_ml")
     return entry
 
 
@@ -219,7 +224,7 @@ def _require_medium(table: dict[str, Any], path: KeyPath, name: str) -> None:
         return
     missing = "mass" if "edge_eV" in table else "edge_eV" if "mass" in table else ""
     found = f"has no {missing}" if missing else "has no material"
-    raise _refuse(path, name, found, "give a material, or edge_eV with mass")
+    raise refuse(path, name, found, "give a material, or edge_eV with mass")
 
 
 def _materials(table: dict[str, Any]) -> tuple[MaterialEntry, ...]:
@@ -230,64 +235,47 @@ def _material(table: dict[str, Any], name: str) -> MaterialEntry:
     path = ("material", name)
     key = f"material {named(name)}"
     if not name or has_controls(name):
-        raise _refuse(path, key, "has no usable name", tables.NAME_RULE)
+        raise refuse(path, key, "has no usable name", tables.NAME_RULE)
     if not isinstance(table[name], dict):
         allowed = f"a table [material.{named(name)}] is expected"
-        raise _refuse(path, key, f"is {shown(table[name])}", allowed)
-    values = _values(table[name], tables.MATERIAL, path, key)
+        raise refuse(path, key, f"is {shown(table[name])}", allowed)
+    values = table_values(table[name], tables.MATERIAL, path, key)
     for needed in ("edge_eV", "mass"):
         if needed not in values:
-            raise _refuse(
+            raise refuse(
                 path, key, f"has no {needed}", "a material of one's own has edge_eV and mass"
             )
     return MaterialEntry(name=name, **values)
 
 
 def _view(table: dict[str, Any]) -> View:
-    view = View(**_values(table, tables.VIEW, ("view",), "view"))
+    view = View(**table_values(table, tables.VIEW, ("view",), "view"))
     if view.from_eV is not None and view.to_eV is not None and not view.from_eV < view.to_eV:
         found = f"is {view.to_eV:g}, not above from_eV = {view.from_eV:g}"
-        raise _refuse(("view", "to_eV"), "view to_eV", found, "a window has from_eV below to_eV")
+        raise refuse(("view", "to_eV"), "view to_eV", found, "a window has from_eV below to_eV")
     return view
 
 
-def _values(table: dict[str, Any], keys: Table, path: KeyPath, name: str) -> dict[str, Any]:
-    """Check every value of one table."""
-    _require_known(table, tuple(keys), path, name)
-    return {
-        key: _value(table[key], keys[key], (*path, key), f"{name} {key}".strip()) for key in table
-    }
+def _sweep(table: dict[str, Any]) -> SweepEntry:
+    sweep = SweepEntry(**table_values(table, tables.SWEEP, ("sweep",), "sweep"))
+    if sweep.from_V is not None and sweep.to_V is not None and not sweep.from_V < sweep.to_V:
+        found = f"is {sweep.to_V:g}, not above from_V = {sweep.from_V:g}"
+        raise refuse(("sweep", "to_V"), "sweep to_V", found, "a sweep has from_V below to_V")
+    if overlay_temperatures(sweep.overlay_K) is None:
+        found = f"is {shown(sweep.overlay_K)}"
+        allowed = f'write it as "77 4.2"; {TEMPERATURE_K.allowed}'
+        raise refuse(("sweep", "overlay_K"), "sweep overlay_K", found, allowed)
+    return sweep
 
 
-def _require_known(table: dict[str, Any], keys: tuple[str, ...], path: KeyPath, name: str) -> None:
-    for key in table:
-        if key in keys:
-            continue
-        said = f"{name} {named(key)}".strip()
-        meant = tables.UNITLESS.get(key)
-        if meant is not None and any(part in keys for part in meant.split(" or ")):
-            raise _refuse((*path, key), said, "has no unit", f"write {meant}")
-        close = difflib.get_close_matches(key, keys, n=1, cutoff=0.6)
-        allowed = f"did you mean {close[0]}?" if close else f"known are {', '.join(keys)}"
-        raise _refuse((*path, key), said, "is not known", allowed)
+def _device(table: dict[str, Any]) -> DeviceEntry:
+    return DeviceEntry(**table_values(table, tables.DEVICE, ("device",), "device"))
 
 
-def _value(value: Any, entry: tables.Entry, path: KeyPath, name: str) -> float | str:
-    if isinstance(entry, Text):
-        rule = tables.TEXT_RULE if entry.lines else tables.NAME_RULE
-        if not isinstance(value, str) or has_controls(value, lines=entry.lines):
-            raise _refuse(path, name, f"is {shown(value)}", f"it is {rule}")
-        return value
-    if isinstance(value, bool) or not isinstance(value, (int, float)):
-        raise _refuse(path, name, f"is {shown(value)}", f"a number is expected: {entry.allowed}")
+def overlay_temperatures(text: str) -> tuple[float, ...] | None:
+    """Read temperatures with blanks between; None where one is none."""
     try:
-        number = float(value)
-    except OverflowError:
-        number = math.inf
-    if not entry.holds(number):
-        raise _refuse(path, name, f"is {shown(value)}", entry.allowed)
-    return number
-
-
-def _refuse(path: KeyPath, key: str, found: str, allowed: str) -> SessionError:
-    return SessionError(key, found, allowed, path=path)
+        values = tuple(float(part) for part in text.split())
+    except ValueError:
+        return None
+    return values if all(TEMPERATURE_K.holds(value) for value in values) else None

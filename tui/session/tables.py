@@ -77,8 +77,14 @@ VIEW: Table = {
     "to_eV": ENERGY_EV,
     "max_width_eV": WIDTH_EV,
 }
+SWEEP: Table = {"from_V": ranges.BIAS_V, "to_V": ranges.BIAS_V, "overlay_K": LINE_TEXT}
+DEVICE: Table = {
+    "mesa_um2": ranges.MESA_UM2,
+    "series_ohm": ranges.SERIES_OHM,
+    "parallel_fF": ranges.PARALLEL_FF,
+}
 TOP_TEXTS: Table = {"title": LINE_TEXT, "notes": Text(lines=True)}
-TOP_TABLES = ("conditions", "left", "layer", "right", "material", "view")
+TOP_TABLES = ("conditions", "left", "layer", "right", "material", "view", "sweep", "device")
 TOP_KEYS = ("format", *TOP_TEXTS, *TOP_TABLES)
 
 UNITLESS = {
@@ -94,8 +100,13 @@ UNITLESS = {
     "gap": "gap_eV",
     "to_gap": "to_gap_eV",
     "width": "thickness_nm or thickness_ml",
-    "from": "from_eV",
-    "to": "to_eV",
+    "from": "from_eV or from_V",
+    "to": "to_eV or to_V",
     "max_width": "max_width_eV",
+    "mesa": "mesa_um2",
+    "area": "mesa_um2",
+    "series": "series_ohm",
+    "parallel": "parallel_fF",
+    "overlay": "overlay_K",
 }
 """Keys that people write without the unit, and what they mean."""

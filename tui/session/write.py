@@ -21,7 +21,11 @@ if TYPE_CHECKING:
     from tui.session.blocks import Block
 
 Values = dict[str, Any]
-UNSAID: Values = {"band": "parabolic", "donors_cm3": 0.0, "label": "", "title": "", "notes": ""}
+UNSAID: Values = {
+    "band": "parabolic",
+    "donors_cm3": 0.0,
+    **dict.fromkeys(("label", "title", "notes", "overlay_K"), ""),
+}
 """Values that a fresh text leaves out."""
 
 
@@ -151,7 +155,8 @@ def _tables(session: Session) -> dict[KeyPath, Values]:
     for entry in session.materials:
         values = asdict(entry)
         result["material", values.pop("name")] = values
-    result["view",] = asdict(session.view)
+    for name in ("view", "sweep", "device"):
+        result[name,] = asdict(getattr(session, name))
     return result
 
 
@@ -173,8 +178,10 @@ def _fresh(session: Session) -> str:
     pieces += [_table_text(("layer",), _layer(layer)) for layer in session.layers]
     pieces.append(_table_text(("right",), parts["right",]))
     pieces += [_table_text(name, parts[name]) for name in parts if name[:1] == ("material",)]
-    if session.view != type(session.view)():
-        pieces.append(_table_text(("view",), parts["view",]))
+    for name in ("view", "sweep", "device"):
+        table = getattr(session, name)
+        if table != type(table)():
+            pieces.append(_table_text((name,), parts[name,]))
     return "\n".join([text, *pieces])
 
 

@@ -1,0 +1,187 @@
+"""The current curve of a session: a frozen request in, a frozen answer out.
+
+As `study` for the levels at one bias. A first answer on a coarse grid comes at once through
+``tell``; the curve is then refined where it bends, and its features are sought off the grid.
+"""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Callable
+from dataclasses import dataclass, replace
+
+import numpy as np
+
+from physics.curve import Curve, Drive, curve_at, own_curve
+from physics.device import (
+    HOT_W_PER_CM2,
+    Figures,
+    Mesa,
+    device_figures,
+    plate_capacitance_F_per_cm2,
+)
+from physics.errors import EnergyError
+from physics.extremes import Region, main_region, regions
+from physics.field import Profile, go_on, uniform_field
+from physics.levels import Level, find_levels
+from physics.structure import Structure
+from tui.session.model import Session
+from tui.session.resolve import resolve
+
+STEP_V, LEAST_V, MOST_V = 0.1, 0.3, 2.0
+"""A range of its own ends at a multiple of the step, between these."""
+NEAR_LEVEL_EV = 0.02
+"""Half the window in which the level that carries a current is looked up again."""
+
+
+@dataclass(frozen=True)
+class SweepRequest:
+    """What is asked. None: as the session says, or else as the barriers suggest."""
+
+    session: Session
+    from_V: float | None = None
+    to_V: float | None = None
+    points: int | None = None
+    """None: the biases follow the curve's features."""
+
+
+@dataclass(frozen=True, eq=False)
+class Sweep:
+    """The answer: curve, features, figures and notes."""
+
+    request: SweepRequest
+    structure: Structure
+    from_V: float
+    to_V: float
+    curve: Curve
+    regions: tuple[Region, ...]
+    main: Region | None
+    """The peak that a reader asks for."""
+    figures: Figures | None
+    notes: tuple[str, ...]
+    refined: bool
+    """False for a first answer, whose features are not sought yet."""
+
+    @property
+    def reached(self) -> bool:
+        """Whether every current reached the stated accuracy."""
+        return bool(self.curve.reached.all())
+
+
+def sweep(
+    request: SweepRequest,
+    watch: Callable[[], None] = go_on,
+    tell: Callable[[Sweep], None] | None = None,
+) -> Sweep:
+    """Answer a request.
+
+    Parameters
+    ----------
+    watch : callable
+        Called again and again; by raising it ends the work.
+    tell : callable, optional
+        Called with a first answer and after each refinement.
+
+    Raises
+    ------
+    SessionError, PhysicsError
+        The session does not describe something that can be computed, or no electrons are stated.
+    """
+    structure = resolve(request.session)
+    start, stop = _range(request, structure)
+    drive = drive_of(request.session, structure, watch)
+
+    def first(curve: Curve) -> Sweep:
+        return Sweep(request, structure, start, stop, curve, (), None, None, (), refined=False)
+
+    if request.points is None:
+        told = None if tell is None else (lambda curve: tell(first(curve)))
+        curve = own_curve(drive, start, stop, told)
+    else:
+        curve = curve_at(drive, np.linspace(start, stop, request.points))
+    return _finished(first(curve), drive)
+
+
+def drive_of(session: Session, structure: Structure, watch: Callable[[], None] = go_on) -> Drive:
+    """Say what the bands are at any bias, by the session's field model."""
+    conditions = session.conditions
+
+    def profiles(bias_V: np.ndarray[tuple[int], np.dtype[np.float64]]) -> list[Profile]:
+        return [
+            replace(uniform_field(structure, bias, band=conditions.band), watch=watch)
+            for bias in bias_V.tolist()
+        ]
+
+    return Drive(structure, conditions.temperature_K, profiles, watch)
+
+
+def _range(request: SweepRequest, structure: Structure) -> tuple[float, float]:
+    stated = request.session.sweep
+    start = next(v for v in (request.from_V, stated.from_V, 0.0) if v is not None)
+    suggested = max(suggested_V(structure), start + STEP_V)
+    stop = next(v for v in (request.to_V, stated.to_V, suggested) if v is not None)
+    if not start < stop:
+        raise EnergyError(
+            f"the sweep from {start:g} to {stop:g} V is empty; --to lies above --from"
+        )
+    return start, stop
+
+
+def suggested_V(structure: Structure) -> float:
+    """Bias up to which a curve is of interest: twice the highest barrier, within reason."""
+    highest = max(max(layer.edge_eV, layer.right_edge_eV) for layer in structure.layers)
+    wanted = STEP_V * math.ceil(2.0 * (highest - structure.left.edge_eV) / STEP_V)
+    return min(max(wanted, LEAST_V), MOST_V)
+
+
+def _finished(first: Sweep, drive: Drive) -> Sweep:
+    found = regions(drive, first.curve)
+    main = main_region(found, first.curve)
+    figures = None
+    if main is not None:
+        (profile,) = drive.profiles(np.array([main.peak.bias_V]))
+        stated = first.request.session.device
+        mesa = Mesa(stated.mesa_um2, stated.series_ohm, stated.parallel_fF)
+        level = carrying_level(first.curve, profile, main.peak.bias_V)
+        capacitance = plate_capacitance_F_per_cm2(first.structure)
+        figures = device_figures(main, profile, level, mesa, capacitance)
+    done = replace(first, regions=found, main=main, figures=figures, refined=True)
+    return replace(done, notes=_notes(done))
+
+
+def carrying_level(curve: Curve, profile: Profile, bias_V: float) -> Level | None:
+    """Look up the level that carries most of the current at a bias."""
+    nearest = int(np.argmin(np.abs(curve.bias_V - bias_V)))
+    share = np.abs(curve.level_current_A_per_cm2[nearest])
+    if not np.isfinite(share).any():
+        return None
+    energy = float(curve.level_eV[nearest, int(np.nanargmax(share))])
+    reach = NEAR_LEVEL_EV + abs(float(curve.bias_V[nearest]) - bias_V)
+    low = max(energy - reach, max(profile.contact_edge_eV) + 1e-9)
+    levels = find_levels(profile, low, energy + reach).levels if low < energy + reach else ()
+    return min(levels, key=lambda level: abs(level.energy_eV - energy), default=None)
+
+
+def _notes(done: Sweep) -> tuple[str, ...]:
+    notes = []
+    late = ~done.curve.reached
+    if late.any():
+        worst = done.curve.error_A_per_cm2[late] / np.maximum(
+            np.abs(done.curve.current_density_A_per_cm2[late]), 1e-300
+        )
+        notes.append(
+            f"accuracy: {int(late.sum())} of {late.size} currents miss the stated 1e-6, "
+            f"the worst is known to {float(worst.max()):.0e}"
+        )
+    if done.main is None:
+        notes.append("peak: the current has no peak in this range of bias")
+    elif done.main.valley is None:
+        notes.append("valley: the current still falls at the end of the range; go further")
+    if done.figures is not None and done.figures.dissipated_W_per_cm2 > HOT_W_PER_CM2:
+        notes.append(
+            f"burn-out: up to {done.figures.dissipated_W_per_cm2:.1e} W/cm2 turn into heat; a mesa "
+            "can burn out in continuous operation: limit the current, sink the heat or pulse it, "
+            "and follow your laboratory's rules"
+        )
+    notes.append("coherent: no scattering is counted; a measured valley is higher, a peak rounder")
+    return tuple(notes)
