@@ -7,8 +7,8 @@ fractions y_k::
                              -  sum_(k<l) y_k y_l sum_i x_i C_i,kl
 
 where Q_ik are the values of the binary compounds and C the bowings of the ternary alloys: 0 where
-none is published, always so for lattice, permittivity and elastic constants. For a ternary alloy it is the
-usual quadratic law; for two cations and two anions that of R. L. Moon, G. A. Antypas and
+none is published, always so for lattice, permittivity and elastic constants. For a ternary alloy it
+is the usual quadratic law; for two cations and two anions that of R. L. Moon, G. A. Antypas and
 L. W. James, J. Electron. Mater. 3, 635 (1974), from memory. A bowing that depends on the
 composition, C + C' x, is taken at the point of the ternary's line that lies closest to the alloy,
 x = (1 + x_i - x_j) / 2, as T. H. Glisson et al. do, J. Electron. Mater. 7, 1 (1978), from memory;
