@@ -25,6 +25,14 @@ class Conditions:
 
 
 @dataclass(frozen=True)
+class Growth:
+    """What the stack is grown on."""
+
+    substrate: str | None = None
+    """A formula of the catalogue; None: nothing is strained."""
+
+
+@dataclass(frozen=True)
 class ContactEntry:
     """A contact: a material, or an edge with a mass; with donors, a Fermi energy, or neither."""
 
@@ -87,3 +95,4 @@ class Session:
     right: ContactEntry = field(default_factory=ContactEntry)
     materials: tuple[MaterialEntry, ...] = ()
     view: View = field(default_factory=View)
+    growth: Growth = field(default_factory=Growth)

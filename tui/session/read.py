@@ -19,6 +19,7 @@ from tui.session.model import (
     Conditions,
     ContactEntry,
     FieldModel,
+    Growth,
     LayerEntry,
     MaterialEntry,
     Session,
@@ -158,6 +159,7 @@ def _session(document: dict[str, Any]) -> Session:
         right=_contact(_table(document, "right"), "right"),
         materials=_materials(_table(document, "material")),
         view=_view(_table(document, "view")),
+        growth=Growth(**_values(_table(document, "growth"), tables.GROWTH, ("growth",), "growth")),
     )
 
 

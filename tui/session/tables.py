@@ -38,6 +38,7 @@ CONDITIONS: Table = {
     "bias_V": ranges.BIAS_V,
     "field": LINE_TEXT,
 }
+GROWTH: Table = {"substrate": LINE_TEXT}
 CONTACT: Table = {
     "material": LINE_TEXT,
     "edge_eV": ranges.EDGE_EV,
@@ -71,7 +72,7 @@ VIEW: Table = {
     "max_width_eV": WIDTH_EV,
 }
 TOP_TEXTS: Table = {"title": LINE_TEXT, "notes": Text(lines=True)}
-TOP_TABLES = ("conditions", "left", "layer", "right", "material", "view")
+TOP_TABLES = ("conditions", "growth", "left", "layer", "right", "material", "view")
 TOP_KEYS = ("format", *TOP_TEXTS, *TOP_TABLES)
 
 UNITLESS = {
