@@ -33,11 +33,11 @@ nu cos^2(alpha)) (ln(h / b) + 1) / (4 pi (1 - nu)). The two are equal at::
     h = b (1 - nu cos^2(alpha)) / (k pi |e| (1 + nu) cos(lambda)) (ln(h / b) + 1)
 
 A layer with a free surface gets one segment (single kink), k = 8. A buried layer gets one at each
-face (double kink), twice the tension: k = 4, and slightly more than twice the thickness. (In the
-form with cos(lambda) = 1/2 put in, these are the factors 4 and 2 of I. J. Fritz et al., Appl. Phys.
-Lett. 46, 967 (1985), from memory.) The dislocations are of the 60-degree kind, b = a / sqrt(2) and
-cos(alpha) = cos(lambda) = 1/2. It is a limit of equilibrium: grown cold, a layer may stay strained
-to a few times the thickness.
+face (double kink), twice the tension: k = 4, and two to three times the thickness up to 2 % of
+mismatch. (In the form with cos(lambda) = 1/2 put in, these are the factors 4 and 2 of I. J. Fritz
+et al., Appl. Phys. Lett. 46, 967 (1985), from memory.) The dislocations are of the 60-degree kind,
+b = a / sqrt(2) and cos(alpha) = cos(lambda) = 1/2. It is a limit of equilibrium: grown cold, a
+layer may stay strained to a few times the thickness.
 """
 
 from __future__ import annotations
