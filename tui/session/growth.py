@@ -26,8 +26,8 @@ from tui.session.refusal import SessionError, named, printable, shown
 SUBSTRATE_PATH: KeyPath = ("growth", "substrate")
 
 
-def substrate_of(session: Session) -> Material | None:
-    """Look the substrate up; None where the session names none.
+def substrate_of(session: Session) -> str | None:
+    """Give the substrate's formula, once it is known to be one; None where none is named.
 
     Raises
     ------
@@ -41,17 +41,24 @@ def substrate_of(session: Session) -> Material | None:
         allowed = "a material of one's own has no lattice constant; name a formula, as InP"
         raise refused(SUBSTRATE_PATH, name, allowed)
     remedy = "name the substrate by its formula, as InP"
-    return _unstrained(name, session.conditions.temperature_K, SUBSTRATE_PATH, remedy)
+    _unstrained(name, session.conditions.temperature_K, SUBSTRATE_PATH, remedy)
+    return name
 
 
-def grown(name: str, temperature_K: float, substrate: Material | None, path: KeyPath) -> Material:
+def grown(name: str, temperature_K: float, substrate: str | None, path: KeyPath) -> Material:
     """Look a material up in the catalogue, strained where there is a substrate."""
     known = _unstrained(name, temperature_K, path, "or define [material.NAME]")
-    return known if substrate is None else strained(known, _strain(known, substrate, path))
+    if substrate is None:
+        return known
+    try:
+        return _known_strained(name, substrate, temperature_K)
+    except MaterialError as error:
+        why = str(error).removeprefix(f"material {known.name!r}: ")
+        raise refused(path, name, why) from error
 
 
 def layer_on(
-    layer: Layer, temperature_K: float, substrate: Material, names: tuple[str, str | None]
+    layer: Layer, substrate: str, temperature_K: float, name: str, to_name: str | None
 ) -> Layer:
     """Say in a layer of the catalogue how it is strained.
 
@@ -59,42 +66,41 @@ def layer_on(
     ----------
     layer : Layer
         With its edges already strained.
+    substrate : str
+        Formula.
     temperature_K : float
         Lattice temperature.
-    substrate : Material
-        On the catalogue's own scale.
-    names : tuple
+    name, to_name : str
         Formulas at the left face and, where it differs and is in the catalogue, at the right one.
     """
-    name, to_name = names
-    known = _known(name, temperature_K)
-    strain = _known_strain(known, substrate)
-    end = None if to_name is None else _known_strain(_known(to_name, temperature_K), substrate)
-    layer = replace(
+    strain = _known_strain(name, substrate, temperature_K)
+    end = None if to_name is None else _known_strain(to_name, substrate, temperature_K).in_plane
+    mean = strain.in_plane if end is None else 0.5 * (strain.in_plane + end)
+    return replace(
         layer,
         strain=strain.in_plane,
-        to_strain=None if end is None else end.in_plane,
+        to_strain=end,
         edge_shift_eV=strain.edge_shift_eV,
+        critical_nm=_critical_nm(mean, name, temperature_K, 2),
     )
-    return replace(layer, critical_nm=_critical_nm(layer.mean_strain, known, 2))
 
 
-def contact_on(contact: Contact, temperature_K: float, substrate: Material, name: str) -> Contact:
+def contact_on(contact: Contact, substrate: str, temperature_K: float, name: str) -> Contact:
     """Say in a contact of the catalogue how it is strained."""
-    known = _known(name, temperature_K)
-    strain = _known_strain(known, substrate)
+    strain = _known_strain(name, substrate, temperature_K)
     return replace(
         contact,
         strain=strain.in_plane,
         edge_shift_eV=strain.edge_shift_eV,
-        critical_nm=_critical_nm(strain.in_plane, known, 1),
+        critical_nm=_critical_nm(strain.in_plane, name, temperature_K, 1),
     )
 
 
-def stack_on(structure: Structure, substrate: Material) -> Structure:
+def stack_on(structure: Structure, substrate: str, temperature_K: float) -> Structure:
     """Name the substrate in a structure, with the critical thickness of the stack as a whole."""
-    critical = _critical_nm(structure.mean_strain, substrate, 2)
-    return replace(structure, substrate=substrate.name, critical_nm=critical)
+    critical = _critical_nm(structure.mean_strain, substrate, temperature_K, 2)
+    name = _known(substrate, temperature_K).name
+    return replace(structure, substrate=name, critical_nm=critical)
 
 
 def refused(path: KeyPath, value: object, allowed: str) -> SessionError:
@@ -114,8 +120,14 @@ def _known(name: str, temperature_K: float) -> Material:
 
 
 @lru_cache(maxsize=1024)
-def _known_strain(layer: Material, substrate: Material) -> Strain:
-    return strain_on(layer, substrate)
+def _known_strain(name: str, substrate: str, temperature_K: float) -> Strain:
+    return strain_on(_known(name, temperature_K), _known(substrate, temperature_K))
+
+
+@lru_cache(maxsize=1024)
+def _known_strained(name: str, substrate: str, temperature_K: float) -> Material:
+    strain = _known_strain(name, substrate, temperature_K)
+    return strained(_known(name, temperature_K), strain)
 
 
 def _unstrained(name: str, temperature_K: float, path: KeyPath, remedy: str) -> Material:
@@ -126,17 +138,11 @@ def _unstrained(name: str, temperature_K: float, path: KeyPath, remedy: str) -> 
         raise refused(path, name, f"{why}; {remedy}") from error
 
 
-def _strain(known: Material, substrate: Material, path: KeyPath) -> Strain:
-    try:
-        return _known_strain(known, substrate)
-    except MaterialError as error:
-        why = str(error).removeprefix(f"material {known.name!r}: ")
-        raise refused(path, known.name, why) from error
-
-
-def _critical_nm(in_plane: float | None, known: Material, kinks: Kinks) -> float | None:
+@lru_cache(maxsize=1024)
+def _critical_nm(in_plane: float, name: str, temperature_K: float, kinks: Kinks) -> float | None:
     """Critical thickness as a structure holds it: None without strain, 0 where there is none."""
-    if not in_plane or known.elastic is None or known.lattice_nm is None:
+    known = _known(name, temperature_K)
+    if in_plane == 0.0 or known.elastic is None or known.lattice_nm is None:
         return None
     poisson = poisson_ratio(known.elastic)
     return critical_thickness_nm(in_plane, known.lattice_nm, poisson, kinks) or 0.0

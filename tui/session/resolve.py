@@ -43,8 +43,8 @@ class Scale:
     temperature_K: float
     zero_eV: float | None
     """Catalogue edge of the left contact, strained; None where it is no catalogue material."""
-    substrate: Material | None = None
-    """On the catalogue's own scale; None where none is named."""
+    substrate: str | None = None
+    """Formula; None where none is named."""
 
     def formula(self, name: str | None) -> str | None:
         """Give a material's name if it is the catalogue's and strained, else None."""
@@ -68,7 +68,9 @@ def resolve(session: Session) -> Structure:
         structure = Structure(left, layers, right)
     except StructureError as error:
         raise _from_structure(error) from error
-    return structure if scale.substrate is None else stack_on(structure, scale.substrate)
+    if scale.substrate is None:
+        return structure
+    return stack_on(structure, scale.substrate, scale.temperature_K)
 
 
 def scale_of(session: Session) -> Scale:
@@ -160,8 +162,8 @@ def _layer(entry: LayerEntry, index: int, scale: Scale) -> Layer:
     name = scale.formula(entry.material)
     if scale.substrate is None or name is None:
         return layer
-    names = (name, scale.formula(entry.to_material))
-    return layer_on(layer, scale.temperature_K, scale.substrate, names)
+    to_name = scale.formula(entry.to_material)
+    return layer_on(layer, scale.substrate, scale.temperature_K, name, to_name)
 
 
 def _contact(entry: ContactEntry, side: str, scale: Scale, temperature_K: float) -> Contact:
@@ -187,7 +189,7 @@ def _contact(entry: ContactEntry, side: str, scale: Scale, temperature_K: float)
     name = scale.formula(entry.material)
     if scale.substrate is None or name is None:
         return contact
-    return contact_on(contact, temperature_K, scale.substrate, name)
+    return contact_on(contact, scale.substrate, temperature_K, name)
 
 
 def _medium(
