@@ -14,12 +14,11 @@ from physics.constants import BOLTZMANN_EV_PER_K
 from physics.field import ASSUMED_PERMITTIVITY, Profile
 from physics.levels import LevelSet
 from physics.scattering import Scattering
+from physics.strain_notes import strain_notes
 from physics.structure import Layer, Structure
 
 THIN_MONOLAYERS = 2.0
 """Below this an effective mass and a sharp edge mean little (common practice)."""
-STRAINED = 1e-3
-"""Mismatch to the substrate from which a layer is called strained."""
 FLUX_TOLERANCE = 1e-10
 """Largest |T + R - 1| that is put down to rounding."""
 MOST_WRITTEN_OUT = 4
@@ -169,22 +168,7 @@ def _thin(structure: Structure) -> list[Advice]:
 
 
 def _strain(structure: Structure) -> list[Advice]:
-    substrate = structure.left.lattice_nm
-    if substrate is None:
-        return []
-    notes: dict[str, Advice] = {}
-    for number, layer in enumerate(structure.layers, start=1):
-        if layer.lattice_nm is None:
-            continue
-        mismatch = layer.lattice_nm / substrate - 1.0
-        if abs(mismatch) >= STRAINED:
-            sense = "compressed" if mismatch > 0.0 else "stretched"
-            text = (
-                f"layer {number} ({layer.name}) is {sense} by {100 * abs(mismatch):.2f} % on the "
-                "left contact's lattice; its edge is the unstrained one"
-            )
-            notes.setdefault(layer.name, Advice("strain", text, number))
-    return list(notes.values())
+    return [Advice("strain", text, number) for text, number in strain_notes(structure)]
 
 
 def _coherence(levels: LevelSet, temperature_K: float) -> list[Advice]:

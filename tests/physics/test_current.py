@@ -78,9 +78,7 @@ def test_against_many_digits(
     with mp.workdps(30):
         poles = [complex(x.energy_eV, -0.5 * x.width_eV) for x in levels]
         exact = float(
-            reference.current(
-                as_reference(structure, drop_V), poles, mu, temperature_K, (0.0, top)
-            )
+            reference.current(as_reference(structure, drop_V), poles, mu, temperature_K, (0.0, top))
         )
     current, error = found.current_density_A_per_cm2[0], found.error_A_per_cm2[0]
     assert found.reached.all()
@@ -271,10 +269,7 @@ def test_two_levels_that_all_but_coincide() -> None:
     assert levels[1].energy_eV - levels[0].energy_eV < 1e-4
     found = between(structure, (0.15, 0.14), 4.0)
     energy = np.concatenate(
-        [
-            x.energy_eV + 0.5 * x.width_eV * np.sinh(np.linspace(-14.0, 14.0, 4001))
-            for x in levels
-        ]
+        [x.energy_eV + 0.5 * x.width_eV * np.sinh(np.linspace(-14.0, 14.0, 4001)) for x in levels]
     )
     energy = np.unique(np.clip(energy, 1e-6, 0.145))
     from physics.scattering import scatter
@@ -286,5 +281,3 @@ def test_two_levels_that_all_but_coincide() -> None:
     )
     plain = np.trapezoid(through * supply, energy)
     assert found.by_level_A_per_cm2.sum() == pytest.approx(current_scale(MASS) * plain, rel=1e-3)
-
-

@@ -27,6 +27,14 @@ class Conditions:
 
 
 @dataclass(frozen=True)
+class Growth:
+    """What the stack is grown on."""
+
+    substrate: str | None = None
+    """A formula of the catalogue; None: nothing is strained."""
+
+
+@dataclass(frozen=True)
 class ContactEntry:
     """A contact: a material, or an edge with a mass; with donors, a Fermi energy, or neither."""
 
@@ -116,3 +124,4 @@ class Session:
     view: View = field(default_factory=View)
     sweep: SweepEntry = field(default_factory=SweepEntry)
     device: DeviceEntry = field(default_factory=DeviceEntry)
+    growth: Growth = field(default_factory=Growth)

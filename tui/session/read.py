@@ -20,6 +20,7 @@ from tui.session.model import (
     ContactEntry,
     DeviceEntry,
     FieldModel,
+    Growth,
     LayerEntry,
     MaterialEntry,
     Session,
@@ -162,6 +163,9 @@ def _session(document: dict[str, Any]) -> Session:
         sweep=_sweep(_table(document, "sweep")),
         device=DeviceEntry(
             **table_values(_table(document, "device"), tables.DEVICE, ("device",), "device")
+        ),
+        growth=Growth(
+            **table_values(_table(document, "growth"), tables.GROWTH, ("growth",), "growth")
         ),
     )
 

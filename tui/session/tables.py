@@ -41,6 +41,7 @@ CONDITIONS: Table = {
     "field": LINE_TEXT,
     "band": LINE_TEXT,
 }
+GROWTH: Table = {"substrate": LINE_TEXT}
 CONTACT: Table = {
     "material": LINE_TEXT,
     "edge_eV": ranges.EDGE_EV,
@@ -84,7 +85,17 @@ DEVICE: Table = {
     "parallel_fF": ranges.PARALLEL_FF,
 }
 TOP_TEXTS: Table = {"title": LINE_TEXT, "notes": Text(lines=True)}
-TOP_TABLES = ("conditions", "left", "layer", "right", "material", "view", "sweep", "device")
+TOP_TABLES = (
+    "conditions",
+    "growth",
+    "left",
+    "layer",
+    "right",
+    "material",
+    "view",
+    "sweep",
+    "device",
+)
 TOP_KEYS = ("format", *TOP_TEXTS, *TOP_TABLES)
 
 UNITLESS = {
