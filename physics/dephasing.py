@@ -53,6 +53,10 @@ class Dephasing:
         return self.width_eV * math.fsum(share for well, share in pairs if well >= 0)
 
 
+COHERENT = Dephasing()
+"""No coherence is lost."""
+
+
 @dataclass(frozen=True, eq=False)
 class Dephased:
     """What gets through with lost coherence; every array has the shape of the energies."""

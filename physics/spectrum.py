@@ -19,7 +19,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from physics.constants import HBAR_EV_S
-from physics.dephasing import Dephasing
+from physics.dephasing import COHERENT, Dephasing
 from physics.errors import EnergyError
 from physics.field import Profile
 from physics.levels import Level, LevelSet
@@ -46,7 +46,6 @@ NEAR_EV = 1e-9
 rounding / distance, and both are about 1e-7 here."""
 APART_EV = 1e-6
 """Two levels closer than this share no isolated line; plain T is used and says what it can."""
-COHERENT = Dephasing()
 
 
 def adaptive_spectrum(

@@ -17,11 +17,14 @@ FieldModel = Literal["uniform"]
 
 @dataclass(frozen=True)
 class Conditions:
-    """Temperature, bias and the field model."""
+    """Temperature, bias, the field model, and how coherence is lost (none stated: not at all)."""
 
     temperature_K: float = 300.0
     bias_V: float = 0.0
     field: FieldModel = "uniform"
+    dephasing_eV: float | None = None
+    scattering_time_s: float | None = None
+    mobility_cm2_Vs: float | None = None
 
 
 @dataclass(frozen=True)
