@@ -166,6 +166,7 @@ def test_windows_line_ends() -> None:
 words = st.text(st.characters(exclude_categories=["C", "Z"]), max_size=12)
 numbers = st.floats(0.02, 50.0)
 maybe = st.none() | numbers
+share = st.none() | st.floats(0.0, 1.0)
 layer = st.builds(
     LayerEntry,
     label=words,
@@ -183,7 +184,7 @@ session = st.builds(
     Session,
     title=words,
     notes=lines,
-    conditions=st.builds(Conditions, temperature_K=numbers, bias_V=numbers),
+    conditions=st.builds(Conditions, temperature_K=numbers, bias_V=numbers, dephasing_eV=share),
     left=contact,
     layers=st.lists(layer, min_size=1, max_size=5).map(tuple),
     right=contact,
