@@ -24,7 +24,7 @@ rounding, however small or large Gamma_phi.
 from __future__ import annotations
 
 import math
-from collections.abc import Iterator
+from collections.abc import Iterable, Iterator
 from dataclasses import dataclass, replace
 from typing import Any
 
@@ -37,6 +37,10 @@ from physics.sectors import Sectors, matrices
 
 FloatArray = NDArray[np.float64]
 ComplexArray = NDArray[np.complex128]
+Matrices = Iterable[tuple[int, NDArray[Any]]]
+
+KEPT_ELEMENTS = 1_000_000
+"""Matrix elements (16 MB) up to which those of one pass are kept for the other."""
 
 
 @dataclass(frozen=True, eq=False)
@@ -78,10 +82,11 @@ def log_transmissions(
         -inf where a contact is closed.
     """
     well = np.array(well_of_layer)[profile.layer_index[sectors.piece_index]]
-    from_left = _carry(profile, sectors, energy_eV, width_eV, well, side=0)
-    from_right = _carry(profile, sectors, energy_eV, width_eV, well, side=1)
     q_left = contact_flux_eV_nm(profile, 0, energy_eV)
     q_right = contact_flux_eV_nm(profile, 1, energy_eV)
+    rightwards, leftwards = _both_ways(sectors, energy_eV, width_eV, well >= 0)
+    from_left = _carry(q_left, rightwards, well, 0.5 * width_eV, is_mirrored=True)
+    from_right = _carry(q_right, leftwards, well, 0.5 * width_eV, is_mirrored=False)
     both_open = (q_left > 0.0) & (q_right > 0.0)
     x, y = from_right.ratio_real, from_right.ratio_imag
     with np.errstate(divide="ignore", invalid="ignore"):
@@ -143,32 +148,40 @@ def _some(sectors: Sectors, chosen: NDArray[np.bool_]) -> Sectors:
     return replace(sectors, piece_index=sectors.piece_index[chosen], kind=sectors.kind[chosen])
 
 
+def _both_ways(
+    sectors: Sectors, energy_eV: FloatArray, width_eV: float, is_well: NDArray[np.bool_]
+) -> tuple[Matrices, Matrices]:
+    """Give the matrices from the first sector to the last, and back."""
+    there = well_matrices(sectors, energy_eV, width_eV, is_well, forward=True)
+    if 4 * sectors.count * energy_eV.size > KEPT_ELEMENTS:
+        return there, well_matrices(sectors, energy_eV, width_eV, is_well)
+    kept = list(there)
+    return kept, reversed(kept)
+
+
 def _carry(
-    profile: Profile,
-    sectors: Sectors,
-    energy_eV: FloatArray,
-    width_eV: float,
+    q: FloatArray,
+    each: Matrices,
     well: NDArray[np.int64],
+    half_eV: float,
     *,
-    side: int,
+    is_mirrored: bool,
 ) -> Carried:
-    """Carry the outgoing (closed: decaying) state of a contact to the opposite face.
+    """Carry the outgoing (closed: decaying) state of a contact of flux q to the opposite face.
 
     From the left contact the stack is seen in a mirror: the flux turns its sign, and each
     sector's matrix swaps a and d.
     """
-    q = contact_flux_eV_nm(profile, side, energy_eV)
     x, y = np.where(q < 0.0, q, 0.0), np.where(q > 0.0, q, 0.0)
     log_size = np.zeros_like(q)
     log_content: dict[int, FloatArray] = {}
-    each = well_matrices(sectors, energy_eV, width_eV, well >= 0, forward=side == 0)
     for index, (a, b, c, d) in each:
-        turned = (a, b, c, d) if side else (d, b, c, a)
+        turned = (d, b, c, a) if is_mirrored else (a, b, c, d)
         if well[index] < 0:
             x, y, size = _plain_step(turned, x, y)
             log_size = log_size + np.log(size)
             continue
-        x, y, size, content = _lossy_step(turned, x, y, 0.5 * width_eV)
+        x, y, size, content = _lossy_step(turned, x, y, half_eV)
         log_size = log_size + np.log(size)
         here = np.log(content) + log_size
         before = log_content.get(int(well[index]))
