@@ -215,10 +215,10 @@ def _lost(levels: LevelSet, dephasing: Dephasing) -> list[Advice]:
         text = "no layer lies between two higher ones, so no coherence is lost: T is coherent"
         return [Advice("coherence", text)]
     pairs = enumerate(levels.levels, start=1)
-    open_ones = [(level, n) for n, level in pairs if level.kind == "quasi-bound"]
-    if not open_ones:
+    lines = [(level, n) for n, level in pairs if level.peak_transmission > 0.0]
+    if not lines:
         return []
-    level, number = min(open_ones, key=lambda pair: pair[0].log10_width_eV)
+    level, number = min(lines, key=lambda pair: pair[0].log10_width_eV)
     gained = dephasing.of_level_eV(level.share_by_layer)
     total = level.width_eV + gained
     fall = (math.log10(total) if total > 0.0 else level.log10_width_eV) - level.log10_width_eV
