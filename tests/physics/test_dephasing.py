@@ -5,6 +5,7 @@ from __future__ import annotations
 import math
 from dataclasses import replace
 
+import mpmath as mp
 import numpy as np
 import pytest
 from hypothesis import given, settings
@@ -26,7 +27,7 @@ from physics.sectors import cut
 from physics.spectrum import adaptive_spectrum
 from physics.structure import Structure
 from reference import probes
-from reference.stacks import stack, two_barriers
+from reference.stacks import as_reference, stack, two_barriers
 
 BARRIER, WELL = (2.0, 0.3, 0.092), (5.0, 0.0, 0.067)
 TWO_WELLS = stack([BARRIER, WELL, (3.0, 0.25, 0.085), (6.0, 0.02, 0.07), BARRIER])
@@ -117,6 +118,18 @@ def test_against_dense_matrices_on_a_lattice(
             for spacing in (0.1, 0.05)
         )
         assert value == pytest.approx((4.0 * fine - coarse) / 3.0, rel=1e-4)
+
+
+@pytest.mark.parametrize("gamma", [1e-12, 1e-9, 1e-5, 1e-2, 0.5])
+@pytest.mark.parametrize("bias", [0.0, 0.12])
+def test_one_well_at_many_digits(bias: float, gamma: float) -> None:
+    structure = stack([(4.0, 0.3, 0.09), (7.0, 0.0, 0.067), (6.0, 0.4, 0.1)], right=(-0.01, 0.05))
+    at = np.array([1e-4, 0.0321, 0.15, 0.4, 1.1])
+    result = scatter_dephased(uniform_field(structure, bias), structure, at, gamma)
+    for energy, value in zip(at, result.log10_transmission, strict=True):
+        with mp.workdps(100):  # Airy functions of complex numbers lose half of them
+            exact = probes.one_well(as_reference(structure, bias), 1, float(energy), gamma)
+        assert float(value) == pytest.approx(float(mp.log10(exact)), abs=1e-13)
 
 
 @pytest.mark.parametrize("energy", [0.2, 0.35, 0.5])

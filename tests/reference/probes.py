@@ -1,4 +1,4 @@
-"""T with a voltage probe in every well on a lattice of cells, by dense matrices.
+"""T with a voltage probe in every well: on a lattice by dense matrices, for one well to many digits.
 
 Nothing is shared with `physics`: Green's function of the whole stack by inversion, the lattice's
 own self-energies for the contacts, all pairs' T_ij = Tr(Gamma_i G Gamma_j G+), and the probes'
@@ -8,8 +8,11 @@ Transport in Mesoscopic Systems, ch. 3; both from memory). The lattice errs by i
 
 from __future__ import annotations
 
+import mpmath as mp
 import numpy as np
 from numpy.typing import NDArray
+
+from reference import many_digits
 
 HBAR2_OVER_2M0 = 0.0380998212
 """eV nm^2, from hbar = 1.054571817e-34 J s and m0 = 9.1093837e-31 kg."""
@@ -77,3 +80,25 @@ def _cells(
 def _self_energy(above: float, hop: float) -> complex:
     """Of a half-infinite chain with on-site 2 hop: hop^2 times its surface Green's function."""
     return complex(-hop * np.exp(1j * np.arccos(1.0 - above / (2.0 * hop))))
+
+
+def one_well(stack: many_digits.Stack, well: int, energy: float, gamma_phi: float) -> mp.mpf:
+    """T by all ways of a stack whose slab number ``well`` has a probe, both contacts open.
+
+    What the probe takes is what is neither reflected nor transmitted: with many digits the
+    difference does no harm.
+    """
+    e = mp.mpf(energy)
+    total = mp.eye(2)
+    for n, slab in enumerate(stack.slabs):
+        raised = mp.mpc(e, mp.mpf(gamma_phi) / 2) if n == well else e
+        total = many_digits.slab_matrix(slab, raised) * total
+    c = many_digits.constant()
+    q, p = (mp.sqrt(c * (e - edge) / mass) for edge, mass in (stack.left, stack.right))
+    (a, b), (c, d) = total.tolist()
+    # 1 + r and iq (1 - r) at the left face become t and ip t at the right one; det = 1.
+    below = (1j * p * a - c) + 1j * q * (d - 1j * p * b)
+    through = 4 * q * p / abs(below) ** 2
+    left = 1 - abs((1j * q * (d - 1j * p * b) - (1j * p * a - c)) / below) ** 2 - through
+    right = 1 - abs((1j * p * (a - 1j * q * b) - (1j * q * d - c)) / below) ** 2 - through
+    return through + left * right / (left + right)
