@@ -228,6 +228,18 @@ def test_the_spectrum_resolves_the_broadened_line(gamma: float) -> None:
     assert spectrum.dwell_time_s[far] == pytest.approx(dwell, rel=1e-6, nan_ok=True)
 
 
+@pytest.mark.parametrize("gamma", [1e-5, 1e-3, 2e-2])
+def test_a_straight_line_between_points_is_close(gamma: float) -> None:
+    profile = uniform_field(THREE_WELLS, 0.05)
+    levels = find_levels(profile, 0.0, 0.3)
+    dephasing = Dephasing(gamma, wells_of(THREE_WELLS))
+    spectrum = adaptive_spectrum(profile, 0.0, 0.3, levels, dephasing)
+    energy = np.linspace(1e-3, 0.299, 5001)
+    drawn = np.interp(energy, spectrum.energy_eV, spectrum.log10_transmission)
+    exact = scatter_dephased(profile, THREE_WELLS, energy, gamma).log10_transmission
+    assert np.abs(drawn - exact).max() < 0.06
+
+
 def test_sectors_cut_before() -> None:
     profile = uniform_field(TWO_WELLS)
     sectors = cut(profile, 0.0, 0.7, depth_eV=5e-4)

@@ -1,4 +1,4 @@
-"""T with a voltage probe in every well: on a lattice by dense matrices, for one well to many digits.
+"""T with a voltage probe in every well: a lattice of dense matrices; one well to many digits.
 
 Nothing is shared with `physics`: Green's function of the whole stack by inversion, the lattice's
 own self-energies for the contacts, all pairs' T_ij = Tr(Gamma_i G Gamma_j G+), and the probes'
