@@ -11,6 +11,7 @@ from dataclasses import dataclass
 import numpy as np
 
 from physics.constants import BOLTZMANN_EV_PER_K
+from physics.dephasing import COHERENT, Dephasing
 from physics.field import ASSUMED_PERMITTIVITY, Profile
 from physics.levels import LevelSet
 from physics.scattering import Scattering
@@ -50,6 +51,8 @@ def advise(
     temperature_K: float,
     levels: LevelSet,
     spectrum: Scattering,
+    *,
+    dephasing: Dephasing = COHERENT,
 ) -> tuple[Advice, ...]:
     """Collect the notes on one answer.
 
@@ -63,7 +66,10 @@ def advise(
         Lattice and carrier temperature.
     levels, spectrum
         The answer.
+    dephasing : Dephasing
+        How coherence was lost in it.
     """
+    stated = dephasing.width_eV > 0.0
     notes = [
         *_proof(levels),
         *_pairs(levels),
@@ -71,7 +77,7 @@ def advise(
         *_side_valleys(structure, profile, levels, float(spectrum.energy_eV.max())),
         *_thin(structure),
         *_strain(structure),
-        *_coherence(levels, temperature_K),
+        *(_lost(levels, dephasing) if stated else _coherence(levels, temperature_K)),
         *_permittivity(structure, profile),
     ]
     return tuple(notes)
@@ -185,6 +191,32 @@ def _coherence(levels: LevelSet, temperature_K: float) -> list[Advice]:
         f"level {_numbers(narrow)}; a measured line is wider and its peak lower"
     )
     return [Advice("coherence", text)]
+
+
+def _lost(levels: LevelSet, dephasing: Dephasing) -> list[Advice]:
+    """Say what a stated dephasing width does to the narrowest level, or why it does nothing."""
+    if not dephasing.acts:
+        text = "no layer lies between two higher ones, so no coherence is lost: T is coherent"
+        return [Advice("coherence", text)]
+    pairs = enumerate(levels.levels, start=1)
+    lines = [(level, n) for n, level in pairs if level.peak_transmission > 0.0]
+    if not lines:
+        return []
+    level, number = min(lines, key=lambda pair: pair[0].log10_width_eV)
+    gained = dephasing.of_level_eV(level.share_by_layer)
+    total = level.width_eV + gained
+    fall = (math.log10(total) if total > 0.0 else level.log10_width_eV) - level.log10_width_eV
+    text = (
+        f"T counts {1e3 * dephasing.width_eV:.3g} meV of lost coherence in wells: level {number}, "
+        f"the narrowest, is {1e3 * total:.3g} meV wide in all, its peak lower by a factor of "
+        f"{_factor(fall)}; levels, phases and dwell times are those of the coherent wave"
+    )
+    return [Advice("coherence", text)]
+
+
+def _factor(decades: float) -> str:
+    """Write a factor, however large."""
+    return f"{10.0**decades:.3g}" if decades < 300.0 else f"1e{decades:.0f}"
 
 
 def _numbers(numbers: list[int]) -> str:

@@ -13,6 +13,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from physics.current import Currents, tsu_esaki
+from physics.dephasing import COHERENT, Dephasing
 from physics.errors import StructureError
 from physics.family import family_of
 from physics.field import Profile, go_on
@@ -42,6 +43,8 @@ class Drive:
     profiles: Callable[[FloatArray], Sequence[Profile]]
     """Profiles of like pieces at biases of shape (B,)."""
     watch: Callable[[], None] = go_on
+    dephasing: Dephasing = COHERENT
+    """How coherence is lost."""
 
     @property
     def mu_left_eV(self) -> float:
@@ -103,8 +106,15 @@ def curve_at(drive: Drive, bias_V: FloatArray) -> Curve:
         chunk = biases[first : first + CHUNK]
         family = family_of(drive.profiles(chunk))
         mu = np.full(chunk.size, mu_left)
-        mass = drive.structure.left.mass
-        parts.append((chunk, tsu_esaki(family, mu, mu - chunk, drive.temperature_K, mass)))
+        found = tsu_esaki(
+            family,
+            mu,
+            mu - chunk,
+            drive.temperature_K,
+            drive.structure.left.mass,
+            dephasing=drive.dephasing,
+        )
+        parts.append((chunk, found))
     return joined_curves([_curve(*part) for part in parts])
 
 

@@ -41,6 +41,11 @@ class Family:
         """What the first member calls while something is computed."""
         return self.members[0].watch
 
+    @property
+    def layer_index(self) -> NDArray[np.int64]:
+        """Index of the layer that each piece belongs to, shape (P,)."""
+        return self.members[0].layer_index
+
     def rows(self, index: NDArray[np.int64]) -> Family:
         """Give some of the members."""
         return family_of([self.members[n] for n in index.tolist()])
@@ -64,6 +69,12 @@ class FamilySectors:
     def count(self) -> int:
         """Number of sectors."""
         return self.piece_index.size
+
+    def some(self, chosen: NDArray[np.bool_]) -> FamilySectors:
+        """Give some of the sectors."""
+        return replace(
+            self, piece_index=self.piece_index[chosen], coefficients=self.coefficients[chosen]
+        )
 
     def rows(self, index: NDArray[np.int64]) -> FamilySectors:
         """Give the sectors of some of the members."""

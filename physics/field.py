@@ -216,6 +216,14 @@ class Contacts(Protocol):
         """Mass slopes of the left and of the right contact, in m0 per eV."""
 
 
+class Layered(Contacts, Protocol):
+    """The same, and which layer each piece belongs to."""
+
+    @property
+    def layer_index(self) -> NDArray[np.int64]:
+        """Index of the layer that each piece belongs to, counted from 0, shape (P,)."""
+
+
 def contact_mass_at(profile: Contacts, side: int, energy_eV: Energies) -> Any:
     """Mass of the left (0) or right (1) contact at real or complex energies, in m0.
 

@@ -17,6 +17,7 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
+from physics.dephasing import COHERENT, Dephasing
 from physics.family import Family, FamilySectors
 from physics.field import Profile
 from physics.leaving import STOPS, leaving_states
@@ -51,7 +52,9 @@ class Resonances:
 
     energy_eV: FloatArray
     width_eV: FloatArray
-    """Full width Gamma, from the flux where it is too narrow for the pole to tell."""
+    """Full elastic width Gamma, from the flux where it is too narrow for the pole to tell."""
+    total_width_eV: FloatArray
+    """The same with what lost coherence adds, all of the state taken to be in wells."""
     is_level: NDArray[np.bool_]
     """False for marks, and for what rows are filled up with."""
     line_peak: FloatArray
@@ -65,6 +68,8 @@ def find_resonances(
     low_eV: FloatArray,
     high_eV: FloatArray,
     depth_eV: float,
+    *,
+    dephasing: Dephasing = COHERENT,
 ) -> Resonances:
     """Find the levels in a window of each member, above both of its contacts' edges.
 
@@ -86,7 +91,7 @@ def find_resonances(
         found = find_levels(family.members[n], float(low_eV[n]), float(high_eV[n]), 2.0 * depth_eV)
         poles = [complex(level.energy_eV, -0.5 * level.width_eV) for level in found.levels]
         rows.append(_row(np.array(poles, dtype=np.complex128), np.empty(0)))
-    return _described(family, rows)
+    return _described(family, rows, dephasing)
 
 
 def _row(pole_eV: ComplexArray, mark_eV: FloatArray) -> tuple[ComplexArray, NDArray[np.bool_]]:
@@ -97,27 +102,43 @@ def _row(pole_eV: ComplexArray, mark_eV: FloatArray) -> tuple[ComplexArray, NDAr
     return both[order], order < poles.size
 
 
-def _described(family: Family, rows: list[tuple[ComplexArray, NDArray[np.bool_]]]) -> Resonances:
+def _described(
+    family: Family, rows: list[tuple[ComplexArray, NDArray[np.bool_]]], dephasing: Dephasing
+) -> Resonances:
     size = (len(rows), max(pole.size for pole, _ in rows))
     energy, width, peak = (np.full(size, np.nan) for _ in range(3))
     is_level = np.zeros(size, dtype=bool)
+    lost = dephasing.width_eV if dephasing.acts else 0.0
     for n, (pole, real) in enumerate(rows):
         energy[n, : pole.size], width[n, : pole.size] = pole.real, -2.0 * pole.imag
         is_level[n, : pole.size] = real
+    total = width + lost
+    for n, (pole, _) in enumerate(rows):
         narrow = np.flatnonzero(width[n] < NARROW_EV)
         if narrow.size:
-            width[n, narrow], peak[n, narrow] = _from_flux(family.members[n], pole[narrow])
+            found = _from_flux(family.members[n], pole[narrow], dephasing)
+            width[n, narrow], total[n, narrow], peak[n, narrow] = found
         gap = np.diff(pole.real, prepend=-np.inf, append=np.inf)
-        peak[n, : pole.size][np.minimum(gap[1:], gap[:-1]) <= APART_EV] = np.nan
-    return Resonances(energy, width, is_level, peak)
+        crowded = np.minimum(gap[1:], gap[:-1]) <= APART_EV
+        peak[n, : pole.size][crowded] = np.nan
+    peak[total >= NARROW_EV] = np.nan
+    return Resonances(energy, width, total, is_level, peak)
 
 
-def _from_flux(profile: Profile, pole_eV: ComplexArray) -> tuple[FloatArray, FloatArray]:
-    """Width and T at the peak of narrow levels, each of shape (N,)."""
+def _from_flux(
+    profile: Profile, pole_eV: ComplexArray, dephasing: Dephasing
+) -> tuple[FloatArray, FloatArray, FloatArray]:
+    """Elastic and total width of narrow levels and T at their peak, each of shape (N,)."""
     sectors = cut(profile, float(pole_eV.real.min()), float(pole_eV.real.max()), stops=STOPS)
     states = leaving_states(profile, sectors, OPEN, pole_eV)
     log_width = np.logaddexp(*states.log_width_eV)
-    return np.exp(log_width), 4.0 * np.exp(states.log_width_eV.sum(axis=0) - 2.0 * log_width)
+    width, total = np.exp(log_width), np.exp(log_width)
+    if dephasing.acts:
+        well = np.append(dephasing.well_of_layer, -1)[profile.layer_index[sectors.piece_index]]
+        total = width + dephasing.width_eV * states.content[well >= 0].sum(axis=0)
+    with np.errstate(divide="ignore"):
+        log_peak = states.log_width_eV.sum(axis=0) - log_width - np.log(total)
+    return width, total, 4.0 * np.exp(log_peak)
 
 
 @dataclass(frozen=True, eq=False)

@@ -18,7 +18,7 @@ edge, and no difference between flat, tilted and graded layers. A mass that goes
 from __future__ import annotations
 
 from collections.abc import Callable, Iterator, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import Any, Protocol
 
 import numpy as np
@@ -40,6 +40,17 @@ FloatArray = NDArray[np.float64]
 
 class Expanded(Protocol):
     """Transfer matrices as polynomials in the energy, of one profile or of a family of them."""
+
+    @property
+    def piece_index(self) -> NDArray[np.int64]:
+        """Piece that each sector belongs to, shape (S,)."""
+
+    @property
+    def count(self) -> int:
+        """Number of sectors."""
+
+    def some(self, chosen: NDArray[np.bool_]) -> Expanded:
+        """Give some of the sectors."""
 
     @property
     def coefficients(self) -> FloatArray:
@@ -95,6 +106,10 @@ class Sectors:
     def length_nm(self) -> FloatArray:
         """Length of each sector, shape (S,)."""
         return np.diff(self.position_nm)
+
+    def some(self, chosen: NDArray[np.bool_]) -> Sectors:
+        """Give the matrices of some of the sectors; positions stay those of all."""
+        return replace(self, piece_index=self.piece_index[chosen], kind=self.kind[chosen])
 
     def each(
         self, powers: tuple[NDArray[Any], ...], *, forward: bool

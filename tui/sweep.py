@@ -13,6 +13,7 @@ from dataclasses import dataclass, replace
 import numpy as np
 
 from physics.curve import Curve, Drive, curve_at, own_curve
+from physics.dephasing import Dephasing, wells_of
 from physics.device import (
     HOT_W_PER_CM2,
     Figures,
@@ -26,7 +27,7 @@ from physics.field import Profile, go_on, uniform_field
 from physics.levels import Level, find_levels
 from physics.structure import Structure
 from tui.session.model import Session
-from tui.session.resolve import resolve
+from tui.session.resolve import dephasing_of, resolve
 
 STEP_V, LEAST_V, MOST_V = 0.1, 0.3, 2.0
 """A range of its own ends at a multiple of the step, between these."""
@@ -112,7 +113,9 @@ def drive_of(session: Session, structure: Structure, watch: Callable[[], None] =
             for bias in bias_V.tolist()
         ]
 
-    return Drive(structure, conditions.temperature_K, profiles, watch)
+    width = dephasing_of(session, structure.left.mass)
+    lost = Dephasing(width, wells_of(structure))
+    return Drive(structure, conditions.temperature_K, profiles, watch, lost)
 
 
 def _range(request: SweepRequest, structure: Structure) -> tuple[float, float]:
@@ -183,5 +186,15 @@ def _notes(done: Sweep) -> tuple[str, ...]:
             "can burn out in continuous operation: limit the current, sink the heat or pulse it, "
             "and follow your laboratory's rules"
         )
-    notes.append("coherent: no scattering is counted; a measured valley is higher, a peak rounder")
+    notes.append(_said_of_coherence(done))
     return tuple(notes)
+
+
+def _said_of_coherence(done: Sweep) -> str:
+    lost = dephasing_of(done.request.session, done.structure.left.mass)
+    if lost == 0.0:
+        return "coherent: no scattering is counted; a measured valley is higher, a peak rounder"
+    return (
+        f"coherence: wells lose it with a width of {1e3 * lost:.3g} meV; the curve without it, and "
+        "one with a larger width, bracket what is measured"
+    )

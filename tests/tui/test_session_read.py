@@ -88,6 +88,8 @@ BAD = [
     ("[conditions]", "[condition]", "condition", 4, "did you mean conditions?"),
     ("[conditions]", "[scans]", "scans", 4, "known are"),
     ("temperature_K = 77", "temperature = 77", "conditions temperature", 5, "temperature_K"),
+    ("temperature_K = 77", "mobility = 8e3", "conditions mobility", 5, "mobility_cm2_Vs"),
+    ("temperature_K = 77", "dephasing = 0", "conditions dephasing", 5, "dephasing_eV"),
     ("temperature_K = 77", "temperature_K = 0", "conditions temperature_K", 5, "0.01 and 2000"),
     ("temperature_K = 77", "temperature_K = -4", "conditions temperature_K", 5, "0.01 and 2000"),
     ("bias_V = 0.1", "bias_V = nan", "conditions bias_V", 6, "-50 and 50 V"),

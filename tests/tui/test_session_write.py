@@ -181,6 +181,7 @@ words = st.text(st.characters(exclude_categories=["C", "Z"]), max_size=12)
 numbers = st.floats(0.02, 50.0)
 maybe = st.none() | numbers
 gaps = st.none() | st.floats(0.1, 10.0)
+share = st.none() | st.floats(0.0, 1.0)
 layer = st.builds(
     LayerEntry,
     label=words,
@@ -205,6 +206,7 @@ session = st.builds(
         temperature_K=numbers,
         bias_V=numbers,
         band=st.sampled_from(["parabolic", "kane"]),
+        dephasing_eV=share,
     ),
     left=contact,
     layers=st.lists(layer, min_size=1, max_size=5).map(tuple),

@@ -18,12 +18,15 @@ FieldModel = Literal["uniform"]
 
 @dataclass(frozen=True)
 class Conditions:
-    """Temperature, bias, the field model and the band model."""
+    """Temperature, bias, the models, and how coherence is lost (none stated: not at all)."""
 
     temperature_K: float = 300.0
     bias_V: float = 0.0
     field: FieldModel = "uniform"
     band: Band = "parabolic"
+    dephasing_eV: float | None = None
+    scattering_time_s: float | None = None
+    mobility_cm2_Vs: float | None = None
 
 
 @dataclass(frozen=True)

@@ -13,6 +13,7 @@ from __future__ import annotations
 from dataclasses import dataclass, replace
 
 from physics.band import NEEDS_GAP, Band, masses_of
+from physics.dephasing import dephasing_eV
 from physics.errors import PhysicsError, StructureError
 from physics.materials import Material
 from physics.occupation import fermi_from_donors
@@ -74,6 +75,42 @@ def resolve(session: Session) -> Structure:
     if scale.substrate is None:
         return structure
     return stack_on(structure, scale.substrate, scale.temperature_K)
+
+
+def dephasing_of(session: Session, mass: float) -> float:
+    """Width in eV by which lost coherence broadens levels; 0 where nothing is stated.
+
+    Parameters
+    ----------
+    mass : float
+        Mass in m0 that goes with a mobility: the left contact's, the substrate's.
+
+    Raises
+    ------
+    SessionError
+        Two statements that disagree, or a mobility that makes no width that can be computed.
+    """
+    stated = session.conditions
+    widths: dict[str, float] = {}
+    if stated.dephasing_eV is not None:
+        widths["dephasing_eV"] = stated.dephasing_eV
+    try:
+        if stated.scattering_time_s is not None:
+            widths["scattering_time_s"] = dephasing_eV(scattering_time_s=stated.scattering_time_s)
+        if stated.mobility_cm2_Vs is not None:
+            mobility = stated.mobility_cm2_Vs
+            widths["mobility_cm2_Vs"] = dephasing_eV(mobility_cm2_Vs=mobility, mass=mass)
+    except StructureError as error:
+        raise _from_structure(error) from error
+    kept, width = next(iter(widths.items()), ("", 0.0))
+    for key, other in widths.items():
+        if abs(other - width) > AGREEMENT * max(other, width):
+            found = f"makes a width of {other:.9g} eV, but {kept} one of {width:.9g} eV"
+            path: KeyPath = ("conditions", key)
+            raise SessionError(
+                said(path), found, f"keep one of the two, {key} or {kept}", path=path
+            )
+    return width
 
 
 def scale_of(session: Session) -> Scale:

@@ -40,6 +40,9 @@ CONDITIONS: Table = {
     "bias_V": ranges.BIAS_V,
     "field": LINE_TEXT,
     "band": LINE_TEXT,
+    "dephasing_eV": ranges.DEPHASING_EV,
+    "scattering_time_s": ranges.SCATTERING_TIME_S,
+    "mobility_cm2_Vs": ranges.MOBILITY_CM2_VS,
 }
 GROWTH: Table = {"substrate": LINE_TEXT}
 CONTACT: Table = {
@@ -102,6 +105,9 @@ UNITLESS = {
     "thickness": "thickness_nm or thickness_ml",
     "temperature": "temperature_K",
     "bias": "bias_V",
+    "dephasing": "dephasing_eV",
+    "scattering_time": "scattering_time_s",
+    "mobility": "mobility_cm2_Vs",
     "edge": "edge_eV",
     "to_edge": "to_edge_eV",
     "donors": "donors_cm3",
