@@ -12,7 +12,7 @@ from dataclasses import dataclass, replace
 
 import numpy as np
 
-from physics.curve import Curve, Drive, curve_at, own_curve
+from physics.curve import Curve, Drive, curve_at, even_biases, own_curve
 from physics.dephasing import Dephasing, wells_of
 from physics.device import (
     HOT_W_PER_CM2,
@@ -26,9 +26,12 @@ from physics.extremes import Region, main_region, regions
 from physics.field import Profile, go_on, uniform_field
 from physics.levels import Level, find_levels
 from physics.structure import Structure
+from tui.session.lines import KeyPath
 from tui.session.model import Session
+from tui.session.refusal import SessionError
 from tui.session.resolve import dephasing_of, resolve
 
+NEEDS_ELECTRONS = "a current needs electrons: state donors_cm3 or fermi_eV of both contacts"
 STEP_V, LEAST_V, MOST_V = 0.1, 0.3, 2.0
 """A range of its own ends at a multiple of the step, between these."""
 NEAR_LEVEL_EV = 0.02
@@ -89,6 +92,9 @@ def sweep(
         The session does not describe something that can be computed, or no electrons are stated.
     """
     structure = resolve(request.session)
+    if structure.left.fermi_eV is None:
+        path: KeyPath = ("left", "donors_cm3")
+        raise SessionError("left donors_cm3", "is missing", NEEDS_ELECTRONS, path=path)
     start, stop = _range(request, structure)
     drive = drive_of(request.session, structure, watch)
 
@@ -99,7 +105,7 @@ def sweep(
         told = None if tell is None else (lambda curve: tell(first(curve)))
         curve = own_curve(drive, start, stop, told)
     else:
-        curve = curve_at(drive, np.linspace(start, stop, request.points))
+        curve = curve_at(drive, even_biases(start, stop, request.points))
     return _finished(first(curve), drive)
 
 

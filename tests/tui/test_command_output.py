@@ -28,6 +28,21 @@ HEAD = ["schema", "command", "title", "conditions"]
 LOST = ["dephasing_eV", "scattering_time_s", "mobility_cm2_Vs"]
 CONDITIONS = ["temperature_K", "bias_V", "field", "band", *LOST]
 SPECTRUM = ["energy_eV", "transmission", "log10_transmission", "reflection"]
+IV = [
+    "bias_V",
+    "current_density_A_per_cm2",
+    "error_A_per_cm2",
+    "conductance_S_per_cm2",
+    "reached",
+    "peak",
+    "valley",
+    "peak_to_valley",
+    "onset_V",
+    "regions",
+    "levels",
+    "figures",
+    "notes",
+]
 LEVEL = [
     "number",
     "energy_eV",
@@ -102,7 +117,8 @@ def as_json(capsys: pytest.CaptureFixture[str], *arguments: str) -> dict[str, An
         (["levels"], [*LEVELS, "advice"]),
         (["profile"], PROFILE),
         (["profile", "--energy", "0.1"], PROFILE),
-        (["report"], ["left", "layers", "right", *LEVELS, "spectrum", "advice"]),
+        (["report"], ["left", "layers", "right", *LEVELS, "spectrum", "advice", "current"]),
+        (["iv", "--points", "5"], IV),
     ],
 )
 def test_keys(

@@ -50,7 +50,7 @@ def shell(command: str) -> subprocess.CompletedProcess[str]:
         ("winze <&-", 2, "the workbench needs a terminal"),
         ("winze >&-", 2, "the workbench needs a terminal"),
         ("winze a.toml <&- >&-", 2, "the workbench needs a terminal"),
-        ("winze iv - --from 0 --to 1 --points 3", 2, "'iv'"),
+        ("winze ivy - --from 0 --to 1 --points 3", 2, "'ivy'"),
         ("winze levels - -o /dev/null/x", 2, "it cannot be written; not a directory"),
     ],
 )

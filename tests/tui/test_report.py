@@ -9,7 +9,8 @@ from functools import lru_cache
 import pytest
 
 from tui.report import quantities
-from tui.report.text import columns, report_text
+from tui.report.layout import columns
+from tui.report.text import report_text
 from tui.session.demo import demo_text
 from tui.session.read import read_session
 from tui.study import Request, Study, solve

@@ -36,7 +36,7 @@ PROFILE = ("x_nm", "edge_eV", "density_per_nm")
 def spectrum_table(spectrum: Scattering) -> str:
     """Write T and R over energy."""
     columns = [getattr(spectrum, name).tolist() for name in SPECTRUM]
-    return _csv(SPECTRUM, zip(*columns, strict=True))
+    return csv_text(SPECTRUM, zip(*columns, strict=True))
 
 
 def levels_table(levels: LevelSet) -> str:
@@ -46,13 +46,13 @@ def levels_table(levels: LevelSet) -> str:
         layer, share = main_layer(level.share_by_layer)
         named = [getattr(level, name) for name in LEVELS[1:9]]
         rows.append([number, *named, layer, share, level.log10_width_eV, level.width_error])
-    return _csv(LEVELS, rows)
+    return csv_text(LEVELS, rows)
 
 
 def profile_table(density: Density) -> str:
     """Write band edge and density over position."""
     columns = [getattr(density, name).tolist() for name in PROFILE]
-    return _csv(PROFILE, zip(*columns, strict=True))
+    return csv_text(PROFILE, zip(*columns, strict=True))
 
 
 def main_layer(share_by_layer: Sequence[float]) -> tuple[int, float]:
@@ -61,7 +61,8 @@ def main_layer(share_by_layer: Sequence[float]) -> tuple[int, float]:
     return share_by_layer.index(share) + 1, share
 
 
-def _csv(header: Sequence[str], rows: Iterable[Sequence[object]]) -> str:
+def csv_text(header: Sequence[str], rows: Iterable[Sequence[object]]) -> str:
+    """Write a table with its header."""
     text = io.StringIO()
     writer = csv.writer(text, lineterminator="\n")
     writer.writerow(header)
