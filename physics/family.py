@@ -95,7 +95,7 @@ class FamilySectors:
         for index in order if forward else reversed(order):
             table = self.coefficients[index]  # (B, 4, D)
             products = [(table @ p.view(np.float64)).view(p.dtype) for p in by_member]
-            yield index, [np.moveaxis(product, 1, 0) for product in products]
+            yield index, [product.transpose(1, 0, 2) for product in products]
 
 
 def family_of(profiles: Sequence[Profile]) -> Family:

@@ -34,7 +34,7 @@ START_EV = 1e-6
 """Width of the brackets that start the iteration."""
 START_GAP_EV = 1e-8
 """Starts in one bracket are set apart by this, lest they move as one."""
-MOST_STEPS = 16
+MOST_STEPS = 12
 SETTLED_EV = 1e-13
 """Step below which a pole is settled; the step after it is far below rounding."""
 LONGEST_STEP_EV = 0.05
