@@ -33,7 +33,8 @@ class Profile:
     """Band edge and mass over position, as linear pieces between flat contacts."""
 
     position_nm: NDArray[np.float64]
-    """Faces of the pieces, shape (P + 1,); 0 at the left contact's face."""
+    """Faces of the pieces, shape (P + 1,); 0 at the left contact's face. A screened profile begins
+    below 0, in the left contact, and ends in the right one."""
     thickness_nm: NDArray[np.float64]
     """Thickness of each piece, shape (P,); not the faces' difference, which is rounded."""
     edge_left_eV: NDArray[np.float64]
@@ -45,7 +46,8 @@ class Profile:
     mass_right: NDArray[np.float64]
     """Mass at each piece's right face, in m0, shape (P,)."""
     layer_index: NDArray[np.int64]
-    """Index of the layer that each piece belongs to, counted from 0, shape (P,)."""
+    """Index of the layer that each piece belongs to, counted from 0, shape (P,); -1 in the left
+    contact and the number of layers in the right one, where pieces lie in contacts."""
     contact_edge_eV: tuple[float, float]
     """Band edge in the left and in the right contact, bias included."""
     contact_mass: tuple[float, float]
@@ -54,9 +56,41 @@ class Profile:
     """Called again and again while something is computed; by raising it ends the work."""
 
     @property
-    def length_nm(self) -> float:
-        """Distance between the contacts' faces."""
+    def start_nm(self) -> float:
+        """Where the first piece begins."""
+        return float(self.position_nm[0])
+
+    @property
+    def end_nm(self) -> float:
+        """Where the last piece ends."""
         return float(self.position_nm[-1])
+
+    @property
+    def length_nm(self) -> float:
+        """Length of all pieces together."""
+        return self.end_nm - self.start_nm
+
+    @property
+    def layer_count(self) -> int:
+        """Number of layers; what lies in contacts is none."""
+        last = int(self.layer_index[-1])
+        return last if self.layer_index[0] < 0 else last + 1
+
+    def layer_pieces(self, index: int) -> slice:
+        """Give the pieces of a layer, counted from 0."""
+        first, stop = np.searchsorted(self.layer_index, [index, index + 1])
+        return slice(int(first), int(stop))
+
+    def layer_edges_eV(self, index: int) -> tuple[float, float]:
+        """Band edge at a layer's left and right face."""
+        pieces = self.layer_pieces(index)
+        return float(self.edge_left_eV[pieces.start]), float(self.edge_right_eV[pieces.stop - 1])
+
+    @property
+    def faces_nm(self) -> tuple[float, float]:
+        """Left face of the first and right face of the last layer."""
+        first, last = self.layer_pieces(0), self.layer_pieces(self.layer_count - 1)
+        return float(self.position_nm[first.start]), float(self.position_nm[last.stop])
 
     @property
     def lowest_eV(self) -> float:
@@ -76,8 +110,8 @@ class Profile:
         start = self.position_nm[inside]
         share = (x - start) / (self.position_nm[inside + 1] - start)
         edge = self.edge_left_eV[inside] * (1.0 - share) + self.edge_right_eV[inside] * share
-        edge = np.where(x < 0.0, self.contact_edge_eV[0], edge)
-        return np.where(x > self.length_nm, self.contact_edge_eV[1], edge)
+        edge = np.where(x < self.start_nm, self.contact_edge_eV[0], edge)
+        return np.where(x > self.end_nm, self.contact_edge_eV[1], edge)
 
 
 def without_runways(profile: Profile) -> Profile:

@@ -77,7 +77,8 @@ class Level:
     nodes: int
     """Nodes of the wave, the weak outgoing ends left out."""
     share_by_layer: tuple[float, ...]
-    """Probability in each layer; the rest of 1 is in the tails in closed contacts."""
+    """Probability in each layer; the rest of 1 is in contacts: in tails, or where screening bends
+    their edges."""
     width_error: float
     """Bound on the relative error of the widths; large only for levels that all but coincide."""
 
@@ -234,8 +235,8 @@ def _level(
     log_left, log_right = (float(log) for log in states.log_width_eV[:, n])
     log_width = float(np.logaddexp(log_left, log_right))
     width = math.exp(log_width)
-    layers = profile.layer_index[sectors.piece_index]
-    share = np.bincount(layers, weights=states.content[:, n])
+    layers = profile.layer_index[sectors.piece_index] + 1  # 0: in the left contact
+    share = np.bincount(layers, states.content[:, n], profile.layer_count + 2)[1:-1]
     energy = float(states.energy_eV[n].real)
     bound = states.sheet.closed
     balance = -math.inf if bound else log_left + log_right - 2.0 * log_width

@@ -7,6 +7,7 @@ layers is constant or linear in an element, and every face of a layer is a face 
 
 from __future__ import annotations
 
+import itertools
 import math
 from dataclasses import dataclass
 
@@ -227,7 +228,7 @@ def _layer_slabs(structure: Structure, region: Region, step_nm: float) -> list[S
         still = layer.donors_cm3 == 0.0 and region.start_nm <= start and end <= region.end_nm
         parts = [
             np.linspace(a, b, 1 + (1 if still else math.ceil((b - a) / step_nm)))
-            for a, b in zip(cuts[:-1], cuts[1:], strict=True)
+            for a, b in itertools.pairwise(cuts)
         ]
         face = np.concatenate([parts[0], *(part[1:] for part in parts[1:])])
         slab = Slab(

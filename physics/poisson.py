@@ -16,7 +16,7 @@ from typing import Literal
 import numpy as np
 from numpy.typing import NDArray
 
-from physics.charge import Electrons, fermi_levels_eV, thermal_electrons
+from physics.charge import fermi_levels_eV, thermal_electrons
 from physics.errors import StructureError
 from physics.field import built_in_eV, go_on
 from physics.mesh import Mesh, first_mesh, screening_length_nm, with_middles
@@ -114,8 +114,10 @@ def screened_field(
         As `mesh_of`. A solution that does not converge is returned and says so.
     """
     _require_conditions([bias_V], temperature_K)
-    if mesh is None and start is not None and start.mesh.range_V[0] <= bias_V <= (
-        start.mesh.range_V[1]
+    if (
+        mesh is None
+        and start is not None
+        and start.mesh.range_V[0] <= bias_V <= (start.mesh.range_V[1])
     ):
         mesh = start.mesh
     if mesh is None:
@@ -128,8 +130,16 @@ def screened_field(
     error = np.nan
     if relaxed.converged:
         error = _mesh_error_eV(structure, mesh, bias_V, relaxed.potential_V, watch)
-    words = ("semi-classical electrons, " + mesh.region.says(), _reason(relaxed))
-    return screened(structure, mesh, bias_V, electrons, relaxed, words, error)
+    return screened(
+        structure,
+        mesh,
+        bias_V,
+        electrons,
+        relaxed,
+        model="semi-classical electrons, " + mesh.region.says(),
+        reason=_reason(relaxed),
+        mesh_error_eV=error,
+    )
 
 
 def screened_sweep(
@@ -183,9 +193,7 @@ def _require_conditions(biases_V: Sequence[float], temperature_K: float) -> None
         if not BIAS_V.holds(bias):
             raise StructureError("conditions", "bias_V", bias, BIAS_V.allowed)
     if not TEMPERATURE_K.holds(temperature_K):
-        raise StructureError(
-            "conditions", "temperature_K", temperature_K, TEMPERATURE_K.allowed
-        )
+        raise StructureError("conditions", "temperature_K", temperature_K, TEMPERATURE_K.allowed)
 
 
 def _drop_share(mesh: Mesh) -> FloatArray:
@@ -215,13 +223,12 @@ def _ramped(
     flat = -built_in_eV(structure)
     count = max(1, math.ceil(abs(bias_V - flat) / RAMP_V))
     potential, share = _cold(structure, mesh, flat), _drop_share(mesh)
-    relaxed = None
-    for bias in np.linspace(flat, bias_V, count + 1):
+    for bias in np.linspace(flat, bias_V, count + 1)[:-1]:
         electrons = thermal_electrons(mesh, fermi_levels_eV(structure, float(bias)))
         relaxed = relax(mesh, electrons, potential, watch, most_steps)
         potential = relaxed.potential_V + (bias_V - flat) / count * share
-    assert relaxed is not None
-    return relaxed
+    electrons = thermal_electrons(mesh, fermi_levels_eV(structure, bias_V))
+    return relax(mesh, electrons, potential, watch, most_steps)
 
 
 def _mesh_error_eV(

@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+import itertools
+
 import numpy as np
 from numpy.typing import NDArray
 
@@ -19,6 +21,9 @@ from physics.mesh import (
 
 FloatArray = NDArray[np.float64]
 
+LEAST_NM3 = 1e-20
+"""Charge below which an element is as long as it likes."""
+
 
 def refined(mesh: Mesh, charge_nm3: FloatArray, *, waves: bool) -> Mesh:
     """Lay the elements anew, as long as the charge allows.
@@ -34,8 +39,8 @@ def refined(mesh: Mesh, charge_nm3: FloatArray, *, waves: bool) -> Mesh:
     waves : bool
         Whether electrons in the tunnelling region are waves, which bend the edge there too.
     """
-    with np.errstate(divide="ignore"):
-        longest = 2.0 * np.sqrt(8.0 * mesh.permittivity * CHORD_EV / np.abs(charge_nm3))
+    charge = np.maximum(np.abs(charge_nm3), LEAST_NM3)
+    longest = 2.0 * np.sqrt(8.0 * mesh.permittivity * CHORD_EV / charge)
     length = _smoothed(mesh, longest)
     in_region = mesh.side == 0
     pieces = 2.0 * float((mesh.step_nm / length).sum())
@@ -62,17 +67,17 @@ def _smoothed(mesh: Mesh, longest: FloatArray) -> FloatArray:
     charged = np.flatnonzero((mesh.side != 0) | (mesh.donors_nm3 > 0.0))
     length = longest.copy()
     for order in (charged, charged[::-1]):
-        for before, here in zip(order[:-1], order[1:], strict=True):
+        for before, here in itertools.pairwise(order):
             distance = abs(middle[here] - middle[before])
             length[here] = min(length[here], length[before] + SLOPE * distance)
     return length
 
 
 def _groups(mesh: Mesh) -> list[slice]:
-    """Runs of elements in one layer and on one side."""
+    """Find the runs of elements in one layer and on one side."""
     changes = (np.diff(mesh.layer_index) != 0) | (np.diff(mesh.side) != 0)
     ends = [0, *(np.flatnonzero(changes) + 1).tolist(), mesh.layer_index.size]
-    return [slice(a, b) for a, b in zip(ends[:-1], ends[1:], strict=True)]
+    return [slice(a, b) for a, b in itertools.pairwise(ends)]
 
 
 def _divided(mesh: Mesh, group: slice, length: FloatArray) -> FloatArray:
@@ -97,4 +102,3 @@ def _slab(mesh: Mesh, group: slice, face: FloatArray) -> Slab:
         donors_nm3=float(mesh.donors_nm3[first]),
         ends=(float(face[0]), float(face[-1])),
     )
-

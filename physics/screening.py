@@ -70,10 +70,12 @@ def screened(
     bias_V: float,
     electrons: Electrons,
     relaxed: Relaxed,
-    words: tuple[str, str],
+    *,
+    model: str,
+    reason: str,
     mesh_error_eV: float,
 ) -> Screened:
-    """Put a solution together; ``words`` are the model's and the reason of a failure."""
+    """Put a solution together with the words for its model and for the reason of a failure."""
     count, _ = electrons(on_elements(relaxed.potential_V))
     weight = mesh.step_nm[:, None] * SIMPSON
     held, given = (count * weight).sum(axis=1), mesh.donors_nm3 * mesh.step_nm
@@ -85,8 +87,8 @@ def screened(
         neutrality=abs(float((held - given).sum())) / float((held + given).sum()),
         end_field_V_per_nm=max(end_fields_V_per_nm(mesh, relaxed.potential_V)),
         mesh_error_eV=mesh_error_eV,
-        model=words[0],
-        reason=words[1],
+        model=model,
+        reason=reason,
     )
     return Screened(
         profile=bent_profile(structure, mesh, bias_V, relaxed.potential_V),

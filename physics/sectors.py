@@ -109,7 +109,7 @@ def cut(
     """
     piece, left, share = _sector_shares(profile, low_eV, high_eV, depth_eV, marks_nm)
     start, end = profile.position_nm[piece], profile.position_nm[piece + 1]
-    position = np.append(start + (end - start) * left, profile.length_nm)
+    position = np.append(start + (end - start) * left, profile.end_nm)
     centre = 0.5 * (low_eV + high_eV)
     reach = max(0.5 * (high_eV - low_eV) + depth_eV, 1e-3)
     edge_rise = (profile.edge_right_eV - profile.edge_left_eV)[piece]
@@ -257,7 +257,7 @@ def _with_marks(
 ) -> tuple[NDArray[np.int64], FloatArray]:
     """Add cuts at given positions, unless a cut is there already to within rounding."""
     faces = profile.position_nm
-    inside = np.unique(marks_nm[(marks_nm > 0.0) & (marks_nm < faces[-1])])
+    inside = np.unique(marks_nm[(marks_nm > faces[0]) & (marks_nm < faces[-1])])
     home = np.searchsorted(faces, inside, side="right") - 1
     share = (inside - faces[home]) / (faces[home + 1] - faces[home])
     pieces = np.concatenate([piece, home])

@@ -128,8 +128,8 @@ def local_density_of_states(
     """
     x = np.asarray(x_nm, dtype=np.float64)
     energy = np.atleast_1d(np.asarray(energy_eV, dtype=np.float64))
-    if x.size == 0 or not (x.min() >= 0.0 and x.max() <= profile.length_nm):
-        allowed = f"positions lie between 0 and {profile.length_nm:g} nm"
+    if x.size == 0 or not (x.min() >= profile.start_nm and x.max() <= profile.end_nm):
+        allowed = f"positions lie between {profile.start_nm:g} and {profile.end_nm:g} nm"
         raise StructureError("profile", "x_nm", x.tolist()[:3], allowed)
     sectors = cut(profile, float(energy.min()), float(energy.max()), marks_nm=x)
     face = _nearest_face(sectors, x)
@@ -198,8 +198,8 @@ def _density(
     first = abs(psi[0]) ** 2 * math.exp(2.0 * float(log_scale[0]))
     stops = sectors.stops[len(STOPS) - 1 :]
     x = sectors.position_nm[:-1] + stops[:, None] * sectors.length_nm
-    x = np.append(0.0, x.T.ravel())
-    x[-1] = profile.length_nm
+    x = np.append(profile.start_nm, x.T.ravel())
+    x[-1] = profile.end_nm
     return Density(
         x, profile.edge_eV(x), np.append(first, density.T.ravel()), float(np.real(energy)), norm
     )

@@ -9,10 +9,12 @@ from physics.advice import Advice, advise
 from physics.errors import EnergyError
 from physics.field import Profile, go_on, uniform_field
 from physics.levels import LevelSet, find_levels
+from physics.poisson import screened_field
 from physics.scattering import Scattering
+from physics.screening import ScreeningReport
 from physics.spectrum import adaptive_spectrum
 from physics.structure import Structure
-from tui.session.model import Session
+from tui.session.model import Conditions, Session
 from tui.session.resolve import resolve
 
 FLAT_EV = 1e-3
@@ -41,6 +43,8 @@ class Scene:
     from_eV: float
     to_eV: float
     max_width_eV: float
+    screening: ScreeningReport | None = None
+    """How Poisson's equation was solved; None where the field is uniform."""
 
 
 @dataclass(frozen=True, eq=False)
@@ -60,7 +64,9 @@ class Study:
     @property
     def reached(self) -> bool:
         """Whether the count was proved and every stated accuracy met."""
-        return self.levels.complete and self.levels.accurate
+        screening = self.scene.screening
+        bent = screening is None or screening.converged
+        return bent and self.levels.complete and self.levels.accurate
 
 
 def set_scene(request: Request, watch: Callable[[], None] = go_on) -> Scene:
@@ -79,7 +85,7 @@ def set_scene(request: Request, watch: Callable[[], None] = go_on) -> Scene:
         The session does not describe something that can be computed.
     """
     structure = resolve(request.session)
-    profile = uniform_field(structure, request.session.conditions.bias_V)
+    profile, screening = _field(request.session.conditions, structure, watch)
     profile = replace(profile, watch=watch)
     low, high = energy_window(profile)
     view = request.session.view
@@ -91,7 +97,7 @@ def set_scene(request: Request, watch: Callable[[], None] = go_on) -> Scene:
             f"the band edges reach from {low:g} to {high:g} eV"
         )
     width = _first(request.max_width_eV, view.max_width_eV)
-    return Scene(request, structure, profile, start, stop, width)
+    return Scene(request, structure, profile, start, stop, width, screening)
 
 
 def solve(request: Request, watch: Callable[[], None] = go_on) -> Study:
@@ -106,8 +112,25 @@ def solve(request: Request, watch: Callable[[], None] = go_on) -> Study:
     levels = find_levels(scene.profile, scene.from_eV, scene.to_eV, scene.max_width_eV)
     spectrum = adaptive_spectrum(scene.profile, scene.from_eV, scene.to_eV, levels)
     temperature = request.session.conditions.temperature_K
-    notes = advise(scene.structure, scene.profile, temperature, levels, spectrum)
+    notes = advise(
+        scene.structure, scene.profile, temperature, levels, spectrum, screening=scene.screening
+    )
     return Study(scene, levels, spectrum, notes)
+
+
+def _field(
+    conditions: Conditions, structure: Structure, watch: Callable[[], None]
+) -> tuple[Profile, ScreeningReport | None]:
+    if conditions.field == "uniform":
+        return uniform_field(structure, conditions.bias_V), None
+    screened = screened_field(
+        structure,
+        conditions.bias_V,
+        conditions.temperature_K,
+        charge=conditions.charge,
+        watch=watch,
+    )
+    return screened.profile, screened.report
 
 
 def energy_window(profile: Profile) -> tuple[float, float]:

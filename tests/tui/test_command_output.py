@@ -25,7 +25,7 @@ from tui.study import Request, set_scene, solve
 
 DEMO = read_session(demo_text(), "demo")
 HEAD = ["schema", "command", "title", "conditions"]
-CONDITIONS = ["temperature_K", "bias_V", "field"]
+CONDITIONS = ["temperature_K", "bias_V", "field", "charge"]
 SPECTRUM = ["energy_eV", "transmission", "log10_transmission", "reflection"]
 LEVEL = [
     "number",
@@ -110,7 +110,8 @@ def test_keys(
     result = as_json(capsys, arguments[0], design, *arguments[1:])
     assert list(result) == [*HEAD, *keys]
     assert (result["schema"], result["command"]) == (1, arguments[0])
-    assert result["conditions"] == {"temperature_K": 300.0, "bias_V": 0.0, "field": "uniform"}
+    conditions = {"temperature_K": 300.0, "bias_V": 0.0, "field": "uniform"}
+    assert result["conditions"] == conditions | {"charge": "semi-classical"}
 
 
 def test_keys_within(capsys: pytest.CaptureFixture[str], design: str) -> None:

@@ -12,7 +12,8 @@ from typing import Literal
 
 from physics.levels import DEFAULT_MAX_WIDTH_EV
 
-FieldModel = Literal["uniform"]
+FieldModel = Literal["uniform", "screened"]
+ChargeModel = Literal["semi-classical", "quantum"]
 
 
 @dataclass(frozen=True)
@@ -22,6 +23,8 @@ class Conditions:
     temperature_K: float = 300.0
     bias_V: float = 0.0
     field: FieldModel = "uniform"
+    charge: ChargeModel = "semi-classical"
+    """Electrons between the barriers; it matters to the screened field alone."""
 
 
 @dataclass(frozen=True)

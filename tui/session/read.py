@@ -11,14 +11,13 @@ import math
 import re
 import tomllib
 from pathlib import Path
-from typing import Any, cast
+from typing import Any
 
 from tui.session import tables
 from tui.session.lines import MOST_PARTS, KeyPath, tangled
 from tui.session.model import (
     Conditions,
     ContactEntry,
-    FieldModel,
     LayerEntry,
     MaterialEntry,
     Session,
@@ -178,11 +177,13 @@ def _table(document: dict[str, Any], name: str) -> dict[str, Any]:
 
 def _conditions(table: dict[str, Any]) -> Conditions:
     values = _values(table, tables.CONDITIONS, ("conditions",), "conditions")
-    field = values.get("field", "uniform")
-    if field not in tables.FIELD_MODELS:
-        path = ("conditions", "field")
-        raise _refuse(path, "conditions field", f"is {shown(field)}", tables.FIELD_RULE)
-    values["field"] = cast("FieldModel", field)
+    for key, models, rule in (
+        ("field", tables.FIELD_MODELS, tables.FIELD_RULE),
+        ("charge", tables.CHARGE_MODELS, tables.CHARGE_RULE),
+    ):
+        if values.get(key, models[0]) not in models:
+            found = f"is {shown(values[key])}"
+            raise _refuse(("conditions", key), f"conditions {key}", found, rule)
     return Conditions(**values)
 
 

@@ -17,8 +17,10 @@ MONOLAYERS = Range(0.0, 1e6, "a number of monolayers is above 0", open_below=Tru
 NAME_RULE = "a text on one line without control characters, in quotation marks"
 TEXT_RULE = "a text without control characters, in quotation marks"
 
-FIELD_MODELS = ("uniform",)
-FIELD_RULE = 'this version computes field = "uniform" only'
+FIELD_MODELS = ("uniform", "screened")
+FIELD_RULE = 'a field is "uniform" or "screened"'
+CHARGE_MODELS = ("semi-classical", "quantum")
+CHARGE_RULE = 'a charge is "semi-classical" or "quantum"'
 
 
 @dataclass(frozen=True)
@@ -37,6 +39,7 @@ CONDITIONS: Table = {
     "temperature_K": ranges.TEMPERATURE_K,
     "bias_V": ranges.BIAS_V,
     "field": LINE_TEXT,
+    "charge": LINE_TEXT,
 }
 CONTACT: Table = {
     "material": LINE_TEXT,

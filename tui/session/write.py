@@ -22,6 +22,7 @@ if TYPE_CHECKING:
 
 Values = dict[str, Any]
 UNSAID: Values = {"donors_cm3": 0.0, "label": "", "title": "", "notes": ""}
+UNSAID |= {"charge": "semi-classical"}
 """Values that a fresh text leaves out."""
 
 
