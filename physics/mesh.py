@@ -9,7 +9,7 @@ from __future__ import annotations
 
 import itertools
 import math
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 from numpy.typing import NDArray
@@ -74,6 +74,14 @@ class Mesh:
     temperature_K: float
     range_V: tuple[float, float]
     """Biases that it was made for."""
+    bent_nm: tuple[float, float] = (-np.inf, np.inf)
+    """Outside of this the band is as good as flat at all of them."""
+
+    @property
+    def bent(self) -> slice:
+        """Elements that a wave needs to see; outside of them there is contact."""
+        first, stop = np.searchsorted(self.face_nm, self.bent_nm)
+        return slice(int(first), min(int(stop), self.permittivity.size))
 
     @property
     def step_nm(self) -> FloatArray:
@@ -188,7 +196,8 @@ def first_mesh(
 
 def mesh_of_slabs(slabs: list[Slab], like: Mesh) -> Mesh:
     """Put stretches together to a mesh for the same conditions as another."""
-    return _mesh(slabs, like.region, like.temperature_K, like.range_V)
+    mesh = _mesh(slabs, like.region, like.temperature_K, like.range_V)
+    return replace(mesh, bent_nm=like.bent_nm)
 
 
 def growing_faces(length_nm: float, first_nm: float) -> FloatArray:

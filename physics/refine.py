@@ -74,9 +74,11 @@ def _smoothed(mesh: Mesh, longest: FloatArray) -> FloatArray:
 
 
 def _groups(mesh: Mesh) -> list[slice]:
-    """Find the runs of elements in one layer and on one side."""
+    """Find the runs of elements in one layer, on one side, all bent or all flat."""
+    size = mesh.layer_index.size
     changes = (np.diff(mesh.layer_index) != 0) | (np.diff(mesh.side) != 0)
-    ends = [0, *(np.flatnonzero(changes) + 1).tolist(), mesh.layer_index.size]
+    inner = {*(np.flatnonzero(changes) + 1).tolist(), mesh.bent.start, mesh.bent.stop}
+    ends = sorted({0, size, *inner})
     return [slice(a, b) for a, b in itertools.pairwise(ends)]
 
 

@@ -46,7 +46,8 @@ class Screened:
     """One solution: P pieces, P + 1 nodes."""
 
     profile: Profile
-    """Begins at a negative position in the left contact and ends in the right one."""
+    """Begins at a negative position in the left contact and ends in the right one, where the band
+    is as good as flat."""
     potential_V: FloatArray
     """At ``profile.position_nm``, 0 far to the left; shape (P + 1,)."""
     electrons_cm3: FloatArray
@@ -61,6 +62,8 @@ class Screened:
     """Electrons in it."""
     report: ScreeningReport
     mesh: Mesh
+    whole_V: FloatArray
+    """Potential at all the mesh's nodes, beyond the profile's ends too; shape (2 E + 1,)."""
     bias_V: float
 
 
@@ -90,16 +93,18 @@ def screened(
         model=model,
         reason=reason,
     )
+    nodes = slice(2 * mesh.bent.start, 2 * mesh.bent.stop + 1)
     return Screened(
         profile=bent_profile(structure, mesh, bias_V, relaxed.potential_V),
-        potential_V=relaxed.potential_V,
-        electrons_cm3=_mean(count) / NM3_PER_CM3,
-        donors_cm3=_mean(np.repeat(mesh.donors_nm3[:, None], 3, axis=1)) / NM3_PER_CM3,
+        potential_V=relaxed.potential_V[nodes],
+        electrons_cm3=_mean(count)[nodes] / NM3_PER_CM3,
+        donors_cm3=_mean(np.repeat(mesh.donors_nm3[:, None], 3, axis=1))[nodes] / NM3_PER_CM3,
         sheet_charge_left_cm2=sheet[0],
         sheet_charge_right_cm2=sheet[1],
         well_charge_cm2=float(held[mesh.side == 0].sum()) * CM2_PER_NM2,
         report=report,
         mesh=mesh,
+        whole_V=relaxed.potential_V,
         bias_V=bias_V,
     )
 
@@ -108,16 +113,17 @@ def bent_profile(
     structure: Structure, mesh: Mesh, bias_V: float, potential_V: FloatArray
 ) -> Profile:
     """Band edge as linear pieces between the nodes, two to an element."""
-    edge = mesh.edge_eV - on_elements(potential_V)
+    bent = mesh.bent
+    edge, mass = (mesh.edge_eV - on_elements(potential_V))[bent], mesh.mass[bent]
     left, right = structure.left, structure.right
     return Profile(
-        position_nm=mesh.node_nm,
-        thickness_nm=np.repeat(0.5 * mesh.step_nm, 2),
+        position_nm=mesh.node_nm[2 * bent.start : 2 * bent.stop + 1],
+        thickness_nm=np.repeat(0.5 * mesh.step_nm[bent], 2),
         edge_left_eV=edge[:, :2].ravel(),
         edge_right_eV=edge[:, 1:].ravel(),
-        mass_left=mesh.mass[:, :2].ravel(),
-        mass_right=mesh.mass[:, 1:].ravel(),
-        layer_index=np.repeat(mesh.layer_index, 2),
+        mass_left=mass[:, :2].ravel(),
+        mass_right=mass[:, 1:].ravel(),
+        layer_index=np.repeat(mesh.layer_index[bent], 2),
         contact_edge_eV=(left.edge_eV, right.edge_eV - (bias_V + built_in_eV(structure))),
         contact_mass=(left.mass, right.mass),
     )
