@@ -74,6 +74,8 @@ class Mesh:
     temperature_K: float
     range_V: tuple[float, float]
     """Biases that it was made for."""
+    waves: bool = False
+    """Whether it is fine enough for waves in the tunnelling region."""
     bent_nm: tuple[float, float] = (-np.inf, np.inf)
     """Outside of this the band is as good as flat at all of them."""
 
@@ -197,7 +199,7 @@ def first_mesh(
 def mesh_of_slabs(slabs: list[Slab], like: Mesh) -> Mesh:
     """Put stretches together to a mesh for the same conditions as another."""
     mesh = _mesh(slabs, like.region, like.temperature_K, like.range_V)
-    return replace(mesh, bent_nm=like.bent_nm)
+    return replace(mesh, bent_nm=like.bent_nm, waves=like.waves)
 
 
 def growing_faces(length_nm: float, first_nm: float) -> FloatArray:

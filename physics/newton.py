@@ -43,6 +43,8 @@ class Relaxed:
     last_step_V: float
     residual: float
     """Largest imbalance of a node over the largest charge of a node."""
+    first_residual: float
+    """The same where the iteration began."""
 
 
 def on_elements(node: FloatArray) -> FloatArray:
@@ -84,6 +86,7 @@ def relax(
     balance = _Balance(mesh, electrons)
     potential = start_V.copy()
     force, slope, residual = balance.at(potential)
+    first = residual
     last = np.inf
     for number in range(1, most_steps + 1):
         watch()
@@ -92,8 +95,8 @@ def relax(
         share, (force, slope, residual) = _descent(balance, potential, step, force)
         potential = potential + share * step
         if share == 1.0 and last <= TOLERANCE_V:
-            return Relaxed(potential, True, number, last, residual)
-    return Relaxed(potential, False, most_steps, last, residual)
+            return Relaxed(potential, True, number, last, residual, first)
+    return Relaxed(potential, False, most_steps, last, residual, first)
 
 
 class _Balance:

@@ -11,23 +11,31 @@ from __future__ import annotations
 
 import math
 from collections.abc import Callable, Iterator, Sequence
+from dataclasses import dataclass, replace
 from typing import Literal
 
 import numpy as np
 from numpy.typing import NDArray
 
-from physics.charge import fermi_levels_eV, thermal_electrons
+from physics.charge import Electrons, fermi_levels_eV, thermal_electrons
 from physics.field import built_in_eV, go_on
 from physics.mesh import Mesh, with_middles
 from physics.meshing import cold_start_V, drop_share, mesh_of, require_conditions
 from physics.newton import MOST_STEPS, Relaxed, relax
 from physics.refine import halved
-from physics.screening import Screened, screened
+from physics.screening import Screened, bent_profile, screened
 from physics.structure import Structure
+from physics.waves import Waves, split_waves, wave_electrons, waves_of
 
 FloatArray = NDArray[np.float64]
 ChargeModel = Literal["semi-classical", "quantum"]
 
+MOST_ROUNDS = 40
+MOVED_V = 2e-6
+"""Change of the potential from which the waves' next one is far below what levels notice."""
+SLOWING, LEAST_SHARE = 0.7, 0.1
+"""A round that moves the potential by more than this share of the last one's is halved from then
+on, down to the least share."""
 RAMP_V = 0.1
 """Steps of bias by which a solution is led where a cold start does not arrive."""
 
@@ -70,31 +78,26 @@ def screened_field(
         As `mesh_of`. A solution that does not converge is returned and says so.
     """
     require_conditions([bias_V], temperature_K)
-    if (
-        mesh is None
-        and start is not None
-        and start.mesh.range_V[0] <= bias_V <= (start.mesh.range_V[1])
-    ):
+    quantum = charge == "quantum"
+    if mesh is None and start is not None and _serves(start.mesh, bias_V, temperature_K, quantum):
         mesh = start.mesh
     if mesh is None:
-        mesh = mesh_of(structure, temperature_K, [bias_V], waves=charge == "quantum", watch=watch)
-    electrons = thermal_electrons(mesh, fermi_levels_eV(structure, bias_V))
-    guess = cold_start_V(structure, mesh, bias_V) if start is None else _warm(mesh, start, bias_V)
-    relaxed = relax(mesh, electrons, guess, watch, most_steps)
-    if not relaxed.converged and start is None:
-        relaxed = _ramped(structure, mesh, bias_V, watch, most_steps)
-    error = np.nan
-    if relaxed.converged:
-        error = _mesh_error_eV(structure, mesh, bias_V, relaxed.potential_V, watch)
+        mesh = mesh_of(structure, temperature_K, [bias_V], waves=quantum, watch=watch)
+    case = _Case(structure, mesh, bias_V, most_steps, watch)
+    answer = _semi_classical(case, start)
+    if quantum and answer.relaxed.converged and mesh.region.has_barrier:
+        quantum_start = start if start is not None and start.mesh.waves else None
+        guess = _warm(case, quantum_start) if quantum_start else answer.relaxed.potential_V
+        answer = _with_waves(case, guess)
     return screened(
         structure,
         mesh,
         bias_V,
-        electrons,
-        relaxed,
-        model="semi-classical electrons, " + mesh.region.says(),
-        reason=_reason(relaxed),
-        mesh_error_eV=error,
+        answer.electrons,
+        answer.relaxed,
+        model="; ".join([*answer.words, mesh.region.says()]),
+        reason=answer.reason,
+        mesh_error_eV=_mesh_error_eV(case, answer),
     )
 
 
@@ -144,41 +147,110 @@ def outward(biases_V: Sequence[float]) -> Iterator[tuple[int, int | None]]:
         yield order[rank], order[rank + 1]
 
 
-def _warm(mesh: Mesh, start: Screened, bias_V: float) -> FloatArray:
+@dataclass(frozen=True, eq=False)
+class _Case:
+    """What is to be solved."""
+
+    structure: Structure
+    mesh: Mesh
+    bias_V: float
+    most_steps: int
+    watch: Callable[[], None]
+
+    @property
+    def fermi_eV(self) -> tuple[float, float]:
+        return fermi_levels_eV(self.structure, self.bias_V)
+
+    def relax(self, electrons: Electrons, start_V: FloatArray) -> Relaxed:
+        return relax(self.mesh, electrons, start_V, self.watch, self.most_steps)
+
+
+@dataclass(frozen=True, eq=False)
+class _Answer:
+    """Where it led."""
+
+    relaxed: Relaxed
+    electrons: Electrons
+    words: tuple[str, ...]
+    reason: str
+    waves: Waves | None = None
+
+
+def _serves(mesh: Mesh, bias_V: float, temperature_K: float, quantum: bool) -> bool:
+    low, high = mesh.range_V
+    return low <= bias_V <= high and mesh.temperature_K == temperature_K and mesh.waves >= quantum
+
+
+def _semi_classical(case: _Case, start: Screened | None) -> _Answer:
+    electrons = thermal_electrons(case.mesh, case.fermi_eV)
+    if start is None:
+        guess = cold_start_V(case.structure, case.mesh, case.bias_V)
+    else:
+        guess = _warm(case, start)
+    relaxed = case.relax(electrons, guess)
+    if not relaxed.converged:
+        relaxed = _ramped(case)
+    return _Answer(relaxed, electrons, ("semi-classical electrons",), _reason(relaxed))
+
+
+def _warm(case: _Case, start: Screened) -> FloatArray:
     """Potential to begin with from a neighbour's."""
-    known = np.interp(mesh.node_nm, start.mesh.node_nm, start.whole_V)
-    return known + (bias_V - start.bias_V) * drop_share(mesh)
+    known = np.interp(case.mesh.node_nm, start.mesh.node_nm, start.whole_V)
+    return known + (case.bias_V - start.bias_V) * drop_share(case.mesh)
 
 
-def _ramped(
-    structure: Structure, mesh: Mesh, bias_V: float, watch: Callable[[], None], most_steps: int
-) -> Relaxed:
+def _ramped(case: _Case) -> Relaxed:
     """Lead the solution from the bias at which nothing drops, in steps of `RAMP_V`."""
-    flat = -built_in_eV(structure)
-    count = max(1, math.ceil(abs(bias_V - flat) / RAMP_V))
-    potential, share = cold_start_V(structure, mesh, flat), drop_share(mesh)
-    for bias in np.linspace(flat, bias_V, count + 1)[:-1]:
-        electrons = thermal_electrons(mesh, fermi_levels_eV(structure, float(bias)))
-        relaxed = relax(mesh, electrons, potential, watch, most_steps)
-        potential = relaxed.potential_V + (bias_V - flat) / count * share
-    electrons = thermal_electrons(mesh, fermi_levels_eV(structure, bias_V))
-    return relax(mesh, electrons, potential, watch, most_steps)
+    flat = -built_in_eV(case.structure)
+    count = max(1, math.ceil(abs(case.bias_V - flat) / RAMP_V))
+    share = drop_share(case.mesh)
+    potential = cold_start_V(case.structure, case.mesh, flat)
+    for bias in np.linspace(flat, case.bias_V, count + 1)[:-1]:
+        fermi = fermi_levels_eV(case.structure, float(bias))
+        potential = case.relax(thermal_electrons(case.mesh, fermi), potential).potential_V
+        potential = potential + (case.bias_V - flat) / count * share
+    return case.relax(thermal_electrons(case.mesh, case.fermi_eV), potential)
 
 
-def _mesh_error_eV(
-    structure: Structure,
-    mesh: Mesh,
-    bias_V: float,
-    potential_V: FloatArray,
-    watch: Callable[[], None],
-) -> float:
-    """Compare with all steps halved, at the nodes and in the middle of the pieces."""
-    fine = halved(mesh)
-    electrons = thermal_electrons(fine, fermi_levels_eV(structure, bias_V))
-    found = relax(fine, electrons, with_middles(potential_V), watch)
-    if not found.converged:
+def _with_waves(case: _Case, start_V: FloatArray) -> _Answer:
+    """Let the waves and the potential agree, round by round."""
+    outside = thermal_electrons(case.mesh, case.fermi_eV)
+    potential, steps, last_moved, share = start_V, 0, math.inf, 1.0
+    for _ in range(MOST_ROUNDS):
+        profile = bent_profile(case.structure, case.mesh, case.bias_V, potential)
+        profile = replace(profile, watch=case.watch)
+        waves = waves_of(case.mesh, profile, potential, case.fermi_eV)
+        electrons = wave_electrons(case.mesh, waves, outside, case.fermi_eV)
+        relaxed = case.relax(electrons, potential)
+        steps += relaxed.steps
+        moved = float(np.abs(relaxed.potential_V - potential).max())
+        # The residual that counts is the one before the waves were moved along.
+        relaxed = replace(relaxed, steps=steps, residual=relaxed.first_residual)
+        words = ("electrons between the barriers as waves of both contacts", *waves.remarks)
+        if moved <= MOVED_V and relaxed.converged:
+            return _Answer(relaxed, electrons, words, "", waves)
+        if moved > SLOWING * last_moved:
+            share = max(0.5 * share, LEAST_SHARE)
+        potential, last_moved = potential + share * (relaxed.potential_V - potential), moved
+    relaxed = replace(relaxed, converged=False)
+    reason = f"after {MOST_ROUNDS} rounds the waves still move the potential by {moved:.1e} V"
+    return _Answer(relaxed, electrons, words, reason, waves)
+
+
+def _mesh_error_eV(case: _Case, answer: _Answer) -> float:
+    """Compare with all steps halved, at the nodes and in the middle of the pieces.
+
+    Waves are kept; what they would change in a potential as finely drawn is not seen.
+    """
+    if not answer.relaxed.converged:
         return math.nan
-    return float(np.abs(found.potential_V - with_middles(potential_V)).max())
+    fine = halved(case.mesh)
+    electrons = thermal_electrons(fine, case.fermi_eV)
+    if answer.waves is not None:
+        electrons = wave_electrons(fine, split_waves(answer.waves), electrons, case.fermi_eV)
+    coarse = with_middles(answer.relaxed.potential_V)
+    found = relax(fine, electrons, coarse, case.watch)
+    return float(np.abs(found.potential_V - coarse).max()) if found.converged else math.nan
 
 
 def _reason(relaxed: Relaxed) -> str:

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import itertools
+from dataclasses import replace
 
 import numpy as np
 from numpy.typing import NDArray
@@ -49,7 +50,7 @@ def refined(mesh: Mesh, charge_nm3: FloatArray, *, waves: bool) -> Mesh:
     if waves:
         length = np.where(in_region, np.minimum(length, WAVE_STEP_NM), length)
     slabs = [_slab(mesh, group, _divided(mesh, group, length)) for group in _groups(mesh)]
-    return mesh_of_slabs(slabs, mesh)
+    return replace(mesh_of_slabs(slabs, mesh), waves=waves)
 
 
 def halved(mesh: Mesh) -> Mesh:

@@ -126,6 +126,38 @@ def local_density_of_states(
     StructureError
         A position outside the stack.
     """
+    from_both = injected_density_of_states(profile, x_nm, energy_eV)
+    total: FloatArray = from_both[0] + from_both[1]
+    return total
+
+
+def injected_density_of_states(
+    profile: Profile, x_nm: FloatArray, energy_eV: FloatArray
+) -> FloatArray:
+    """Local density of the states that come in from each contact, per spin, in 1 / (eV nm).
+
+    With the ratios f / psi of the two leaving solutions, ``|G|^2`` times the flux that leaves to
+    one side is what that side brings in (S. Datta, Electronic Transport in Mesoscopic Systems
+    (1995), ch. 3, from memory). It equals ``|psi|^2 / (2 pi hbar v)`` for a wave of unit density
+    and velocity v in that contact.
+
+    Parameters
+    ----------
+    x_nm : ndarray, shape (X,)
+        Positions in the stack.
+    energy_eV : ndarray, shape (E,)
+        Energies.
+
+    Returns
+    -------
+    ndarray, shape (2, X, E)
+        From the left contact and from the right one.
+
+    Raises
+    ------
+    StructureError
+        A position outside the stack.
+    """
     x = np.asarray(x_nm, dtype=np.float64)
     energy = np.atleast_1d(np.asarray(energy_eV, dtype=np.float64))
     if x.size == 0 or not (x.min() >= profile.start_nm and x.max() <= profile.end_nm):
@@ -135,10 +167,10 @@ def local_density_of_states(
     face = _nearest_face(sectors, x)
     right = _ratios(profile, sectors, energy, face, from_right=True)
     left = _ratios(profile, sectors, energy, face, from_right=False)
-    real, imag = right[0] - left[0], right[1] - left[1]
-    size = real**2 + imag**2
+    size = (right[0] - left[0]) ** 2 + (right[1] - left[1]) ** 2
+    flux = np.stack([-left[1], right[1]])
     with np.errstate(invalid="ignore", divide="ignore"):
-        return np.where(imag > 0.0, imag / size, 0.0) / np.pi
+        return np.where(flux > 0.0, flux / size, 0.0) / np.pi
 
 
 def _ratios(
