@@ -27,6 +27,8 @@ TRIALS = 5
 """Biases of a range at which the charge is looked at before its mesh is laid."""
 LEFT_OVER_V = 1e-5
 """Voltage left beyond a buffer's end, by its last slope, above which buffers are lengthened."""
+LENGTHS_PER_ELEMENT = 0.8
+"""Longest element of a contact in its screening lengths; a parabola follows that to 1e-3."""
 LENGTHENED = (1.0, 2.0, 4.0)
 FLAT_SHARE = 0.01
 """Bending below this share of what the contact's electrons measure energies by (kT, or 2/3 of a
@@ -41,6 +43,8 @@ class _Seen:
     """Largest net charge, shape (E,)."""
     is_bent: NDArray[np.bool_]
     """Whether the band is bent there, or it is layer; shape (E,)."""
+    limit_nm: FloatArray
+    """Longest element that follows the fading of the potential, shape (E,)."""
     left_over_V: float
 
 
@@ -86,7 +90,7 @@ def mesh_of(
             break
     bent = np.flatnonzero(seen.is_bent)
     ends = (float(mesh.face_nm[bent[0]]), float(mesh.face_nm[bent[-1] + 1]))
-    return refined(replace(mesh, bent_nm=ends), seen.charge_nm3, waves=waves)
+    return refined(replace(mesh, bent_nm=ends), seen.charge_nm3, seen.limit_nm, waves=waves)
 
 
 def require_conditions(biases_V: Sequence[float], temperature_K: float) -> None:
@@ -120,6 +124,10 @@ def _looked_at(structure: Structure, mesh: Mesh, watch: Callable[[], None]) -> _
     bent[np.flatnonzero(in_contact[0])[-1]] = bent[np.flatnonzero(in_contact[1])[0]] = True
     contacts = (structure.left, structure.right)
     flat_V = [_flat_V(contact, mesh.temperature_K) for contact in contacts]
+    lengths = [screening_length_nm(contact, mesh.temperature_K) for contact in contacts]
+    limit = np.full(size, np.inf)
+    for side in (0, 1):
+        limit[in_contact[side]] = LENGTHS_PER_ELEMENT * lengths[side]
     charge, left_over = np.zeros(size), 0.0
     for bias in np.unique(np.linspace(*mesh.range_V, TRIALS)):
         electrons = thermal_electrons(mesh, fermi_levels_eV(structure, float(bias)))
@@ -129,12 +137,11 @@ def _looked_at(structure: Structure, mesh: Mesh, watch: Callable[[], None]) -> _
         net = mesh.donors_nm3[:, None] - electrons(element)[0]
         charge = np.maximum(charge, np.abs(net).max(axis=1))
         fields = end_fields_V_per_nm(mesh, potential)
-        for side, contact in enumerate(contacts):
+        for side in (0, 1):
             away = np.abs(element - potential[-side]).max(axis=1)
             bent |= in_contact[side] & (away > flat_V[side])
-            length = screening_length_nm(contact, mesh.temperature_K)
-            left_over = max(left_over, fields[side] * length)
-    return _Seen(charge, bent, left_over)
+            left_over = max(left_over, fields[side] * lengths[side])
+    return _Seen(charge, bent, limit, left_over)
 
 
 def _flat_V(contact: Contact, temperature_K: float) -> float:

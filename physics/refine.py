@@ -26,7 +26,7 @@ LEAST_NM3 = 1e-20
 """Charge below which an element is as long as it likes."""
 
 
-def refined(mesh: Mesh, charge_nm3: FloatArray, *, waves: bool) -> Mesh:
+def refined(mesh: Mesh, charge_nm3: FloatArray, limit_nm: FloatArray, *, waves: bool) -> Mesh:
     """Lay the elements anew, as long as the charge allows.
 
     A piece of length h, half an element, departs from the curved edge by ``h^2 rho / (8 eps)``.
@@ -37,12 +37,14 @@ def refined(mesh: Mesh, charge_nm3: FloatArray, *, waves: bool) -> Mesh:
         The first mesh.
     charge_nm3 : ndarray, shape (E,)
         Largest net charge met in each of its elements.
+    limit_nm : ndarray, shape (E,)
+        What no element there may be longer than; inf for no limit.
     waves : bool
         Whether electrons in the tunnelling region are waves, which bend the edge there too.
     """
     charge = np.maximum(np.abs(charge_nm3), LEAST_NM3)
     longest = 2.0 * np.sqrt(8.0 * mesh.permittivity * CHORD_EV / charge)
-    length = _smoothed(mesh, longest)
+    length = _smoothed(mesh, np.minimum(longest, limit_nm))
     in_region = mesh.side == 0
     pieces = 2.0 * float((mesh.step_nm / length).sum())
     most = max(MOST_PIECES, MOST_PIECES_PER_NM * mesh.stack_nm)
