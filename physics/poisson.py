@@ -18,6 +18,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from physics.charge import Electrons, fermi_levels_eV, thermal_electrons
+from physics.constants import BOLTZMANN_EV_PER_K
 from physics.field import built_in_eV, go_on
 from physics.mesh import Mesh, with_middles
 from physics.meshing import cold_start_V, drop_share, mesh_of, require_conditions
@@ -31,8 +32,9 @@ FloatArray = NDArray[np.float64]
 ChargeModel = Literal["semi-classical", "quantum"]
 
 MOST_ROUNDS = 40
-MOVED_V = 2e-6
-"""Change of the potential from which the waves' next one is far below what levels notice."""
+MOVED_V, MOVED_KT = 2e-6, 1e-4
+"""Change of the potential, and of it over kT, from which the waves' next one is far below what
+levels and their filling notice."""
 SLOWING, LEAST_SHARE = 0.7, 0.1
 """A round that moves the potential by more than this share of the last one's is halved from then
 on, down to the least share."""
@@ -216,6 +218,7 @@ def _with_waves(case: _Case, start_V: FloatArray) -> _Answer:
     """Let the waves and the potential agree, round by round."""
     outside = thermal_electrons(case.mesh, case.fermi_eV)
     potential, steps, last_moved, share = start_V, 0, math.inf, 1.0
+    settled = min(MOVED_V, MOVED_KT * BOLTZMANN_EV_PER_K * case.mesh.temperature_K)
     for _ in range(MOST_ROUNDS):
         profile = bent_profile(case.structure, case.mesh, case.bias_V, potential)
         profile = replace(profile, watch=case.watch)
@@ -227,7 +230,7 @@ def _with_waves(case: _Case, start_V: FloatArray) -> _Answer:
         # The residual that counts is the one before the waves were moved along.
         relaxed = replace(relaxed, steps=steps, residual=relaxed.first_residual)
         words = ("electrons between the barriers as waves of both contacts", *waves.remarks)
-        if moved <= MOVED_V and relaxed.converged:
+        if moved <= settled and relaxed.converged:
             return _Answer(relaxed, electrons, words, "", waves)
         if moved > SLOWING * last_moved:
             share = max(0.5 * share, LEAST_SHARE)

@@ -129,9 +129,9 @@ def test_without_charge_the_field_is_the_uniform_one() -> None:
 def test_mirror_image_under_reversed_bias(charge: str) -> None:
     one, other = (
         screened_field(two_barriers(), bias, 300.0, charge=charge)  # type: ignore[arg-type]
-        for bias in (0.15, -0.15)
+        for bias in (0.1, -0.1)
     )
-    mirrored = other.potential_V[::-1] + 0.15
+    mirrored = other.potential_V[::-1] + 0.1
     length = one.profile.faces_nm[1]
     assert np.allclose(one.profile.position_nm, length - other.profile.position_nm[::-1], atol=1e-6)
     assert np.abs(one.potential_V - mirrored).max() < 1e-5
