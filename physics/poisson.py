@@ -32,12 +32,11 @@ FloatArray = NDArray[np.float64]
 ChargeModel = Literal["semi-classical", "quantum"]
 
 MOST_ROUNDS = 40
-MOVED_V, MOVED_KT = 2e-6, 1e-4
+MOVED_V, MOVED_KT = 5e-7, 1e-4
 """Change of the potential, and of it over kT, from which the waves' next one is far below what
 levels and their filling notice."""
-SLOWING, LEAST_SHARE = 0.7, 0.1
-"""A round that moves the potential by more than this share of the last one's is halved from then
-on, down to the least share."""
+DEPTH = 3
+"""Earlier rounds that the next one's start is drawn from."""
 RAMP_V = 0.1
 """Steps of bias by which a solution is led where a cold start does not arrive."""
 
@@ -217,7 +216,9 @@ def _ramped(case: _Case) -> Relaxed:
 def _with_waves(case: _Case, start_V: FloatArray) -> _Answer:
     """Let the waves and the potential agree, round by round."""
     outside = thermal_electrons(case.mesh, case.fermi_eV)
-    potential, steps, last_moved, share = start_V, 0, math.inf, 1.0
+    potential, steps, last_moved = start_V, 0, math.inf
+    tried: list[FloatArray] = []
+    led_to: list[FloatArray] = []
     settled = min(MOVED_V, MOVED_KT * BOLTZMANN_EV_PER_K * case.mesh.temperature_K)
     for _ in range(MOST_ROUNDS):
         profile = bent_profile(case.structure, case.mesh, case.bias_V, potential)
@@ -232,12 +233,28 @@ def _with_waves(case: _Case, start_V: FloatArray) -> _Answer:
         words = ("electrons between the barriers as waves of both contacts", *waves.remarks)
         if moved <= settled and relaxed.converged:
             return _Answer(relaxed, electrons, words, "", waves)
-        if moved > SLOWING * last_moved:
-            share = max(0.5 * share, LEAST_SHARE)
-        potential, last_moved = potential + share * (relaxed.potential_V - potential), moved
+        if moved > last_moved:
+            tried, led_to = [], []
+        tried, led_to = [*tried[-DEPTH:], potential], [*led_to[-DEPTH:], relaxed.potential_V]
+        potential, last_moved = _mixed(tried, led_to), moved
     relaxed = replace(relaxed, converged=False)
     reason = f"after {MOST_ROUNDS} rounds the waves still move the potential by {moved:.1e} V"
     return _Answer(relaxed, electrons, words, reason, waves)
+
+
+def _mixed(tried: list[FloatArray], led_to: list[FloatArray]) -> FloatArray:
+    """Start of the next round: where the changes of the last ones would cancel best.
+
+    D. G. Anderson, J. ACM 12, 547 (1965), from memory. After a round that made it worse they are
+    forgotten.
+    """
+    change = led_to[-1] - tried[-1]
+    if len(tried) == 1:
+        return led_to[-1]
+    changes = np.stack([change - (b - a) for a, b in zip(tried, led_to, strict=True)][:-1], axis=1)
+    ways = np.stack([led_to[-1] - b for b in led_to[:-1]], axis=1)
+    share = np.linalg.lstsq(changes, change, rcond=1e-6)[0]
+    return np.asarray(led_to[-1] - ways @ share)
 
 
 def _mesh_error_eV(case: _Case, answer: _Answer) -> float:
