@@ -126,9 +126,11 @@ def local_density_of_states(
     StructureError
         A position outside the stack.
     """
-    from_both = injected_density_of_states(profile, x_nm, energy_eV)
-    total: FloatArray = from_both[0] + from_both[1]
-    return total
+    left, right = _both_ratios(profile, x_nm, energy_eV)
+    real, imag = right[0] - left[0], right[1] - left[1]
+    size = real**2 + imag**2
+    with np.errstate(invalid="ignore", divide="ignore"):
+        return np.where(imag > 0.0, imag / size, 0.0) / np.pi
 
 
 def injected_density_of_states(
@@ -158,6 +160,17 @@ def injected_density_of_states(
     StructureError
         A position outside the stack.
     """
+    left, right = _both_ratios(profile, x_nm, energy_eV)
+    size = (right[0] - left[0]) ** 2 + (right[1] - left[1]) ** 2
+    flux = np.stack([-left[1], right[1]])
+    with np.errstate(invalid="ignore", divide="ignore"):
+        return np.where(flux > 0.0, flux / size, 0.0) / np.pi
+
+
+def _both_ratios(
+    profile: Profile, x_nm: FloatArray, energy_eV: FloatArray
+) -> tuple[tuple[FloatArray, FloatArray], tuple[FloatArray, FloatArray]]:
+    """Ratios f / psi of the solutions that leave to the left and to the right, as `_ratios`."""
     x = np.asarray(x_nm, dtype=np.float64)
     energy = np.atleast_1d(np.asarray(energy_eV, dtype=np.float64))
     if x.size == 0 or not (x.min() >= profile.start_nm and x.max() <= profile.end_nm):
@@ -167,10 +180,7 @@ def injected_density_of_states(
     face = _nearest_face(sectors, x)
     right = _ratios(profile, sectors, energy, face, from_right=True)
     left = _ratios(profile, sectors, energy, face, from_right=False)
-    size = (right[0] - left[0]) ** 2 + (right[1] - left[1]) ** 2
-    flux = np.stack([-left[1], right[1]])
-    with np.errstate(invalid="ignore", divide="ignore"):
-        return np.where(flux > 0.0, flux / size, 0.0) / np.pi
+    return left, right
 
 
 def _ratios(
