@@ -11,7 +11,8 @@ from __future__ import annotations
 
 import itertools
 import math
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
+from functools import partial
 from typing import ClassVar, Literal
 
 import numpy as np
@@ -22,7 +23,7 @@ from physics.errors import EnergyError
 from physics.field import Profile, without_runways
 from physics.leaving import STOPS, Leaving, leaving_states
 from physics.outgoing import Sheet, closed_stack_energies, mismatch
-from physics.rootfinding import MOST_POINTS, Rectangle, zeros_in
+from physics.rootfinding import MOST_POINTS, Rectangle, distinct, polish, zeros_in
 from physics.sectors import Sectors, cut
 
 ComplexArray = NDArray[np.complex128]
@@ -152,6 +153,34 @@ def find_levels(
     return LevelSet(
         tuple(levels), complete, counted if complete else -1, from_eV, to_eV, max_width_eV
     )
+
+
+def follow_levels(profile: Profile, before: LevelSet) -> LevelSet:
+    """Find levels again in a profile that has changed a little, from where they were.
+
+    Nothing is proved anew; where a level is lost on the way, all are found from scratch.
+    """
+    levels: list[Level] = []
+    core = without_runways(profile)
+    for low, high in _strips(profile, before.from_eV, before.to_eV):
+        known = [level for level in before.levels if low <= level.energy_eV < high]
+        poles = np.array([complex(level.energy_eV, -0.5 * level.width_eV) for level in known])
+        if high <= min(profile.contact_edge_eV):  # all bound
+            strip = _find_poles(core, low, high, before.max_width_eV)
+        elif poles.size:
+            sheet = Sheet(*(0.5 * (low + high) > edge for edge in profile.contact_edge_eV))
+            depth = 2.0 * before.max_width_eV
+            sectors = cut(core, low, high, depth_eV=depth)
+            box = Rectangle(low, high, -depth, REAL_AXIS_EV)
+            found = polish(partial(mismatch, core, sectors, sheet), poles, poles[:0], box)
+            strip = _Strip(sheet, distinct(found[box.holds(found)]), 0, proved=before.complete)
+        else:
+            continue
+        levels += _describe(profile, strip)
+    if len(levels) != len(before.levels):
+        return find_levels(profile, before.from_eV, before.to_eV, before.max_width_eV)
+    levels.sort(key=lambda level: level.energy_eV)
+    return replace(before, levels=tuple(levels))
 
 
 def _mixing(poles: ComplexArray) -> FloatArray:

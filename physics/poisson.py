@@ -35,6 +35,8 @@ MOST_ROUNDS = 40
 MOVED_V, MOVED_KT = 5e-7, 1e-4
 """Change of the potential, and of it over kT, from which the waves' next one is far below what
 levels and their filling notice."""
+NEAR_V = 3e-3
+"""Change of the potential up to which levels are followed rather than found anew."""
 DEPTH = 3
 """Earlier rounds that the next one's start is drawn from."""
 RAMP_V = 0.1
@@ -217,13 +219,15 @@ def _with_waves(case: _Case, start_V: FloatArray) -> _Answer:
     """Let the waves and the potential agree, round by round."""
     outside = thermal_electrons(case.mesh, case.fermi_eV)
     potential, steps, last_moved = start_V, 0, math.inf
+    waves: Waves | None = None
     tried: list[FloatArray] = []
     led_to: list[FloatArray] = []
     settled = min(MOVED_V, MOVED_KT * BOLTZMANN_EV_PER_K * case.mesh.temperature_K)
     for _ in range(MOST_ROUNDS):
         profile = bent_profile(case.structure, case.mesh, case.bias_V, potential)
         profile = replace(profile, watch=case.watch)
-        waves = waves_of(case.mesh, profile, potential, case.fermi_eV)
+        near = waves if last_moved <= NEAR_V else None
+        waves = waves_of(case.mesh, profile, potential, case.fermi_eV, near)
         electrons = wave_electrons(case.mesh, waves, outside, case.fermi_eV)
         relaxed = case.relax(electrons, potential)
         steps += relaxed.steps

@@ -13,7 +13,7 @@ et al., J. Appl. Phys. 81, 7880 (1997), from memory).
 from __future__ import annotations
 
 import math
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 from numpy.typing import NDArray
@@ -23,7 +23,7 @@ from physics.constants import BOLTZMANN_EV_PER_K
 from physics.constants import HBAR2_OVER_2M0_EV_NM2 as C_EV_NM2
 from physics.field import Profile
 from physics.leaving import STOPS, leaving_states
-from physics.levels import Level, LevelSet, find_levels
+from physics.levels import Level, LevelSet, find_levels, follow_levels
 from physics.mesh import Mesh
 from physics.newton import on_elements
 from physics.outgoing import Sheet
@@ -58,6 +58,8 @@ class Waves:
     """The potential they belong to, shape (N,)."""
     remarks: tuple[str, ...]
     """What there is to be said of them."""
+    levels: LevelSet
+    """The levels that were told apart."""
 
 
 def region_elements(mesh: Mesh) -> slice:
@@ -67,7 +69,11 @@ def region_elements(mesh: Mesh) -> slice:
 
 
 def waves_of(
-    mesh: Mesh, profile: Profile, potential_V: FloatArray, fermi_eV: tuple[float, float]
+    mesh: Mesh,
+    profile: Profile,
+    potential_V: FloatArray,
+    fermi_eV: tuple[float, float],
+    near: Waves | None = None,
 ) -> Waves:
     """Compute the waves that fill the region.
 
@@ -81,6 +87,8 @@ def waves_of(
         The potential at all nodes.
     fermi_eV : tuple of float
         Fermi level of the left and of the right contact.
+    near : Waves, optional
+        Those of a potential that is all but the same; their levels are followed.
 
     Raises
     ------
@@ -92,7 +100,10 @@ def waves_of(
     x = mesh.node_nm[nodes]
     kT = BOLTZMANN_EV_PER_K * mesh.temperature_K
     top = max(*fermi_eV, min(profile.contact_edge_eV)) + REACH_KT * kT
-    levels = find_levels(profile, profile.lowest_eV - BROAD_EV, top, BROAD_EV)
+    if near is None:
+        levels = find_levels(profile, profile.lowest_eV - BROAD_EV, top, BROAD_EV)
+    else:
+        levels = follow_levels(profile, near.levels)
     remarks = [] if levels.complete else ["the count of the levels that hold them is not proved"]
     bound = [level for level in levels.levels if level.kind == "bound"]
     if bound and fermi_eV[0] != fermi_eV[1]:
@@ -113,6 +124,7 @@ def waves_of(
         per_nm=np.concatenate([spread, *(part[:, :, None] for part in summed)], axis=2),
         base_V=potential_V[nodes],
         remarks=tuple(remarks),
+        levels=levels,
     )
 
 
@@ -144,7 +156,7 @@ def wave_electrons(
 def split_waves(waves: Waves) -> Waves:
     """Give the same waves on elements of half the length, by parabolas through each three nodes."""
     base, per_nm = _split(waves.base_V[:, None])[:, 0], [_split(part) for part in waves.per_nm]
-    return Waves(waves.energy_eV, np.maximum(np.stack(per_nm), 0.0), base, waves.remarks)
+    return replace(waves, per_nm=np.maximum(np.stack(per_nm), 0.0), base_V=base)
 
 
 def _split(value: FloatArray) -> FloatArray:
