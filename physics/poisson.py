@@ -88,7 +88,9 @@ def screened_field(
         mesh = mesh_of(structure, temperature_K, [bias_V], waves=quantum, watch=watch)
     case = _Case(structure, mesh, bias_V, most_steps, watch)
     answer = _semi_classical(case, start)
-    if quantum and answer.relaxed.converged and mesh.region.has_barrier:
+    if quantum and not mesh.region.has_barrier:
+        answer = replace(answer, words=(*answer.words, "no region whose electrons could be waves"))
+    elif quantum and answer.relaxed.converged:
         quantum_start = start if start is not None and start.mesh.waves else None
         guess = _warm(case, quantum_start) if quantum_start else answer.relaxed.potential_V
         answer = _with_waves(case, guess)

@@ -209,6 +209,8 @@ def test_where_the_fermi_levels_part() -> None:
     found = screened_field(low, 0.05, 300.0)
     assert found.report.converged
     assert "steps at one point, 25 nm" in found.report.model
+    asked = screened_field(low, 0.05, 300.0, charge="quantum")
+    assert "no region whose electrons could be waves" in asked.report.model
     end = contact(1e18, 300.0)
     assert tunnelling_region(Structure(end, (flat(1e18), flat(1e18)), end)).start_nm == 60.0
 
