@@ -15,6 +15,7 @@ from physics.dephasing import COHERENT, Dephasing
 from physics.field import ASSUMED_PERMITTIVITY, Profile
 from physics.levels import LevelSet
 from physics.scattering import Scattering
+from physics.screening import ScreeningReport
 from physics.strain_notes import strain_notes
 from physics.structure import Layer, Structure
 
@@ -39,7 +40,7 @@ class Advice:
 
     topic: str
     """One of: side valley, thin layer, strain, coherence, flux, permittivity, proof,
-    accuracy."""
+    accuracy, screening."""
     text: str
     layer: int | None = None
     """Number of the layer it speaks of, counted from 1; None where it is about the whole."""
@@ -53,6 +54,7 @@ def advise(
     spectrum: Scattering,
     *,
     dephasing: Dephasing = COHERENT,
+    screening: ScreeningReport | None = None,
 ) -> tuple[Advice, ...]:
     """Collect the notes on one answer.
 
@@ -68,9 +70,12 @@ def advise(
         The answer.
     dephasing : Dephasing
         How coherence was lost in it.
+    screening : ScreeningReport, optional
+        How the field was solved, where it is the screened one.
     """
     stated = dephasing.width_eV > 0.0
     notes = [
+        *_screening(screening),
         *_proof(levels),
         *_pairs(levels),
         *_flux(spectrum),
@@ -78,7 +83,7 @@ def advise(
         *_thin(structure),
         *_strain(structure),
         *(_lost(levels, dephasing) if stated else _coherence(levels, temperature_K)),
-        *_permittivity(structure, profile),
+        *_permittivity(structure, profile, screened=screening is not None),
     ]
     return tuple(notes)
 
@@ -88,6 +93,18 @@ def scattering_width_eV(temperature_K: float) -> float:
     ratio = PHONON_EV / (BOLTZMANN_EV_PER_K * temperature_K)
     phonons = math.exp(-ratio) / -math.expm1(-ratio)  # Bose's number, without overflow when cold
     return SCATTERING_AT_0K_EV + PHONON_COUPLING_EV * phonons
+
+
+def _screening(report: ScreeningReport | None) -> list[Advice]:
+    if report is None:
+        return []
+    state = (
+        f"residual {report.residual:.0e}, neutral to {report.neutrality:.0e}, edge good to "
+        f"{1e3 * report.mesh_error_eV:.2g} meV"
+    )
+    if not report.converged:
+        state = f"NOT CONVERGED, trust no number below: {report.reason}"
+    return [Advice("screening", f"{report.model}; {state}")]
 
 
 def _proof(levels: LevelSet) -> list[Advice]:
@@ -145,10 +162,13 @@ def _side_valleys(
 
 def _lowered_eV(layer: Layer, profile: Profile, index: int) -> float:
     """How far the field lowers a layer, at the face where it does so most."""
-    pieces = profile.layer_index == index
-    left = layer.edge_eV - float(profile.edge_left_eV[pieces][0])
-    right = layer.right_edge_eV - float(profile.edge_right_eV[pieces][-1])
-    return max(left, right)
+    pieces = profile.layer_pieces(index)
+    face = profile.position_nm[pieces.start : pieces.stop + 1]
+    share = (face - face[0]) / (face[-1] - face[0])
+    edge = layer.edge_eV * (1.0 - share) + layer.right_edge_eV * share
+    left = edge[:-1] - profile.edge_left_eV[pieces]
+    right = edge[1:] - profile.edge_right_eV[pieces]
+    return float(max(left.max(), right.max()))
 
 
 def _side_valley_text(valley: str, name: str, edge_eV: float, number: int, levels: LevelSet) -> str:
@@ -226,12 +246,16 @@ def _numbers(numbers: list[int]) -> str:
     return f"{numbers[0]} to {numbers[-1]} ({len(numbers)} of them)"
 
 
-def _permittivity(structure: Structure, profile: Profile) -> list[Advice]:
-    dropped = profile.contact_edge_eV[1] != structure.right.edge_eV
+def _permittivity(structure: Structure, profile: Profile, *, screened: bool) -> list[Advice]:
+    dropped = screened or profile.contact_edge_eV[1] != structure.right.edge_eV
     stated = {layer.permittivity for layer in structure.layers}
+    if screened:
+        stated |= {structure.left.permittivity, structure.right.permittivity}
     if not dropped or None not in stated or stated <= {None, ASSUMED_PERMITTIVITY}:
         return []
     text = (
         f"layers that state no permittivity share the field as if it were {ASSUMED_PERMITTIVITY:g}"
     )
+    if screened:
+        text = f"what states no permittivity is taken to have {ASSUMED_PERMITTIVITY:g}"
     return [Advice("permittivity", text)]

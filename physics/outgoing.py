@@ -19,8 +19,9 @@ import numpy as np
 from numpy.typing import NDArray
 
 from physics.constants import HBAR2_OVER_2M0_EV_NM2 as C_EV_NM2
+from physics.contacts import Contacts, contact_mass_at
 from physics.errors import EnergyError
-from physics.field import Contacts, Profile, contact_mass_at
+from physics.field import Profile
 from physics.scattering import NODE_GUARD
 from physics.sectors import Expanded, Sectors, matrices, matrices_and_slopes
 

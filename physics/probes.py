@@ -31,7 +31,7 @@ from typing import Any
 import numpy as np
 from numpy.typing import NDArray
 
-from physics.field import Layered
+from physics.contacts import Layered
 from physics.scattering import NODE_GUARD, contact_flux_eV_nm
 from physics.sectors import Expanded, matrices
 

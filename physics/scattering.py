@@ -21,7 +21,8 @@ from numpy.typing import NDArray
 
 from physics.constants import HBAR2_OVER_2M0_EV_NM2 as C_EV_NM2
 from physics.constants import HBAR_EV_S
-from physics.field import Contacts, Profile, contact_mass_at
+from physics.contacts import Contacts, contact_mass_at
+from physics.field import Profile
 from physics.sectors import Expanded, Sectors, cut, matrices, matrices_and_slopes
 
 FloatArray = NDArray[np.float64]

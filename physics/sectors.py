@@ -169,7 +169,7 @@ def cut(
     require_above_valence(profile, low_eV)
     piece, left, share = sector_shares(profile, low_eV, high_eV, depth_eV, marks_nm)
     start, end = profile.position_nm[piece], profile.position_nm[piece + 1]
-    position = np.append(start + (end - start) * left, profile.length_nm)
+    position = np.append(start + (end - start) * left, profile.end_nm)
     centre = 0.5 * (low_eV + high_eV)
     reach = max(0.5 * (high_eV - low_eV) + depth_eV, 1e-3)
     described = described_sectors(profile, piece, left, share, centre)

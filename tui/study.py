@@ -14,10 +14,12 @@ from physics.dephasing import Dephasing, scatter_dephased, wells_of
 from physics.errors import EnergyError
 from physics.field import Profile, go_on, uniform_field, valence_top
 from physics.levels import LevelSet, find_levels
+from physics.poisson import screened_field
 from physics.scattering import Scattering, scatter
+from physics.screening import ScreeningReport
 from physics.spectrum import adaptive_spectrum
 from physics.structure import Structure
-from tui.session.model import Session
+from tui.session.model import Conditions, Session
 from tui.session.resolve import dephasing_of, resolve
 
 FLAT_EV = 1e-3
@@ -50,6 +52,8 @@ class Scene:
     max_width_eV: float
     dephasing_eV: float = 0.0
     """Width by which lost coherence broadens levels in wells; 0 for the coherent answer."""
+    screening: ScreeningReport | None = None
+    """How Poisson's equation was solved; None where the field is uniform."""
 
     @cached_property
     def dephasing(self) -> Dephasing:
@@ -74,7 +78,9 @@ class Study:
     @property
     def reached(self) -> bool:
         """Whether the count was proved and every stated accuracy met."""
-        return self.levels.complete and self.levels.accurate
+        screening = self.scene.screening
+        bent = screening is None or screening.converged
+        return bent and self.levels.complete and self.levels.accurate
 
 
 def set_scene(request: Request, watch: Callable[[], None] = go_on) -> Scene:
@@ -93,8 +99,7 @@ def set_scene(request: Request, watch: Callable[[], None] = go_on) -> Scene:
         The session does not describe something that can be computed.
     """
     structure = resolve(request.session)
-    conditions = request.session.conditions
-    profile = uniform_field(structure, conditions.bias_V, band=conditions.band)
+    profile, screening = _field(request.session.conditions, structure, watch)
     profile = replace(profile, watch=watch)
     low, high = energy_window(profile)
     view = request.session.view
@@ -107,7 +112,7 @@ def set_scene(request: Request, watch: Callable[[], None] = go_on) -> Scene:
         )
     width = _first(request.max_width_eV, view.max_width_eV)
     lost = dephasing_of(request.session, structure.left.mass)
-    return Scene(request, structure, profile, start, stop, width, lost)
+    return Scene(request, structure, profile, start, stop, width, lost, screening)
 
 
 def solve(request: Request, watch: Callable[[], None] = go_on) -> Study:
@@ -123,7 +128,15 @@ def solve(request: Request, watch: Callable[[], None] = go_on) -> Study:
     lost = scene.dephasing
     spectrum = adaptive_spectrum(scene.profile, scene.from_eV, scene.to_eV, levels, lost)
     temperature = request.session.conditions.temperature_K
-    notes = advise(scene.structure, scene.profile, temperature, levels, spectrum, dephasing=lost)
+    notes = advise(
+        scene.structure,
+        scene.profile,
+        temperature,
+        levels,
+        spectrum,
+        dephasing=lost,
+        screening=scene.screening,
+    )
     return Study(scene, levels, spectrum, notes)
 
 
@@ -139,6 +152,22 @@ def scatter_scene(scene: Scene, energy_eV: NDArray[np.float64]) -> Scattering:
         reflection=lost.reflection,
         log10_transmission=lost.log10_transmission,
     )
+
+
+def _field(
+    conditions: Conditions, structure: Structure, watch: Callable[[], None]
+) -> tuple[Profile, ScreeningReport | None]:
+    if conditions.field == "uniform":
+        return uniform_field(structure, conditions.bias_V, band=conditions.band), None
+    screened = screened_field(
+        structure,
+        conditions.bias_V,
+        conditions.temperature_K,
+        charge=conditions.charge,
+        band=conditions.band,
+        watch=watch,
+    )
+    return screened.profile, screened.report
 
 
 def energy_window(profile: Profile) -> tuple[float, float]:

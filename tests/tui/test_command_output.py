@@ -26,7 +26,7 @@ from tui.study import Request, set_scene, solve
 DEMO = read_session(demo_text(), "demo")
 HEAD = ["schema", "command", "title", "conditions"]
 LOST = ["dephasing_eV", "scattering_time_s", "mobility_cm2_Vs"]
-CONDITIONS = ["temperature_K", "bias_V", "field", "band", *LOST]
+CONDITIONS = ["temperature_K", "bias_V", "field", "charge", "band", *LOST]
 SPECTRUM = ["energy_eV", "transmission", "log10_transmission", "reflection"]
 IV = [
     "bias_V",
@@ -127,7 +127,8 @@ def test_keys(
     result = as_json(capsys, arguments[0], design, *arguments[1:])
     assert list(result) == [*HEAD, *keys]
     assert (result["schema"], result["command"]) == (1, arguments[0])
-    said = {"temperature_K": 300.0, "bias_V": 0.0, "field": "uniform", "band": "parabolic"}
+    said = {"temperature_K": 300.0, "bias_V": 0.0, "field": "uniform"}
+    said |= {"charge": "semi-classical", "band": "parabolic"}
     assert result["conditions"] == said | dict.fromkeys(LOST)
 
 

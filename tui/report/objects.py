@@ -68,8 +68,8 @@ def report_object(study: Study) -> Object:
     """Give the whole answer."""
     structure, profile = study.scene.structure, study.profile
     layers = [
-        _layer(layer, number, float(profile.edge_left_eV[at]), float(profile.edge_right_eV[at]))
-        for at, (number, layer) in enumerate(enumerate(structure.layers, start=1))
+        _layer(layer, number, *profile.layer_edges_eV(number - 1))
+        for number, layer in enumerate(structure.layers, start=1)
     ]
     return {
         "left": _contact(structure.left, profile.contact_edge_eV[0]),

@@ -74,7 +74,7 @@ def _stack(study: Study) -> str:
     structure, profile = study.scene.structure, study.profile
     rows = [_contact_row("L", structure.left, profile.contact_edge_eV[0])]
     for n, layer in enumerate(structure.layers):
-        left, right = float(profile.edge_left_eV[n]), float(profile.edge_right_eV[n])
+        left, right = profile.layer_edges_eV(n)
         rows.append(_layer_row(n + 1, layer, left, right))
     rows.append(_contact_row("R", structure.right, profile.contact_edge_eV[1]))
     return columns(STACK_HEAD, rows, left_aligned=(1, 2))

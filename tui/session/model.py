@@ -13,7 +13,8 @@ from typing import Literal
 from physics.band import Band
 from physics.levels import DEFAULT_MAX_WIDTH_EV
 
-FieldModel = Literal["uniform"]
+FieldModel = Literal["uniform", "screened"]
+ChargeModel = Literal["semi-classical", "quantum"]
 
 
 @dataclass(frozen=True)
@@ -23,6 +24,8 @@ class Conditions:
     temperature_K: float = 300.0
     bias_V: float = 0.0
     field: FieldModel = "uniform"
+    charge: ChargeModel = "semi-classical"
+    """Electrons between the barriers; it matters to the screened field alone."""
     band: Band = "parabolic"
     dephasing_eV: float | None = None
     scattering_time_s: float | None = None

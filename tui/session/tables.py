@@ -17,10 +17,12 @@ MONOLAYERS = Range(0.0, 1e6, "a number of monolayers is above 0", open_below=Tru
 NAME_RULE = "a text on one line without control characters, in quotation marks"
 TEXT_RULE = "a text without control characters, in quotation marks"
 
-FIELD_MODELS = ("uniform",)
-FIELD_RULE = 'this version computes field = "uniform" only'
 BANDS = ("parabolic", "kane")
 BAND_RULE = 'a band is "parabolic" or "kane"'
+FIELD_MODELS = ("uniform", "screened")
+FIELD_RULE = 'a field is "uniform" or "screened"'
+CHARGE_MODELS = ("semi-classical", "quantum")
+CHARGE_RULE = 'a charge is "semi-classical" or "quantum"'
 
 
 @dataclass(frozen=True)
@@ -39,6 +41,7 @@ CONDITIONS: Table = {
     "temperature_K": ranges.TEMPERATURE_K,
     "bias_V": ranges.BIAS_V,
     "field": LINE_TEXT,
+    "charge": LINE_TEXT,
     "band": LINE_TEXT,
     "dephasing_eV": ranges.DEPHASING_EV,
     "scattering_time_s": ranges.SCATTERING_TIME_S,

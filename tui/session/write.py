@@ -23,6 +23,7 @@ if TYPE_CHECKING:
 Values = dict[str, Any]
 UNSAID: Values = {
     "band": "parabolic",
+    "charge": "semi-classical",
     "donors_cm3": 0.0,
     **dict.fromkeys(("label", "title", "notes", "overlay_K"), ""),
 }
