@@ -21,7 +21,7 @@ FloatArray = NDArray[np.float64]
 
 NODES = 9
 """Chebyshev nodes in a bracket."""
-NARROWING = (0.2, 0.05)
+NARROWING = (0.2,)
 """Width of the windows after the first, as a share of the bracket."""
 Place = tuple[float, float, float, float]
 """Bias, current, its error, and conductance."""

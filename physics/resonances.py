@@ -22,7 +22,7 @@ from physics.family import Family, FamilySectors
 from physics.field import Profile
 from physics.leaving import STOPS, leaving_states
 from physics.levels import find_levels
-from physics.outgoing import SECTION, Sheet, mismatch, states_below
+from physics.outgoing import Sheet, mismatch, states_below
 from physics.sectors import cut
 from physics.spectrum import APART_EV, NARROW_EV
 
@@ -30,6 +30,8 @@ ComplexArray = NDArray[np.complex128]
 FloatArray = NDArray[np.float64]
 
 OPEN = Sheet(left_open=True, right_open=True)
+TRIALS = 8
+"""Parts that a bracket is cut into at once: with many members few cost less than many."""
 START_EV = 1e-6
 """Width of the brackets that start the iteration."""
 START_GAP_EV = 1e-8
@@ -184,7 +186,7 @@ def _closed_energies(
     rank = ends[:, :1] + np.arange(int(number.max()))  # (B, R)
     lower = np.broadcast_to(low_eV[:, None], rank.shape)
     upper = np.broadcast_to(high_eV[:, None], rank.shape)
-    share = np.linspace(0.0, 1.0, SECTION + 1)
+    share = np.linspace(0.0, 1.0, TRIALS + 1)
     while rank.size and float((upper - lower).max()) > START_EV:
         trial = lower[..., None] + (upper - lower)[..., None] * share  # (B, R, T)
         inner = trial[..., 1:-1].reshape(rank.shape[0], -1)
