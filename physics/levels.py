@@ -94,7 +94,7 @@ class LevelSet:
     complete: bool
     """Whether the count was proved and met."""
     counted: int
-    """Levels in the window by the count; -1 where it could not be done."""
+    """Levels in the window by the count; those that were found where it could not be proved."""
     from_eV: float
     to_eV: float
     max_width_eV: float
@@ -148,9 +148,8 @@ def find_levels(
         counted += len(found) + strip.missing
         complete = complete and strip.proved
     levels.sort(key=lambda level: level.energy_eV)
-    return LevelSet(
-        tuple(levels), complete, counted if complete else -1, from_eV, to_eV, max_width_eV
-    )
+    counted = counted if complete else len(levels)
+    return LevelSet(tuple(levels), complete, counted, from_eV, to_eV, max_width_eV)
 
 
 def _mixing(poles: ComplexArray) -> FloatArray:

@@ -45,7 +45,7 @@ def levels_object(levels: LevelSet) -> Object:
     return {
         "levels": [_level(level, number) for number, level in enumerate(levels.levels, start=1)],
         "complete": levels.complete,
-        "counted": levels.counted if levels.counted >= 0 else None,
+        "counted": levels.counted,
         "accurate": levels.accurate,
         "from_eV": levels.from_eV,
         "to_eV": levels.to_eV,

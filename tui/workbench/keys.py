@@ -115,7 +115,8 @@ class KeysInTurn(App[Result], Generic[Result], inherit_bindings=False):
         event = self._typed[0]
         await super().on_event(event)
         # Twice: what a binding of the target does begins its own way once the first has ended.
-        await self._follow(event, 2 * list(target.ancestors_with_self))
+        way: list[MessagePump] = [*target.ancestors_with_self, *target.ancestors_with_self]
+        await self._follow(event, way)
 
     async def _follow(self, event: events.Event, way: list[MessagePump]) -> None:
         """Go the way that a key goes, behind it; where it ends the key has done what it does."""
