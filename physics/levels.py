@@ -44,8 +44,8 @@ GAP_ERROR_EV = 2e-13
 """Uncertainty of a distance between two levels that all but coincide, seen in trials."""
 LEVELS_AT_ONCE = 4_000_000
 """Matrix elements held at once while states are computed."""
-CONTOUR_WORK = 400_000_000
-"""Points of a contour times sectors from which the proof is given up."""
+CONTOUR_WORK = 200_000_000
+"""Points of a contour times sectors, some 10 s, from which the proof is given up."""
 WINDOW_LIMIT_EV = 200.0
 SAME_EV = 1e-13
 """Energies closer than this are one energy."""
