@@ -40,10 +40,11 @@ def spectrum_table(spectrum: Scattering) -> str:
 
 def spectrum_table_parts(parts: Iterable[Scattering]) -> Iterator[str]:
     """Write T and R over energy, part by part: the whole may be too much to hold."""
-    yield _csv(SPECTRUM, [])
+    header = _csv(SPECTRUM, [])
     for part in parts:
         columns = [getattr(part, name).tolist() for name in SPECTRUM]
-        yield _rows(zip(*columns, strict=True))
+        yield header + _rows(zip(*columns, strict=True))
+        header = ""
 
 
 def levels_table(levels: LevelSet) -> str:

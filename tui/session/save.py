@@ -11,17 +11,18 @@ from pathlib import Path
 from tui.session.refusal import SessionError
 
 
-def save(path: Path, text: str) -> None:
+def save(path: Path, text: str, *, files_only: bool = False) -> None:
     """Write a text to a file, all of it or nothing; see `save_parts`."""
-    save_parts(path, [text])
+    save_parts(path, [text], files_only=files_only)
 
 
-def save_parts(path: Path, parts: Iterable[str]) -> None:
+def save_parts(path: Path, parts: Iterable[str], *, files_only: bool = False) -> None:
     """Write a text, which comes in parts, to a file, all of it or nothing.
 
     The text goes to a temporary file in the same folder, is flushed to the disk, and takes the
     file's place in one step; a link is followed, the file's permissions and owner are kept. A
-    device or a pipe is written to and never replaced.
+    device or a pipe is written to and never replaced, or refused with ``files_only``: a pipe
+    would wait for its reader.
 
     Raises
     ------
@@ -34,8 +35,7 @@ def save_parts(path: Path, parts: Iterable[str]) -> None:
         if target.is_dir():
             raise IsADirectoryError(21, "it is a folder")
         if path.exists() and not path.is_file():
-            with path.open("wb") as file:
-                file.writelines(data)
+            _write_to_device(path, data, files_only=files_only)
         else:
             _replace(target, data)
     except UnicodeEncodeError as error:
@@ -45,6 +45,13 @@ def save_parts(path: Path, parts: Iterable[str]) -> None:
         reason = (getattr(error, "strerror", None) or str(error)).lower()
         allowed = f"{reason}; nothing was changed, save it under another name"
         raise SessionError("", "it cannot be written", allowed, source=str(path)) from error
+
+
+def _write_to_device(path: Path, data: Iterable[bytes], *, files_only: bool) -> None:
+    if files_only:
+        raise OSError(22, "it is no regular file")
+    with path.open("wb") as file:
+        file.writelines(data)
 
 
 def _replace(target: Path, data: Iterable[bytes]) -> None:
