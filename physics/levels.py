@@ -44,8 +44,8 @@ GAP_ERROR_EV = 2e-13
 """Uncertainty of a distance between two levels that all but coincide, seen in trials."""
 LEVELS_AT_ONCE = 4_000_000
 """Matrix elements held at once while states are computed."""
-CONTOUR_WORK = 400_000_000
-"""Points of a contour times sectors from which the proof is given up."""
+CONTOUR_WORK = 200_000_000
+"""Points of a contour times sectors, some 10 s, from which the proof is given up."""
 ABOVE_VALENCE_EV = 1e-6
 """Starting points are gathered no nearer to a valence band, where the mass falls to 0."""
 THRESHOLD_EV = 1e-11
@@ -94,7 +94,7 @@ class LevelSet:
     complete: bool
     """Whether the count was proved and met."""
     counted: int
-    """Levels in the window by the count; -1 where it could not be done."""
+    """Levels in the window by the count; those that were found where it could not be proved."""
     from_eV: float
     to_eV: float
     max_width_eV: float
@@ -149,9 +149,8 @@ def find_levels(
         counted += len(found) + strip.missing
         complete = complete and strip.proved
     levels.sort(key=lambda level: level.energy_eV)
-    return LevelSet(
-        tuple(levels), complete, counted if complete else -1, from_eV, to_eV, max_width_eV
-    )
+    counted = counted if complete else len(levels)
+    return LevelSet(tuple(levels), complete, counted, from_eV, to_eV, max_width_eV)
 
 
 def follow_levels(profile: Profile, before: LevelSet) -> LevelSet:

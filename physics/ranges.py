@@ -21,7 +21,8 @@ class Range:
         return (self.low < value if self.open_below else self.low <= value) and value <= self.high
 
 
-THICKNESS_NM = Range(0.0, 1e5, "a thickness is above 0 and at most 1e5 nm", open_below=True)
+THICKNESS_NM = Range(1e-6, 1e5, "a thickness lies between 1e-6 and 1e5 nm")
+"""A thinner layer drowns in the rounding of a double: a level of it would be a guess."""
 EDGE_EV = Range(-100.0, 100.0, "a band edge lies between -100 and 100 eV")
 MASS = Range(1e-4, 100.0, "a mass lies between 1e-4 and 100 m0")
 FERMI_EV = Range(-100.0, 100.0, "a Fermi energy lies between -100 and 100 eV")

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable
+from collections.abc import Callable, Iterator
 from dataclasses import dataclass, replace
 from functools import cached_property
 
@@ -15,7 +15,7 @@ from physics.errors import EnergyError
 from physics.field import Profile, go_on, uniform_field, valence_top
 from physics.levels import LevelSet, find_levels
 from physics.poisson import screened_field
-from physics.scattering import Scattering, scatter
+from physics.scattering import ENERGIES_AT_ONCE, Scattering, scatter
 from physics.screening import ScreeningReport
 from physics.spectrum import adaptive_spectrum
 from physics.structure import Structure
@@ -152,6 +152,12 @@ def scatter_scene(scene: Scene, energy_eV: NDArray[np.float64]) -> Scattering:
         reflection=lost.reflection,
         log10_transmission=lost.log10_transmission,
     )
+
+
+def scatter_scene_in_parts(scene: Scene, energy_eV: NDArray[np.float64]) -> Iterator[Scattering]:
+    """As `scatter_scene`, a part of the energies at a time."""
+    for first in range(0, energy_eV.size, ENERGIES_AT_ONCE):
+        yield scatter_scene(scene, energy_eV[first : first + ENERGIES_AT_ONCE])
 
 
 def _field(

@@ -12,9 +12,10 @@ from hypothesis import strategies as st
 
 from physics.constants import HBAR2_OVER_2M0_EV_NM2 as C
 from physics.constants import HBAR_EV_S
-from physics.errors import EnergyError
+from physics.errors import EnergyError, StructureError
 from physics.field import uniform_field
 from physics.levels import find_levels, follow_levels
+from physics.ranges import THICKNESS_NM
 from physics.scattering import scatter
 from physics.structure import Structure
 from reference import integrated, many_digits
@@ -190,6 +191,17 @@ def test_count_of_a_superlattice_band() -> None:
     assert found.complete
     assert found.counted == len(found.levels) == 30
     assert [level.nodes for level in found.levels] == list(range(30))
+
+
+def test_the_thinnest_layer_that_is_taken() -> None:
+    """A well far thinner than its wave binds at (V d)^2 m / 4c, as a delta function does."""
+    thickness_nm, edge_eV, mass = THICKNESS_NM.low, -0.3, 0.067
+    profile = uniform_field(stack([(thickness_nm, edge_eV, mass)]))
+    (level,) = find_levels(profile, -0.3, 0.3).levels
+    binding_eV = (edge_eV * thickness_nm) ** 2 * mass / (4.0 * C)
+    assert level.energy_eV == pytest.approx(-binding_eV, rel=1e-3)
+    with pytest.raises(StructureError, match="1e-6"):
+        stack([(0.5 * thickness_nm, edge_eV, mass)])
 
 
 def test_no_barrier_no_level() -> None:

@@ -103,8 +103,8 @@ BAD = [
     ("bias_V = 0.1", 'charge = "none"', "conditions charge", 6, '"semi-classical" or "quantum"'),
     ("mass = 0.067\n\n[[", "\n\n[[", "left", 8, "edge_eV with mass"),
     ("mass = 0.092\nthickness_nm = 2\n", "mass = 0\nthickness_nm = 2\n", "layer 1 mass", 15, "m0"),
-    ("thickness_nm = 2\n", "thickness_nm = 0\n", "layer 1 thickness_nm", 16, "above 0"),
-    ("thickness_nm = 2\n", "thickness_nm = -1\n", "layer 1 thickness_nm", 16, "above 0"),
+    ("thickness_nm = 2\n", "thickness_nm = 0\n", "layer 1 thickness_nm", 16, "1e-6"),
+    ("thickness_nm = 2\n", "thickness_nm = -1\n", "layer 1 thickness_nm", 16, "1e-6"),
     (
         "thickness_nm = 2\n",
         "thickness = 2\n",

@@ -8,7 +8,7 @@ from __future__ import annotations
 import csv
 import io
 import math
-from collections.abc import Iterable, Sequence
+from collections.abc import Iterable, Iterator, Sequence
 
 from physics.levels import LevelSet
 from physics.scattering import Scattering
@@ -35,8 +35,16 @@ PROFILE = ("x_nm", "edge_eV", "density_per_nm")
 
 def spectrum_table(spectrum: Scattering) -> str:
     """Write T and R over energy."""
-    columns = [getattr(spectrum, name).tolist() for name in SPECTRUM]
-    return csv_text(SPECTRUM, zip(*columns, strict=True))
+    return "".join(spectrum_table_parts([spectrum]))
+
+
+def spectrum_table_parts(parts: Iterable[Scattering]) -> Iterator[str]:
+    """Write T and R over energy, part by part: the whole may be too much to hold."""
+    header = csv_text(SPECTRUM, [])
+    for part in parts:
+        columns = [getattr(part, name).tolist() for name in SPECTRUM]
+        yield header + _rows(zip(*columns, strict=True))
+        header = ""
 
 
 def levels_table(levels: LevelSet) -> str:
@@ -63,9 +71,12 @@ def main_layer(share_by_layer: Sequence[float]) -> tuple[int, float]:
 
 def csv_text(header: Sequence[str], rows: Iterable[Sequence[object]]) -> str:
     """Write a table with its header."""
+    return _rows([header]) + _rows(rows)
+
+
+def _rows(rows: Iterable[Sequence[object]]) -> str:
     text = io.StringIO()
     writer = csv.writer(text, lineterminator="\n")
-    writer.writerow(header)
     writer.writerows([_cell(value) for value in row] for row in rows)
     return text.getvalue()
 
