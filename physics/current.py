@@ -51,7 +51,7 @@ MOST_PANELS = 4000
 """Panels of one member at which halving is given up."""
 DEPTH_EV = 0.06
 """Levels broader than twice this make no feature that plain panels would not resolve."""
-FAR_KT, OVER_KT = 100.0, 32.0
+FAR_KT, OVER_KT = 100.0, 20.0
 """Range above the Fermi energies in kT, and above the highest edge, where T is of order 1."""
 ROUNDING = 1e-16
 """Relative rounding of an energy: by so much the distance from a level is off."""

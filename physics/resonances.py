@@ -37,6 +37,8 @@ START_EV = 1e-6
 START_GAP_EV = 1e-8
 """Starts in one bracket are set apart by this, lest they move as one."""
 MOST_STEPS = 12
+PATIENT_START_EV, PATIENT_STEPS = 1e-10, 60
+"""The same for a member that is tried again by itself."""
 SETTLED_EV = 1e-13
 """Step below which a pole is settled; the step after it is far below rounding."""
 LONGEST_STEP_EV = 0.05
@@ -89,6 +91,12 @@ def find_resonances(
     for n, sure in enumerate(fast.sure.tolist()):
         if sure:
             rows.append(_row(fast.pole_eV[n], fast.mark_eV[n]))
+            continue
+        one = slice(n, n + 1)
+        alone = family.rows(np.array([n])), sectors.rows(np.array([n])), low_eV[one], high_eV[one]
+        again = fast_poles(*alone, depth_eV, is_patient=True)
+        if again.sure.all():
+            rows.append(_row(again.pole_eV[0], again.mark_eV[0]))
             continue
         found = find_levels(family.members[n], float(low_eV[n]), float(high_eV[n]), 2.0 * depth_eV)
         poles = [complex(level.energy_eV, -0.5 * level.width_eV) for level in found.levels]
@@ -161,14 +169,21 @@ def fast_poles(
     low_eV: FloatArray,
     high_eV: FloatArray,
     depth_eV: float,
+    *,
+    is_patient: bool = False,
 ) -> FastPoles:
     """Find poles without a proof; see `find_resonances`."""
-    closed = _closed_energies(family, sectors, low_eV, high_eV)
-    pole, settled = _polished(family, sectors, closed, depth_eV)
+    start, steps = (PATIENT_START_EV, PATIENT_STEPS) if is_patient else (START_EV, MOST_STEPS)
+    core = sectors.some(_between_walls(family, sectors, low_eV))
+    if core.count == 0:
+        nothing = np.full((low_eV.size, 0), np.nan)
+        return FastPoles(nothing + 0j, nothing, np.ones(low_eV.size, dtype=bool))
+    closed = _closed_energies(family, core, low_eV, high_eV, start)
+    pole, settled = _polished(family, sectors, closed, depth_eV, steps)
     pole = np.where(settled, pole, complex(np.nan, np.nan))
     bare = _unaccounted_for(closed, pole)
-    marked = _still_there(family, sectors, np.where(bare, closed, np.nan), NEAR_EV)
-    missed = _still_there(family, sectors, np.where(marked, closed, np.nan), NARROW_FROM_EV)
+    marked = _still_there(family, core, np.where(bare, closed, np.nan), NEAR_EV)
+    missed = _still_there(family, core, np.where(marked, closed, np.nan), NARROW_FROM_EV)
     inside = (pole.real >= low_eV[:, None]) & (pole.real <= high_eV[:, None])
     return FastPoles(
         np.where(inside, pole, complex(np.nan, np.nan)),
@@ -177,8 +192,28 @@ def fast_poles(
     )
 
 
+def _between_walls(family: Family, sectors: FamilySectors, low_eV: FloatArray) -> NDArray[np.bool_]:
+    """Say which sectors lie between the outermost ones that forbid the lowest energy, shape (S,).
+
+    What lies outside is open to its contact all the way at any energy of the window: a state there
+    leaves as fast as it came. The closed stack's walls stand where it begins.
+    """
+    forbids = np.zeros(family.members[0].thickness_nm.size, dtype=bool)
+    for member, low in zip(family.members, low_eV.tolist(), strict=True):
+        forbids |= np.maximum(member.edge_left_eV, member.edge_right_eV) > low + SETTLED_EV
+    where = np.flatnonzero(forbids[sectors.piece_index])
+    inside = np.zeros(sectors.count, dtype=bool)
+    if where.size:
+        inside[where[0] : where[-1] + 1] = True
+    return inside
+
+
 def _closed_energies(
-    family: Family, sectors: FamilySectors, low_eV: FloatArray, high_eV: FloatArray
+    family: Family,
+    sectors: FamilySectors,
+    low_eV: FloatArray,
+    high_eV: FloatArray,
+    start_eV: float,
 ) -> FloatArray:
     """Energies of the closed stacks' states in the windows, shape (B, R), filled up with nan."""
     ends = states_below(family, sectors, OPEN, np.stack([low_eV, high_eV], axis=1))
@@ -187,7 +222,7 @@ def _closed_energies(
     lower = np.broadcast_to(low_eV[:, None], rank.shape)
     upper = np.broadcast_to(high_eV[:, None], rank.shape)
     share = np.linspace(0.0, 1.0, TRIALS + 1)
-    while rank.size and float((upper - lower).max()) > START_EV:
+    while rank.size and float((upper - lower).max()) > start_eV:
         trial = lower[..., None] + (upper - lower)[..., None] * share  # (B, R, T)
         inner = trial[..., 1:-1].reshape(rank.shape[0], -1)
         count = states_below(family, sectors, OPEN, inner).reshape(*rank.shape, -1)
@@ -199,7 +234,11 @@ def _closed_energies(
 
 
 def _polished(
-    family: Family, sectors: FamilySectors, start_eV: FloatArray, depth_eV: float
+    family: Family,
+    sectors: FamilySectors,
+    start_eV: FloatArray,
+    depth_eV: float,
+    most_steps: int,
 ) -> tuple[ComplexArray, NDArray[np.bool_]]:
     """Aberth's iteration (Math. Comp. 27, 339 (1973)) from given starts, all members at once."""
     there = np.isfinite(start_eV)
@@ -207,7 +246,7 @@ def _polished(
     pole = np.where(there, start_eV + apart, sectors.centre_eV) + 0j
     low, high = (sectors.centre_eV + sign * sectors.reach_eV for sign in (-1.0, 1.0))
     moving, settled = there.copy(), np.zeros_like(there)
-    for _ in range(MOST_STEPS):
+    for _ in range(most_steps):
         rows = np.flatnonzero(moving.any(axis=1))
         if rows.size == 0:
             break
