@@ -38,6 +38,7 @@ from physics.resonances import Resonances, find_resonances
 from physics.scattering import log_transmission_through
 from physics.spectrum import NEAR_EV
 from physics.supply import supply_eV
+from physics.windows import lowest_allowed_eV
 
 FloatArray = NDArray[np.float64]
 IndexArray = NDArray[np.int64]
@@ -96,25 +97,15 @@ def tsu_esaki(
     """
     kT = BOLTZMANN_EV_PER_K * temperature_K
     low, high = _window(family, np.maximum(mu_left_eV, mu_right_eV), kT)
-    sectors = cut_family(family, low, high, depth_eV=max(DEPTH_EV, 0.5 * dephasing.width_eV))
+    # Below the range too: a broad level's closed state may lie there.
+    below = np.maximum(low - DEPTH_EV, [lowest_allowed_eV(member) for member in family.members])
+    sectors = cut_family(family, below, high, depth_eV=max(DEPTH_EV, 0.5 * dephasing.width_eV))
     top = np.minimum(high, [member.highest_eV + DEPTH_EV for member in family.members])
     levels = find_resonances(
         family, sectors, low, np.maximum(top, low + kT), DEPTH_EV, dephasing=dephasing
     )
     fermi = np.stack([mu_left_eV, mu_right_eV], axis=1)
-    panels = joined(
-        [
-            energy_panels(
-                n,
-                (float(low[n]), float(high[n])),
-                fermi_eV=fermi[n],
-                kT_eV=kT,
-                level_eV=levels.energy_eV[n],
-                width_eV=levels.total_width_eV[n],
-            )
-            for n in range(low.size)
-        ]
-    )
+    panels = _panels(levels, (low, high), fermi, kT)
 
     def transmission(rows: IndexArray, energy_eV: FloatArray) -> FloatArray:
         some = family.rows(rows), sectors.rows(rows)
@@ -149,6 +140,25 @@ def _window(family: Family, mu_eV: FloatArray, kT: float) -> tuple[FloatArray, F
     above = np.maximum(mu_eV, low)
     high = np.minimum(above + FAR_KT * kT, np.maximum(above, highest) + OVER_KT * kT)
     return low, high
+
+
+def _panels(
+    levels: Resonances, window_eV: tuple[FloatArray, FloatArray], fermi_eV: FloatArray, kT: float
+) -> Panels:
+    """Cut all members' energies."""
+    return joined(
+        [
+            energy_panels(
+                n,
+                (float(window_eV[0][n]), float(window_eV[1][n])),
+                fermi_eV=fermi_eV[n],
+                kT_eV=kT,
+                level_eV=levels.energy_eV[n],
+                width_eV=levels.total_width_eV[n],
+            )
+            for n in range(fermi_eV.shape[0])
+        ]
+    )
 
 
 def _by_rows(transmission: Transmission, owner: IndexArray, energy_eV: FloatArray) -> FloatArray:

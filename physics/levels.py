@@ -18,12 +18,12 @@ import numpy as np
 from numpy.typing import NDArray
 
 from physics.constants import HBAR_EV_S
-from physics.field import Profile, valence_top, without_runways
+from physics.field import Profile, without_runways
 from physics.leaving import STOPS, Leaving, leaving_states
 from physics.outgoing import Sheet, closed_stack_energies, mismatch
 from physics.rootfinding import MOST_POINTS, Rectangle, distinct, polish, zeros_in
 from physics.sectors import Sectors, cut
-from physics.windows import SAME_EV, check_window, strips
+from physics.windows import SAME_EV, check_window, lowest_allowed_eV, strips
 
 ComplexArray = NDArray[np.complex128]
 FloatArray = NDArray[np.float64]
@@ -46,8 +46,6 @@ LEVELS_AT_ONCE = 4_000_000
 """Matrix elements held at once while states are computed."""
 CONTOUR_WORK = 200_000_000
 """Points of a contour times sectors, some 10 s, from which the proof is given up."""
-ABOVE_VALENCE_EV = 1e-6
-"""Starting points are gathered no nearer to a valence band, where the mass falls to 0."""
 THRESHOLD_EV = 1e-11
 """The contour stays this far from the ends of a strip, where a contact's edge may branch."""
 HEIGHT = 1.0377
@@ -202,7 +200,7 @@ def _find_poles(profile: Profile, low: float, high: float, max_width_eV: float) 
     depth = 0.5 * max_width_eV * (1.0 + 1e-9)
     height = HEIGHT * max(depth, 0.1 * (high - low))
     margin = MARGIN * (high - low)
-    floor = min(low, valence_top(profile)[0] + ABOVE_VALENCE_EV)
+    floor = min(low, lowest_allowed_eV(profile))
     wide = (max(low - margin, floor), high + margin)
     sectors = cut(profile, *wide, depth_eV=max(depth, height))
     starts = closed_stack_energies(profile, sectors, sheet, wide, COARSE)

@@ -17,21 +17,20 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
+from physics.closed import OPEN, between_walls, closed_family_energies, still_there
 from physics.dephasing import COHERENT, Dephasing
 from physics.family import Family, FamilySectors
 from physics.field import Profile
 from physics.leaving import STOPS, leaving_states
 from physics.levels import find_levels
-from physics.outgoing import Sheet, mismatch, states_below
+from physics.outgoing import mismatch
 from physics.sectors import cut
 from physics.spectrum import APART_EV, NARROW_EV
+from physics.windows import lowest_allowed_eV
 
 ComplexArray = NDArray[np.complex128]
 FloatArray = NDArray[np.float64]
 
-OPEN = Sheet(left_open=True, right_open=True)
-TRIALS = 8
-"""Parts that a bracket is cut into at once: with many members few cost less than many."""
 START_EV = 1e-6
 """Width of the brackets that start the iteration."""
 START_GAP_EV = 1e-8
@@ -46,8 +45,6 @@ NEAR_WIDTHS, NEAR_EV = 3.0, 2e-4
 """A closed state is accounted for by a pole within so many widths of it, or this distance."""
 NARROW_FROM_EV = 4e-6
 """Distance within which a state behind either wall is a narrow level that was missed."""
-OTHER_WALL_EV_NM = 1e3
-"""A wall all but impenetrable, against one that lets the wave stand free."""
 
 
 @dataclass(frozen=True, eq=False)
@@ -174,63 +171,25 @@ def fast_poles(
 ) -> FastPoles:
     """Find poles without a proof; see `find_resonances`."""
     start, steps = (PATIENT_START_EV, PATIENT_STEPS) if is_patient else (START_EV, MOST_STEPS)
-    core = sectors.some(_between_walls(family, sectors, low_eV))
+    core = sectors.some(between_walls(family, sectors, low_eV))
     if core.count == 0:
         nothing = np.full((low_eV.size, 0), np.nan)
         return FastPoles(nothing + 0j, nothing, np.ones(low_eV.size, dtype=bool))
-    closed = _closed_energies(family, core, low_eV, high_eV, start)
+    # Below the window too: behind a wall a broad level lies lower than its pole.
+    allowed = [lowest_allowed_eV(member) for member in family.members]
+    below = np.maximum(low_eV - depth_eV, np.minimum(low_eV, allowed))
+    closed = closed_family_energies(family, core, below, high_eV, start)
     pole, settled = _polished(family, sectors, closed, depth_eV, steps)
     pole = np.where(settled, pole, complex(np.nan, np.nan))
     bare = _unaccounted_for(closed, pole)
-    marked = _still_there(family, core, np.where(bare, closed, np.nan), NEAR_EV)
-    missed = _still_there(family, core, np.where(marked, closed, np.nan), NARROW_FROM_EV)
+    marked = still_there(family, core, np.where(bare, closed, np.nan), NEAR_EV)
+    missed = still_there(family, core, np.where(marked, closed, np.nan), NARROW_FROM_EV)
     inside = (pole.real >= low_eV[:, None]) & (pole.real <= high_eV[:, None])
     return FastPoles(
         np.where(inside, pole, complex(np.nan, np.nan)),
         np.where(marked, closed, np.nan),
         ~missed.any(axis=1) & ~_coincide(pole),
     )
-
-
-def _between_walls(family: Family, sectors: FamilySectors, low_eV: FloatArray) -> NDArray[np.bool_]:
-    """Say which sectors lie between the outermost ones that forbid the lowest energy, shape (S,).
-
-    What lies outside is open to its contact all the way at any energy of the window: a state there
-    leaves as fast as it came. The closed stack's walls stand where it begins.
-    """
-    forbids = np.zeros(family.members[0].thickness_nm.size, dtype=bool)
-    for member, low in zip(family.members, low_eV.tolist(), strict=True):
-        forbids |= np.maximum(member.edge_left_eV, member.edge_right_eV) > low + SETTLED_EV
-    where = np.flatnonzero(forbids[sectors.piece_index])
-    inside = np.zeros(sectors.count, dtype=bool)
-    if where.size:
-        inside[where[0] : where[-1] + 1] = True
-    return inside
-
-
-def _closed_energies(
-    family: Family,
-    sectors: FamilySectors,
-    low_eV: FloatArray,
-    high_eV: FloatArray,
-    start_eV: float,
-) -> FloatArray:
-    """Energies of the closed stacks' states in the windows, shape (B, R), filled up with nan."""
-    ends = states_below(family, sectors, OPEN, np.stack([low_eV, high_eV], axis=1))
-    number = ends[:, 1] - ends[:, 0]
-    rank = ends[:, :1] + np.arange(int(number.max()))  # (B, R)
-    lower = np.broadcast_to(low_eV[:, None], rank.shape)
-    upper = np.broadcast_to(high_eV[:, None], rank.shape)
-    share = np.linspace(0.0, 1.0, TRIALS + 1)
-    while rank.size and float((upper - lower).max()) > start_eV:
-        trial = lower[..., None] + (upper - lower)[..., None] * share  # (B, R, T)
-        inner = trial[..., 1:-1].reshape(rank.shape[0], -1)
-        count = states_below(family, sectors, OPEN, inner).reshape(*rank.shape, -1)
-        passed = (count <= rank[..., None]).sum(axis=-1)[..., None]
-        lower = np.take_along_axis(trial, passed, axis=-1)[..., 0]
-        upper = np.take_along_axis(trial, passed + 1, axis=-1)[..., 0]
-    there = np.arange(rank.shape[1]) < number[:, None]
-    return np.where(there, 0.5 * (lower + upper), np.nan)
 
 
 def _polished(
@@ -284,17 +243,3 @@ def _unaccounted_for(closed_eV: FloatArray, pole_eV: ComplexArray) -> NDArray[np
     distance = np.abs(closed_eV[:, :, None] - pole_eV.real[:, None, :])
     reach = np.maximum(-2.0 * NEAR_WIDTHS * pole_eV.imag, NEAR_EV)[:, None, :]
     return np.asarray(np.isfinite(closed_eV) & ~np.any(distance <= reach, axis=2))
-
-
-def _still_there(
-    family: Family, sectors: FamilySectors, closed_eV: FloatArray, reach_eV: float
-) -> NDArray[np.bool_]:
-    """Say which closed states are within reach of their place behind another wall, too."""
-    asked = np.isfinite(closed_eV)
-    if not asked.any():
-        return asked
-    middle = np.where(asked, closed_eV, sectors.centre_eV)
-    ends = np.concatenate([middle - reach_eV, middle + reach_eV], axis=1)
-    count = states_below(family, sectors, OPEN, ends, OTHER_WALL_EV_NM)
-    jump = count[:, middle.shape[1] :] - count[:, : middle.shape[1]]
-    return np.asarray(asked & (jump > 0))

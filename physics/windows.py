@@ -5,11 +5,15 @@ from __future__ import annotations
 import itertools
 
 from physics.errors import EnergyError
-from physics.field import Profile
+from physics.field import Profile, valence_top
 
 WINDOW_LIMIT_EV = 200.0
 SAME_EV = 1e-13
 """Energies closer than this are one energy."""
+
+
+ABOVE_VALENCE_EV = 1e-6
+"""Nothing is computed nearer to a valence band, where the mass falls to 0."""
 
 
 def check_window(from_eV: float, to_eV: float, max_width_eV: float) -> None:
@@ -20,6 +24,11 @@ def check_window(from_eV: float, to_eV: float, max_width_eV: float) -> None:
         raise EnergyError(f"the window from {from_eV:g} to {to_eV:g} eV is empty")
     if not 0.0 < max_width_eV <= WINDOW_LIMIT_EV:
         raise EnergyError(f"the largest width is {max_width_eV:g} eV; it has to be above 0")
+
+
+def lowest_allowed_eV(profile: Profile) -> float:
+    """Give the energy just above all valence bands, -inf where every mass is parabolic."""
+    return valence_top(profile)[0] + ABOVE_VALENCE_EV
 
 
 def strips(profile: Profile, from_eV: float, to_eV: float) -> list[tuple[float, float]]:
