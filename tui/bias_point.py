@@ -36,7 +36,7 @@ class BiasPoint:
 def point_at(session: Session, bias_V: float, watch: Callable[[], None] = go_on) -> BiasPoint:
     """Compute what is at a bias."""
     drive = drive_of(session, resolve(session), watch)
-    curve = curve_at(drive, bias_V + APART_V * np.arange(-2, 3))
+    curve = curve_at(drive, bias_V + APART_V * np.arange(-2.0, 3.0))
     slope = slopes(curve.bias_V, curve.current_density_A_per_cm2)
     return _point(curve, 2, bias_V, float(slope[2]), is_exact=True)
 

@@ -56,6 +56,11 @@ class Feature:
     bias_V: float
     current_density_A_per_cm2: float
 
+    @property
+    def said(self) -> str:
+        """What it is, in words."""
+        return f"{'peak' if self.name[0] == 'P' else 'valley'} {self.name}"
+
 
 @dataclass(frozen=True, eq=False)
 class CurrentBase:
@@ -119,8 +124,7 @@ def current_base(scene: Scene, width: int, height: int, glyphs: Glyphs) -> Curre
     room = width - LABEL_WIDTH - 1 - right
     base = CurrentBase(scene, cells, glyphs, limits, scale, rows, room, branches)
     curves = [
-        _line(base, item.curve, role)
-        for item, role in zip(scene.overlays, OVERLAYS, strict=False)
+        _line(base, item.curve, role) for item, role in zip(scene.overlays, OVERLAYS, strict=False)
     ]
     curves.append(_line(base, scene.sweep.curve, "curve"))
     cells.paste(draw(curves, limits, room, rows, glyphs), 0, LABEL_WIDTH + 1)
@@ -184,7 +188,9 @@ def _heights(
         return current_A_per_cm2 / scale
     size = np.abs(current_A_per_cm2)
     bottom = np.full(size.shape, limits.bottom)
-    return np.maximum(np.log10(size, out=bottom.copy(), where=size > 0.0), bottom)
+    decades = np.log10(size, out=bottom.copy(), where=size > 0.0)
+    heights: FloatArray = np.maximum(decades, bottom)
+    return heights
 
 
 def _line(base: CurrentBase, curve: CurrentCurve, role: Role) -> Curve:
@@ -218,7 +224,7 @@ def _features(base: CurrentBase) -> None:
         column = base.column_of(feature.bias_V)
         row = base.row_of(feature.current_density_A_per_cm2)
         outward = (feature.name[0] == "P") == (feature.current_density_A_per_cm2 >= 0.0)
-        first = -1 if outward or base.scene.is_log and feature.name[0] == "P" else 1
+        first = -1 if outward or (base.scene.is_log and feature.name[0] == "P") else 1
         left, wide = column - len(feature.name) // 2, len(feature.name)
         places = [(row + first, left), (row, column + 2), (row, column - 1 - wide)]
         places += [(row - first, left), (row + 2 * first, left)]

@@ -47,7 +47,7 @@ def level_lines(study: Study, reading: Reading | None, height: int) -> list[Styl
     return lines + [[(text[number], "cursor" if number == here else "")] for number in seen]
 
 
-def answer_state(study: Study | None, trouble: str, waited_s: float) -> str:
+def standing(study: Study | None, trouble: str, waited_s: float) -> str:
     """Say how the answer that is shown stands, in a few words.
 
     Parameters
