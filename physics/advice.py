@@ -11,15 +11,16 @@ from dataclasses import dataclass
 import numpy as np
 
 from physics.constants import BOLTZMANN_EV_PER_K
+from physics.dephasing import COHERENT, Dephasing
 from physics.field import ASSUMED_PERMITTIVITY, Profile
 from physics.levels import LevelSet
 from physics.scattering import Scattering
+from physics.screening import ScreeningReport
+from physics.strain_notes import strain_notes
 from physics.structure import Layer, Structure
 
 THIN_MONOLAYERS = 2.0
 """Below this an effective mass and a sharp edge mean little (common practice)."""
-STRAINED = 1e-3
-"""Mismatch to the substrate from which a layer is called strained."""
 FLUX_TOLERANCE = 1e-10
 """Largest |T + R - 1| that is put down to rounding."""
 MOST_WRITTEN_OUT = 4
@@ -39,7 +40,7 @@ class Advice:
 
     topic: str
     """One of: side valley, thin layer, strain, coherence, flux, permittivity, proof,
-    accuracy."""
+    accuracy, screening."""
     text: str
     layer: int | None = None
     """Number of the layer it speaks of, counted from 1; None where it is about the whole."""
@@ -51,6 +52,9 @@ def advise(
     temperature_K: float,
     levels: LevelSet,
     spectrum: Scattering,
+    *,
+    dephasing: Dephasing = COHERENT,
+    screening: ScreeningReport | None = None,
 ) -> tuple[Advice, ...]:
     """Collect the notes on one answer.
 
@@ -64,16 +68,22 @@ def advise(
         Lattice and carrier temperature.
     levels, spectrum
         The answer.
+    dephasing : Dephasing
+        How coherence was lost in it.
+    screening : ScreeningReport, optional
+        How the field was solved, where it is the screened one.
     """
+    stated = dephasing.width_eV > 0.0
     notes = [
+        *_screening(screening),
         *_proof(levels),
         *_pairs(levels),
         *_flux(spectrum),
         *_side_valleys(structure, profile, levels, float(spectrum.energy_eV.max())),
         *_thin(structure),
         *_strain(structure),
-        *_coherence(levels, temperature_K),
-        *_permittivity(structure, profile),
+        *(_lost(levels, dephasing) if stated else _coherence(levels, temperature_K)),
+        *_permittivity(structure, profile, screened=screening is not None),
     ]
     return tuple(notes)
 
@@ -83,6 +93,18 @@ def scattering_width_eV(temperature_K: float) -> float:
     ratio = PHONON_EV / (BOLTZMANN_EV_PER_K * temperature_K)
     phonons = math.exp(-ratio) / -math.expm1(-ratio)  # Bose's number, without overflow when cold
     return SCATTERING_AT_0K_EV + PHONON_COUPLING_EV * phonons
+
+
+def _screening(report: ScreeningReport | None) -> list[Advice]:
+    if report is None:
+        return []
+    state = (
+        f"residual {report.residual:.0e}, neutral to {report.neutrality:.0e}, edge good to "
+        f"{1e3 * report.mesh_error_eV:.2g} meV"
+    )
+    if not report.converged:
+        state = f"NOT CONVERGED, trust no number below: {report.reason}"
+    return [Advice("screening", f"{report.model}; {state}")]
 
 
 def _proof(levels: LevelSet) -> list[Advice]:
@@ -140,10 +162,13 @@ def _side_valleys(
 
 def _lowered_eV(layer: Layer, profile: Profile, index: int) -> float:
     """How far the field lowers a layer, at the face where it does so most."""
-    pieces = profile.layer_index == index
-    left = layer.edge_eV - float(profile.edge_left_eV[pieces][0])
-    right = layer.right_edge_eV - float(profile.edge_right_eV[pieces][-1])
-    return max(left, right)
+    pieces = profile.layer_pieces(index)
+    face = profile.position_nm[pieces.start : pieces.stop + 1]
+    share = (face - face[0]) / (face[-1] - face[0])
+    edge = layer.edge_eV * (1.0 - share) + layer.right_edge_eV * share
+    left = edge[:-1] - profile.edge_left_eV[pieces]
+    right = edge[1:] - profile.edge_right_eV[pieces]
+    return float(max(left.max(), right.max()))
 
 
 def _side_valley_text(valley: str, name: str, edge_eV: float, number: int, levels: LevelSet) -> str:
@@ -169,22 +194,7 @@ def _thin(structure: Structure) -> list[Advice]:
 
 
 def _strain(structure: Structure) -> list[Advice]:
-    substrate = structure.left.lattice_nm
-    if substrate is None:
-        return []
-    notes: dict[str, Advice] = {}
-    for number, layer in enumerate(structure.layers, start=1):
-        if layer.lattice_nm is None:
-            continue
-        mismatch = layer.lattice_nm / substrate - 1.0
-        if abs(mismatch) >= STRAINED:
-            sense = "compressed" if mismatch > 0.0 else "stretched"
-            text = (
-                f"layer {number} ({layer.name}) is {sense} by {100 * abs(mismatch):.2f} % on the "
-                "left contact's lattice; its edge is the unstrained one"
-            )
-            notes.setdefault(layer.name, Advice("strain", text, number))
-    return list(notes.values())
+    return [Advice("strain", text, number) for text, number in strain_notes(structure)]
 
 
 def _coherence(levels: LevelSet, temperature_K: float) -> list[Advice]:
@@ -203,6 +213,32 @@ def _coherence(levels: LevelSet, temperature_K: float) -> list[Advice]:
     return [Advice("coherence", text)]
 
 
+def _lost(levels: LevelSet, dephasing: Dephasing) -> list[Advice]:
+    """Say what a stated dephasing width does to the narrowest level, or why it does nothing."""
+    if not dephasing.acts:
+        text = "no layer lies between two higher ones, so no coherence is lost: T is coherent"
+        return [Advice("coherence", text)]
+    pairs = enumerate(levels.levels, start=1)
+    lines = [(level, n) for n, level in pairs if level.peak_transmission > 0.0]
+    if not lines:
+        return []
+    level, number = min(lines, key=lambda pair: pair[0].log10_width_eV)
+    gained = dephasing.of_level_eV(level.share_by_layer)
+    total = level.width_eV + gained
+    fall = (math.log10(total) if total > 0.0 else level.log10_width_eV) - level.log10_width_eV
+    text = (
+        f"T counts {1e3 * dephasing.width_eV:.3g} meV of lost coherence in wells: level {number}, "
+        f"the narrowest, is {1e3 * total:.3g} meV wide in all, its peak lower by a factor of "
+        f"{_factor(fall)}; levels, phases and dwell times are those of the coherent wave"
+    )
+    return [Advice("coherence", text)]
+
+
+def _factor(decades: float) -> str:
+    """Write a factor, however large."""
+    return f"{10.0**decades:.3g}" if decades < 300.0 else f"1e{decades:.0f}"
+
+
 def _numbers(numbers: list[int]) -> str:
     """Write a few numbers out, many as a range."""
     if len(numbers) <= MOST_WRITTEN_OUT:
@@ -210,12 +246,16 @@ def _numbers(numbers: list[int]) -> str:
     return f"{numbers[0]} to {numbers[-1]} ({len(numbers)} of them)"
 
 
-def _permittivity(structure: Structure, profile: Profile) -> list[Advice]:
-    dropped = profile.contact_edge_eV[1] != structure.right.edge_eV
+def _permittivity(structure: Structure, profile: Profile, *, screened: bool) -> list[Advice]:
+    dropped = screened or profile.contact_edge_eV[1] != structure.right.edge_eV
     stated = {layer.permittivity for layer in structure.layers}
+    if screened:
+        stated |= {structure.left.permittivity, structure.right.permittivity}
     if not dropped or None not in stated or stated <= {None, ASSUMED_PERMITTIVITY}:
         return []
     text = (
         f"layers that state no permittivity share the field as if it were {ASSUMED_PERMITTIVITY:g}"
     )
+    if screened:
+        text = f"what states no permittivity is taken to have {ASSUMED_PERMITTIVITY:g}"
     return [Advice("permittivity", text)]

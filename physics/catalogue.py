@@ -67,6 +67,16 @@ class Binary:
     lattice_nm: Value
     """At 300 K."""
     lattice_slope_nm_per_K: Value
+    c11_GPa: Value
+    """Elastic constants, with `c12_GPa` and `c44_GPa`."""
+    c12_GPa: Value
+    c44_GPa: Value
+    a_c_eV: Value
+    """Hydrostatic deformation potential of the conduction edge at Gamma."""
+    a_v_eV: Value
+    """The same of the valence edge; negative where it falls under compression (`strain`)."""
+    b_eV: Value
+    """Shear deformation potential of the valence band."""
 
 
 QUANTITIES = tuple(field.name for field in fields(Binary))
@@ -151,6 +161,7 @@ def gap_eV(gap: Gap, temperature_K: float) -> float:
     return gap.zero_K_eV + gap.strength * (1.0 - 1.0 / math.tanh(gap.scale_K / temperature_K))
 
 
+_GAPS = ("gamma_gap_eV", "x_gap_eV", "l_gap_eV")
 _GAP_KEYS = {
     "varshni": {"law", "zero_K", "alpha_meV_per_K", "beta_K", "source"},
     "linear": {"law", "zero_K", "alpha_meV_per_K", "source"},
@@ -164,6 +175,12 @@ _RANGES = {
     "permittivity": (1.0, 100.0),
     "lattice_nm": (0.3, 0.8),
     "lattice_slope_nm_per_K": (0.0, 1e-4),
+    "c11_GPa": (10.0, 1000.0),
+    "c12_GPa": (1.0, 1000.0),
+    "c44_GPa": (1.0, 1000.0),
+    "a_c_eV": (-20.0, 20.0),
+    "a_v_eV": (-20.0, 20.0),
+    "b_eV": (-10.0, 10.0),
     "zero_K": (1e-3, 10.0),
     "alpha_meV_per_K": (0.0, 5.0),
     "beta_K": (1.0, 5000.0),
@@ -177,16 +194,10 @@ _RANGES = {
 def _binary(name: str, row: Any, sources: Mapping[str, str]) -> Binary:
     where = f"[binary.{name}]"
     _require_keys(where, row, set(QUANTITIES))
-    return Binary(
-        gamma_gap_eV=_gap(where, row, "gamma_gap_eV", sources),
-        x_gap_eV=_gap(where, row, "x_gap_eV", sources),
-        l_gap_eV=_gap(where, row, "l_gap_eV", sources),
-        valence_offset_eV=_value(where, row, "valence_offset_eV", sources),
-        mass=_value(where, row, "mass", sources),
-        permittivity=_value(where, row, "permittivity", sources),
-        lattice_nm=_value(where, row, "lattice_nm", sources),
-        lattice_slope_nm_per_K=_value(where, row, "lattice_slope_nm_per_K", sources),
-    )
+    rows: dict[str, Any] = {
+        key: (_gap if key in _GAPS else _value)(where, row, key, sources) for key in QUANTITIES
+    }
+    return Binary(**rows)
 
 
 def _value(where: str, row: Any, key: str, sources: Mapping[str, str]) -> Value:

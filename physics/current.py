@@ -29,8 +29,10 @@ from physics.constants import (
     ELEMENTARY_CHARGE_C,
     HBAR_J_S,
 )
+from physics.dephasing import COHERENT, Dephasing
 from physics.family import Family, cut_family
 from physics.panels import energy_panels
+from physics.probes import log_transmissions
 from physics.quadrature import PEAK, Panels, estimate, joined
 from physics.resonances import Resonances, find_resonances
 from physics.scattering import log_transmission_through
@@ -76,6 +78,8 @@ def tsu_esaki(
     mu_right_eV: FloatArray,
     temperature_K: float,
     mass: float,
+    *,
+    dephasing: Dephasing = COHERENT,
 ) -> Currents:
     """Compute the currents of a family of profiles.
 
@@ -87,12 +91,16 @@ def tsu_esaki(
         Temperature of the carriers.
     mass : float
         Mass in the plane, in m0.
+    dephasing : Dephasing
+        How coherence is lost; T then is that by all ways.
     """
     kT = BOLTZMANN_EV_PER_K * temperature_K
     low, high = _window(family, np.maximum(mu_left_eV, mu_right_eV), kT)
-    sectors = cut_family(family, low, high, depth_eV=DEPTH_EV)
+    sectors = cut_family(family, low, high, depth_eV=max(DEPTH_EV, 0.5 * dephasing.width_eV))
     top = np.minimum(high, [member.highest_eV + DEPTH_EV for member in family.members])
-    levels = find_resonances(family, sectors, low, np.maximum(top, low + kT), DEPTH_EV)
+    levels = find_resonances(
+        family, sectors, low, np.maximum(top, low + kT), DEPTH_EV, dephasing=dephasing
+    )
     fermi = np.stack([mu_left_eV, mu_right_eV], axis=1)
     panels = joined(
         [
@@ -102,7 +110,7 @@ def tsu_esaki(
                 fermi_eV=fermi[n],
                 kT_eV=kT,
                 level_eV=levels.energy_eV[n],
-                width_eV=levels.width_eV[n],
+                width_eV=levels.total_width_eV[n],
             )
             for n in range(low.size)
         ]
@@ -110,6 +118,9 @@ def tsu_esaki(
 
     def transmission(rows: IndexArray, energy_eV: FloatArray) -> FloatArray:
         some = family.rows(rows), sectors.rows(rows)
+        if dephasing.acts:
+            lost = dephasing.width_eV, dephasing.well_of_layer
+            return np.exp(log_transmissions(*some, energy_eV, *lost)[1])
         return np.exp(log_transmission_through(*some, energy_eV))
 
     def integrand(some: Panels) -> tuple[FloatArray, FloatArray]:
@@ -203,7 +214,7 @@ def _currents(done: _Done, levels: Resonances, tail: FloatArray, scale: float) -
     by_level = np.zeros((members, ranks))
     if ranks:
         np.add.at(by_level, (owner, done.panels.group), done.integral)
-    blurred = ROUNDING * np.abs(levels.energy_eV) / (0.5 * levels.width_eV)
+    blurred = ROUNDING * np.abs(levels.energy_eV) / (0.5 * levels.total_width_eV)
     plain = np.isnan(levels.line_peak) & np.isfinite(levels.energy_eV)
     rounding = np.sum(np.where(plain, np.minimum(1.0, blurred), 0.0) * np.abs(by_level), axis=1)
     error: FloatArray = np.bincount(owner, done.error, members) + tail + rounding

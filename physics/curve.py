@@ -13,6 +13,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from physics.current import Currents, tsu_esaki
+from physics.dephasing import COHERENT, Dephasing
 from physics.errors import StructureError
 from physics.family import family_of
 from physics.field import Profile, go_on
@@ -29,6 +30,8 @@ HALVINGS = 5
 STRAIGHT = 0.004
 """Departure from a straight line, as a share of the curve's range or of the current itself, up to
 which a step in bias is left alone."""
+DECIMALS = 12
+"""Decimals of a bias in V that is chosen here."""
 STENCIL = 5
 """Points through which a polynomial is laid for the slope."""
 
@@ -42,6 +45,8 @@ class Drive:
     profiles: Callable[[FloatArray], Sequence[Profile]]
     """Profiles of like pieces at biases of shape (B,)."""
     watch: Callable[[], None] = go_on
+    dephasing: Dephasing = COHERENT
+    """How coherence is lost."""
 
     @property
     def mu_left_eV(self) -> float:
@@ -103,9 +108,21 @@ def curve_at(drive: Drive, bias_V: FloatArray) -> Curve:
         chunk = biases[first : first + CHUNK]
         family = family_of(drive.profiles(chunk))
         mu = np.full(chunk.size, mu_left)
-        mass = drive.structure.left.mass
-        parts.append((chunk, tsu_esaki(family, mu, mu - chunk, drive.temperature_K, mass)))
+        found = tsu_esaki(
+            family,
+            mu,
+            mu - chunk,
+            drive.temperature_K,
+            drive.structure.left.mass,
+            dephasing=drive.dephasing,
+        )
+        parts.append((chunk, found))
     return joined_curves([_curve(*part) for part in parts])
+
+
+def even_biases(from_V: float, to_V: float, points: int) -> FloatArray:
+    """Evenly spaced biases, both ends included, without the tails of binary fractions."""
+    return np.round(np.linspace(from_V, to_V, points), DECIMALS)
 
 
 def own_curve(
@@ -120,7 +137,7 @@ def own_curve(
     tell : callable, optional
         Called with what there is after each round.
     """
-    curve = curve_at(drive, np.linspace(from_V, to_V, FIRST_POINTS))
+    curve = curve_at(drive, even_biases(from_V, to_V, FIRST_POINTS))
     for _ in range(HALVINGS):
         if tell is not None:
             tell(curve)
@@ -157,7 +174,7 @@ def slopes(x: FloatArray, y: FloatArray) -> FloatArray:
     apart = nodes[:, :, None] - nodes[:, None, :] + np.eye(size)
     weight = 1.0 / np.prod(apart, axis=2)  # barycentric
     here = np.arange(x.size)
-    distance = nodes - x[:, None]
+    distance = x[:, None] - nodes
     distance[here, at] = 1.0
     ratio = weight / weight[here, at][:, None] / distance
     ratio[here, at] = 0.0
@@ -195,5 +212,4 @@ def _bent_steps(curve: Curve) -> FloatArray:
     bent[:-1] |= departs
     bent[1:] |= departs
     bent &= np.diff(x) > 1e-5
-    middle: FloatArray = 0.5 * (x[:-1] + x[1:])[bent]
-    return middle
+    return np.round(0.5 * (x[:-1] + x[1:])[bent], DECIMALS)

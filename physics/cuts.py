@@ -104,7 +104,7 @@ def _with_marks(
 ) -> tuple[NDArray[np.int64], FloatArray]:
     """Add cuts at given positions, unless a cut is there already to within rounding."""
     faces = profile.position_nm
-    inside = np.unique(marks_nm[(marks_nm > 0.0) & (marks_nm < faces[-1])])
+    inside = np.unique(marks_nm[(marks_nm > faces[0]) & (marks_nm < faces[-1])])
     home = np.searchsorted(faces, inside, side="right") - 1
     share = (inside - faces[home]) / (faces[home + 1] - faces[home])
     pieces = np.concatenate([piece, home])

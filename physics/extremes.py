@@ -21,10 +21,12 @@ FloatArray = NDArray[np.float64]
 
 NODES = 9
 """Chebyshev nodes in a bracket."""
-NARROWING = (0.2, 0.05)
+NARROWING = (0.2,)
 """Width of the windows after the first, as a share of the bracket."""
 Place = tuple[float, float, float, float]
 """Bias, current, its error, and conductance."""
+FALL_TO_SPEAK_OF = 0.05
+"""Share of a peak's current that has to go for the peak to be the one that is meant."""
 LEAST_DROP = 1e-4
 """Share of a peak that the current has to fall by, lest rounding makes peaks."""
 
@@ -99,17 +101,22 @@ def regions(drive: Drive, curve: Curve) -> tuple[Region, ...]:
 
 
 def main_region(found: Sequence[Region], curve: Curve) -> Region | None:
-    """Choose the region that a reader asks for: with the largest fall, at positive bias if any."""
+    """Choose the region that a reader asks for: the first with a fall to speak of.
+
+    At positive bias if there is one; a ripple, whose current falls by less than `FALL_TO_SPEAK_OF`,
+    only where there is nothing else.
+    """
     ahead = [region for region in found if region.peak.bias_V > 0.0] or list(found)
-    return max(ahead, key=lambda region: _fall(region, curve), default=None)
+    clear = [region for region in ahead if _fall(region, curve) >= FALL_TO_SPEAK_OF]
+    return next(iter(clear or ahead), None)
 
 
 def _fall(region: Region, curve: Curve) -> float:
+    """Share of the peak's current that is gone in the valley, or at the end of the range."""
     peak = region.peak.current_density_A_per_cm2
-    if region.valley is not None:
-        return abs(peak - region.valley.current_density_A_per_cm2)
-    end = curve.current_density_A_per_cm2[-1 if region.peak.bias_V > 0.0 else 0]
-    return abs(peak - float(end))
+    end = float(curve.current_density_A_per_cm2[-1 if region.peak.bias_V > 0.0 else 0])
+    least = end if region.valley is None else region.valley.current_density_A_per_cm2
+    return 1.0 - least / peak
 
 
 def _side_regions(drive: Drive, x: FloatArray, y: FloatArray, sign: float) -> list[Region]:

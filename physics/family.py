@@ -41,6 +41,11 @@ class Family:
         """What the first member calls while something is computed."""
         return self.members[0].watch
 
+    @property
+    def layer_index(self) -> NDArray[np.int64]:
+        """Index of the layer that each piece belongs to, shape (P,)."""
+        return self.members[0].layer_index
+
     def rows(self, index: NDArray[np.int64]) -> Family:
         """Give some of the members."""
         return family_of([self.members[n] for n in index.tolist()])
@@ -65,6 +70,12 @@ class FamilySectors:
         """Number of sectors."""
         return self.piece_index.size
 
+    def some(self, chosen: NDArray[np.bool_]) -> FamilySectors:
+        """Give some of the sectors."""
+        return replace(
+            self, piece_index=self.piece_index[chosen], coefficients=self.coefficients[chosen]
+        )
+
     def rows(self, index: NDArray[np.int64]) -> FamilySectors:
         """Give the sectors of some of the members."""
         return replace(
@@ -84,7 +95,7 @@ class FamilySectors:
         for index in order if forward else reversed(order):
             table = self.coefficients[index]  # (B, 4, D)
             products = [(table @ p.view(np.float64)).view(p.dtype) for p in by_member]
-            yield index, [np.moveaxis(product, 1, 0) for product in products]
+            yield index, [product.transpose(1, 0, 2) for product in products]
 
 
 def family_of(profiles: Sequence[Profile]) -> Family:

@@ -10,7 +10,6 @@ from __future__ import annotations
 
 from collections.abc import Callable
 from dataclasses import dataclass, field, replace
-from typing import Any, Protocol
 
 import numpy as np
 from numpy.typing import NDArray
@@ -46,7 +45,8 @@ class Profile:
     """
 
     position_nm: NDArray[np.float64]
-    """Faces of the pieces, shape (P + 1,); 0 at the left contact's face."""
+    """Faces of the pieces, shape (P + 1,); 0 at the left contact's face. A screened profile begins
+    below 0, in the left contact, and ends in the right one."""
     thickness_nm: NDArray[np.float64]
     """Thickness of each piece, shape (P,); not the faces' difference, which is rounded."""
     edge_left_eV: NDArray[np.float64]
@@ -58,7 +58,8 @@ class Profile:
     mass_right: NDArray[np.float64]
     """Mass at the band edge at each piece's right face, in m0, shape (P,)."""
     layer_index: NDArray[np.int64]
-    """Index of the layer that each piece belongs to, counted from 0, shape (P,)."""
+    """Index of the layer that each piece belongs to, counted from 0, shape (P,); -1 in the left
+    contact and the number of layers in the right one, where pieces lie in contacts."""
     contact_edge_eV: tuple[float, float]
     """Band edge in the left and in the right contact, bias included."""
     contact_mass: tuple[float, float]
@@ -84,9 +85,41 @@ class Profile:
         return not (pieces or any(self.contact_mass_slope))
 
     @property
-    def length_nm(self) -> float:
-        """Distance between the contacts' faces."""
+    def start_nm(self) -> float:
+        """Where the first piece begins."""
+        return float(self.position_nm[0])
+
+    @property
+    def end_nm(self) -> float:
+        """Where the last piece ends."""
         return float(self.position_nm[-1])
+
+    @property
+    def length_nm(self) -> float:
+        """Length of all pieces together."""
+        return self.end_nm - self.start_nm
+
+    @property
+    def layer_count(self) -> int:
+        """Number of layers; what lies in contacts is none."""
+        last = int(self.layer_index[-1])
+        return last if self.layer_index[0] < 0 else last + 1
+
+    def layer_pieces(self, index: int) -> slice:
+        """Give the pieces of a layer, counted from 0."""
+        first, stop = np.searchsorted(self.layer_index, [index, index + 1])
+        return slice(int(first), int(stop))
+
+    def layer_edges_eV(self, index: int) -> tuple[float, float]:
+        """Band edge at a layer's left and right face."""
+        pieces = self.layer_pieces(index)
+        return float(self.edge_left_eV[pieces.start]), float(self.edge_right_eV[pieces.stop - 1])
+
+    @property
+    def faces_nm(self) -> tuple[float, float]:
+        """Left face of the first and right face of the last layer."""
+        first, last = self.layer_pieces(0), self.layer_pieces(self.layer_count - 1)
+        return float(self.position_nm[first.start]), float(self.position_nm[last.stop])
 
     @property
     def lowest_eV(self) -> float:
@@ -106,8 +139,8 @@ class Profile:
         start = self.position_nm[inside]
         share = (x - start) / (self.position_nm[inside + 1] - start)
         edge = self.edge_left_eV[inside] * (1.0 - share) + self.edge_right_eV[inside] * share
-        edge = np.where(x < 0.0, self.contact_edge_eV[0], edge)
-        return np.where(x > self.length_nm, self.contact_edge_eV[1], edge)
+        edge = np.where(x < self.start_nm, self.contact_edge_eV[0], edge)
+        return np.where(x > self.end_nm, self.contact_edge_eV[1], edge)
 
 
 def without_runways(profile: Profile) -> Profile:
@@ -198,31 +231,6 @@ def require_above_valence(profile: Profile, energy_eV: float) -> None:
             f"{where}: {energy_eV:g} eV lies in its valence band, where band = kane has no mass "
             f"above 0; energies from {allowed:.8g} eV on are allowed"
         )
-
-
-class Contacts(Protocol):
-    """What scattering wants to know of the contacts, of one profile or of a family of them."""
-
-    @property
-    def contact_edge_eV(self) -> tuple[float, float] | tuple[FloatArray, FloatArray]:
-        """Band edge in the left and in the right contact, bias included."""
-
-    @property
-    def contact_mass(self) -> tuple[float, float] | tuple[FloatArray, FloatArray]:
-        """Mass at the edge of the left and of the right contact, in m0."""
-
-    @property
-    def contact_mass_slope(self) -> tuple[float, float] | tuple[FloatArray, FloatArray]:
-        """Mass slopes of the left and of the right contact, in m0 per eV."""
-
-
-def contact_mass_at(profile: Contacts, side: int, energy_eV: Energies) -> Any:
-    """Mass of the left (0) or right (1) contact at real or complex energies, in m0.
-
-    In the shape of the energies; not laid out over them where the contact is parabolic.
-    """
-    mass, slope = profile.contact_mass[side], profile.contact_mass_slope[side]
-    return mass + slope * (energy_eV - profile.contact_edge_eV[side]) if np.any(slope) else mass
 
 
 def built_in_eV(structure: Structure) -> float:

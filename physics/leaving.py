@@ -21,7 +21,8 @@ import numpy as np
 from numpy.typing import NDArray
 
 from physics.constants import HBAR2_OVER_2M0_EV_NM2 as C_EV_NM2
-from physics.field import Profile, contact_mass_at
+from physics.contacts import contact_mass_at
+from physics.field import Profile
 from physics.outgoing import Sheet, outward_ratio_eV_nm
 from physics.sectors import Sectors, all_matrices
 

@@ -9,21 +9,21 @@ result complete or finds what is missing (`rootfinding`). Widths come from the f
 
 from __future__ import annotations
 
-import itertools
 import math
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
+from functools import partial
 from typing import ClassVar, Literal
 
 import numpy as np
 from numpy.typing import NDArray
 
 from physics.constants import HBAR_EV_S
-from physics.errors import EnergyError
 from physics.field import Profile, valence_top, without_runways
 from physics.leaving import STOPS, Leaving, leaving_states
 from physics.outgoing import Sheet, closed_stack_energies, mismatch
-from physics.rootfinding import MOST_POINTS, Rectangle, zeros_in
+from physics.rootfinding import MOST_POINTS, Rectangle, distinct, polish, zeros_in
 from physics.sectors import Sectors, cut
+from physics.windows import SAME_EV, check_window, strips
 
 ComplexArray = NDArray[np.complex128]
 FloatArray = NDArray[np.float64]
@@ -44,13 +44,10 @@ GAP_ERROR_EV = 2e-13
 """Uncertainty of a distance between two levels that all but coincide, seen in trials."""
 LEVELS_AT_ONCE = 4_000_000
 """Matrix elements held at once while states are computed."""
-CONTOUR_WORK = 400_000_000
-"""Points of a contour times sectors from which the proof is given up."""
+CONTOUR_WORK = 200_000_000
+"""Points of a contour times sectors, some 10 s, from which the proof is given up."""
 ABOVE_VALENCE_EV = 1e-6
 """Starting points are gathered no nearer to a valence band, where the mass falls to 0."""
-WINDOW_LIMIT_EV = 200.0
-SAME_EV = 1e-13
-"""Energies closer than this are one energy."""
 THRESHOLD_EV = 1e-11
 """The contour stays this far from the ends of a strip, where a contact's edge may branch."""
 HEIGHT = 1.0377
@@ -79,7 +76,8 @@ class Level:
     nodes: int
     """Nodes of the wave, the weak outgoing ends left out."""
     share_by_layer: tuple[float, ...]
-    """Probability in each layer; the rest of 1 is in the tails in closed contacts."""
+    """Probability in each layer; the rest of 1 is in contacts: in tails, or where screening bends
+    their edges."""
     width_error: float
     """Bound on the relative error of the widths; large only for levels that all but coincide."""
 
@@ -96,7 +94,7 @@ class LevelSet:
     complete: bool
     """Whether the count was proved and met."""
     counted: int
-    """Levels in the window by the count; -1 where it could not be done."""
+    """Levels in the window by the count; those that were found where it could not be proved."""
     from_eV: float
     to_eV: float
     max_width_eV: float
@@ -140,20 +138,47 @@ def find_levels(
     StructureError
         The stack is too thick for these energies.
     """
-    _check_window(from_eV, to_eV, max_width_eV)
+    check_window(from_eV, to_eV, max_width_eV)
     levels: list[Level] = []
     counted, complete = 0, True
     core = without_runways(profile)
-    for low, high in _strips(profile, from_eV, to_eV):
+    for low, high in strips(profile, from_eV, to_eV):
         strip = _find_poles(core, low, high, max_width_eV)
         found = [level for level in _describe(profile, strip) if level.width_eV <= max_width_eV]
         levels += found
         counted += len(found) + strip.missing
         complete = complete and strip.proved
     levels.sort(key=lambda level: level.energy_eV)
-    return LevelSet(
-        tuple(levels), complete, counted if complete else -1, from_eV, to_eV, max_width_eV
-    )
+    counted = counted if complete else len(levels)
+    return LevelSet(tuple(levels), complete, counted, from_eV, to_eV, max_width_eV)
+
+
+def follow_levels(profile: Profile, before: LevelSet) -> LevelSet:
+    """Find levels again in a profile that has changed a little, from where they were.
+
+    Nothing is proved anew; where a level is lost on the way, all are found from scratch.
+    """
+    levels: list[Level] = []
+    core = without_runways(profile)
+    for low, high in strips(profile, before.from_eV, before.to_eV):
+        known = [level for level in before.levels if low <= level.energy_eV < high]
+        poles = np.array([complex(level.energy_eV, -0.5 * level.width_eV) for level in known])
+        if high <= min(profile.contact_edge_eV):  # all bound
+            strip = _find_poles(core, low, high, before.max_width_eV)
+        elif poles.size:
+            sheet = Sheet(*(0.5 * (low + high) > edge for edge in profile.contact_edge_eV))
+            depth = 2.0 * before.max_width_eV
+            sectors = cut(core, low, high, depth_eV=depth)
+            box = Rectangle(low, high, -depth, REAL_AXIS_EV)
+            found = polish(partial(mismatch, core, sectors, sheet), poles, poles[:0], box)
+            strip = _Strip(sheet, distinct(found[box.holds(found)]), 0, proved=before.complete)
+        else:
+            continue
+        levels += _describe(profile, strip)
+    if len(levels) != len(before.levels):
+        return find_levels(profile, before.from_eV, before.to_eV, before.max_width_eV)
+    levels.sort(key=lambda level: level.energy_eV)
+    return replace(before, levels=tuple(levels))
 
 
 def _mixing(poles: ComplexArray) -> FloatArray:
@@ -165,24 +190,6 @@ def _mixing(poles: ComplexArray) -> FloatArray:
     apart = np.maximum(nearest - GAP_ERROR_EV, MIXING_EV)
     bound: FloatArray = WIDTH_ERROR + MIXING_EV / apart
     return bound
-
-
-def _check_window(from_eV: float, to_eV: float, max_width_eV: float) -> None:
-    if not (abs(from_eV) <= WINDOW_LIMIT_EV and abs(to_eV) <= WINDOW_LIMIT_EV):
-        raise EnergyError(f"an energy lies between -{WINDOW_LIMIT_EV:g} and {WINDOW_LIMIT_EV:g} eV")
-    if not from_eV < to_eV:
-        raise EnergyError(f"the window from {from_eV:g} to {to_eV:g} eV is empty")
-    if not 0.0 < max_width_eV <= WINDOW_LIMIT_EV:
-        raise EnergyError(f"the largest width is {max_width_eV:g} eV; it has to be above 0")
-
-
-def _strips(profile: Profile, from_eV: float, to_eV: float) -> list[tuple[float, float]]:
-    """Cut a window at the contacts' edges, but for cuts that only rounding sets apart."""
-    edges = sorted(edge for edge in profile.contact_edge_eV if from_eV < edge < to_eV)
-    ends = [from_eV]
-    ends += [edge for edge in edges if to_eV - edge > SAME_EV]
-    kept = [end for n, end in enumerate(ends) if n == 0 or end - ends[n - 1] > SAME_EV]
-    return list(itertools.pairwise([*kept, to_eV]))
 
 
 def _find_poles(profile: Profile, low: float, high: float, max_width_eV: float) -> _Strip:
@@ -238,8 +245,8 @@ def _level(
     log_left, log_right = (float(log) for log in states.log_width_eV[:, n])
     log_width = float(np.logaddexp(log_left, log_right))
     width = math.exp(log_width)
-    layers = profile.layer_index[sectors.piece_index]
-    share = np.bincount(layers, weights=states.content[:, n])
+    layers = profile.layer_index[sectors.piece_index] + 1  # 0: in the left contact
+    share = np.bincount(layers, states.content[:, n], profile.layer_count + 2)[1:-1]
     energy = float(states.energy_eV[n].real)
     bound = states.sheet.closed
     balance = -math.inf if bound else log_left + log_right - 2.0 * log_width

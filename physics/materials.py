@@ -7,8 +7,8 @@ fractions y_k::
                              -  sum_(k<l) y_k y_l sum_i x_i C_i,kl
 
 where Q_ik are the values of the binary compounds and C the bowings of the ternary alloys: 0 where
-none is published, always so for lattice constant and permittivity. For a ternary alloy it is the
-usual quadratic law; for two cations and two anions that of R. L. Moon, G. A. Antypas and
+none is published, always so for lattice, permittivity and elastic constants. For a ternary alloy it
+is the usual quadratic law; for two cations and two anions that of R. L. Moon, G. A. Antypas and
 L. W. James, J. Electron. Mater. 3, 635 (1974), from memory. A bowing that depends on the
 composition, C + C' x, is taken at the point of the ternary's line that lies closest to the alloy,
 x = (1 + x_i - x_j) / 2, as T. H. Glisson et al. do, J. Electron. Mater. 7, 1 (1978), from memory;
@@ -24,7 +24,7 @@ Where it is rough:
   0.02 eV of the measured gaps of InGaAsP (R. E. Nahory et al., Appl. Phys. Lett. 33, 659 (1978))
   and of AlGaInAs (D. Olego et al., Appl. Phys. Lett. 41, 476 (1982)); with antimony, where the
   ternary bowings themselves are uncertain by 0.1 eV and more, expect no better than that.
-- The edges are those of unstrained crystals.
+- The edges are those of unstrained crystals; `physics.strain` moves them.
 - The lattice constant's slope holds around 300 K; towards 0 K the true expansion vanishes.
 - Alloys whose gap the laws close (InSb far above room temperature) are refused.
 """
@@ -43,6 +43,18 @@ from physics.formula import Composition, parse_formula
 MAX_TEMPERATURE_K = 2000.0
 REFERENCE_TEMPERATURE_K = 300.0
 """Temperature of the catalogue's lattice constants; monolayers are counted at it."""
+
+
+@dataclass(frozen=True)
+class Elastic:
+    """What a material's response to strain depends on; signs as in `physics.strain`."""
+
+    c11_GPa: float
+    c12_GPa: float
+    c44_GPa: float
+    a_c_eV: float
+    a_v_eV: float
+    b_eV: float
 
 
 @dataclass(frozen=True)
@@ -67,6 +79,7 @@ class Material:
     """Conduction-band edge at X, on the scale of ``edge_eV``."""
     l_edge_eV: float | None = None
     """Conduction-band edge at L, on the scale of ``edge_eV``."""
+    elastic: Elastic | None = None
 
 
 def material(formula: str, temperature_K: float = REFERENCE_TEMPERATURE_K) -> Material:
@@ -108,6 +121,18 @@ def material(formula: str, temperature_K: float = REFERENCE_TEMPERATURE_K) -> Ma
         gap_eV=gamma,
         x_edge_eV=valence + x,
         l_edge_eV=valence + l_gap,
+        elastic=_elastic(mixture),
+    )
+
+
+def _elastic(mixture: _Mixture) -> Elastic:
+    return Elastic(
+        c11_GPa=_mixed(mixture, "c11_GPa", lambda row: row.c11_GPa.value),
+        c12_GPa=_mixed(mixture, "c12_GPa", lambda row: row.c12_GPa.value),
+        c44_GPa=_mixed(mixture, "c44_GPa", lambda row: row.c44_GPa.value),
+        a_c_eV=_mixed(mixture, "a_c_eV", lambda row: row.a_c_eV.value),
+        a_v_eV=_mixed(mixture, "a_v_eV", lambda row: row.a_v_eV.value),
+        b_eV=_mixed(mixture, "b_eV", lambda row: row.b_eV.value),
     )
 
 

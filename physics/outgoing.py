@@ -19,19 +19,26 @@ import numpy as np
 from numpy.typing import NDArray
 
 from physics.constants import HBAR2_OVER_2M0_EV_NM2 as C_EV_NM2
+from physics.contacts import Contacts, contact_mass_at
 from physics.errors import EnergyError
-from physics.field import Contacts, Profile, contact_mass_at
+from physics.field import Profile
 from physics.scattering import NODE_GUARD
 from physics.sectors import Expanded, Sectors, matrices, matrices_and_slopes
 
 ComplexArray = NDArray[np.complex128]
 FloatArray = NDArray[np.float64]
 
-SECTION = 32
-"""Energies tried in each bracket at once while it is narrowed."""
-LEVEL_WORK = 8_000_000
-"""Levels times sectors that are computed, about a minute's work; beyond, a narrower window is asked
-for."""
+SECTION, LEAST_SECTION = 32, 4
+"""Parts that each bracket is cut into at once while it is narrowed; of many brackets, fewer."""
+TRIED_AT_ONCE = 4096
+"""Energies beyond which longer arrays go no faster, so that fewer parts cost less."""
+LEVEL_WORK = 9_000_000
+"""(Levels + `ROUNDS`) times (sectors + `DISTINCT_WEIGHT` times distinct ones) that are computed,
+some 20 s of one core; beyond, a narrower window is asked for."""
+ROUNDS = 150
+"""Levels whose work is that of going through the stack again and again, for however few."""
+DISTINCT_WEIGHT = 3
+"""A sector unlike all others costs this many times more: its matrix is its own."""
 RESCALE_EVERY = 8
 """Sectors between rescalings; a wave grows by at most exp(2 * 1.5 * 8) = 3e10 in between."""
 
@@ -141,7 +148,7 @@ def closed_stack_energies(
 ) -> FloatArray:
     """Eigenvalues of the closed stack between two energies, shape (N,), by counting nodes.
 
-    The brackets of all eigenvalues are narrowed together, each tried at `SECTION` energies at
+    The brackets of all eigenvalues are narrowed together, each cut into up to `SECTION` parts at
     once, until they are ``width_eV`` wide or as narrow as a double allows.
 
     Raises
@@ -150,13 +157,16 @@ def closed_stack_energies(
         There are too many for a reasonable time.
     """
     first, last = states_below(profile, sectors, sheet, np.array(window))
-    _require_feasible(int(last - first), sectors.count)
+    _require_feasible(int(last - first), sectors)
     rank = np.arange(first, last)
     lower, upper = (np.full(rank.size, end) for end in window)
-    share = np.linspace(0.0, 1.0, SECTION + 1)[1:-1]
+    parts = min(max(TRIED_AT_ONCE // max(rank.size, 1), LEAST_SECTION), SECTION)
+    share = np.linspace(0.0, 1.0, parts + 1)[1:-1]
     while rank.size and np.any(upper - lower > np.maximum(width_eV, 2.0 * np.spacing(upper))):
         trial = lower[:, None] + (upper - lower)[:, None] * share
-        count = states_below(profile, sectors, sheet, trial.ravel()).reshape(trial.shape)
+        # To begin with all brackets are the whole window, and their energies the same.
+        tried, place = np.unique(trial, return_inverse=True)
+        count = states_below(profile, sectors, sheet, tried)[place].reshape(trial.shape)
         passed = (count <= rank[:, None]).sum(axis=1)
         walls = np.concatenate([lower[:, None], trial, upper[:, None]], axis=1)
         row = np.arange(rank.size)
@@ -168,9 +178,18 @@ def closed_stack_energies(
     return middle
 
 
-def _require_feasible(levels: int, sectors: int) -> None:
-    if levels * sectors > LEVEL_WORK:
+def _require_feasible(levels: int, sectors: Sectors) -> None:
+    """Refuse what would take too long, and say how much less would not."""
+    weight = sectors.count + DISTINCT_WEIGHT * sectors.coefficients.shape[2]
+    if (levels + ROUNDS) * weight <= LEVEL_WORK:
+        return
+    feasible = LEVEL_WORK // weight - ROUNDS
+    if feasible <= 0:
         raise EnergyError(
-            f"about {levels} levels in a stack of {sectors} sectors take too long; "
-            f"narrow the window to some {max(1, LEVEL_WORK // sectors)} levels"
+            f"levels in a stack of {sectors.count} sectors take too long; "
+            "describe fewer layers, or thinner ones"
         )
+    raise EnergyError(
+        f"about {levels} levels in a stack of {sectors.count} sectors take too long; "
+        f"narrow the window to some {feasible} levels"
+    )

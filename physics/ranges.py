@@ -21,7 +21,8 @@ class Range:
         return (self.low < value if self.open_below else self.low <= value) and value <= self.high
 
 
-THICKNESS_NM = Range(0.0, 1e5, "a thickness is above 0 and at most 1e5 nm", open_below=True)
+THICKNESS_NM = Range(1e-6, 1e5, "a thickness lies between 1e-6 and 1e5 nm")
+"""A thinner layer drowns in the rounding of a double: a level of it would be a guess."""
 EDGE_EV = Range(-100.0, 100.0, "a band edge lies between -100 and 100 eV")
 MASS = Range(1e-4, 100.0, "a mass lies between 1e-4 and 100 m0")
 FERMI_EV = Range(-100.0, 100.0, "a Fermi energy lies between -100 and 100 eV")
@@ -38,3 +39,6 @@ BIAS_V = Range(-50.0, 50.0, "a bias lies between -50 and 50 V")
 MESA_UM2 = Range(0.0, 1e8, "a mesa's area is above 0 and at most 1e8 um^2", open_below=True)
 SERIES_OHM = Range(0.0, 1e9, "a series resistance lies between 0 and 1e9 ohm")
 PARALLEL_FF = Range(0.0, 1e9, "a parallel capacitance lies between 0 and 1e9 fF")
+DEPHASING_EV = Range(0.0, 1.0, "a dephasing width lies between 0 and 1 eV")
+SCATTERING_TIME_S = Range(1e-15, 1.0, "a scattering time lies between 1e-15 and 1 s")
+MOBILITY_CM2_VS = Range(1.0, 1e9, "a mobility lies between 1 and 1e9 cm^2/Vs")

@@ -17,11 +17,12 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
+from physics.dephasing import COHERENT, Dephasing
 from physics.family import Family, FamilySectors
 from physics.field import Profile
 from physics.leaving import STOPS, leaving_states
 from physics.levels import find_levels
-from physics.outgoing import SECTION, Sheet, mismatch, states_below
+from physics.outgoing import Sheet, mismatch, states_below
 from physics.sectors import cut
 from physics.spectrum import APART_EV, NARROW_EV
 
@@ -29,11 +30,13 @@ ComplexArray = NDArray[np.complex128]
 FloatArray = NDArray[np.float64]
 
 OPEN = Sheet(left_open=True, right_open=True)
+TRIALS = 8
+"""Parts that a bracket is cut into at once: with many members few cost less than many."""
 START_EV = 1e-6
 """Width of the brackets that start the iteration."""
 START_GAP_EV = 1e-8
 """Starts in one bracket are set apart by this, lest they move as one."""
-MOST_STEPS = 16
+MOST_STEPS = 12
 SETTLED_EV = 1e-13
 """Step below which a pole is settled; the step after it is far below rounding."""
 LONGEST_STEP_EV = 0.05
@@ -51,7 +54,9 @@ class Resonances:
 
     energy_eV: FloatArray
     width_eV: FloatArray
-    """Full width Gamma, from the flux where it is too narrow for the pole to tell."""
+    """Full elastic width Gamma, from the flux where it is too narrow for the pole to tell."""
+    total_width_eV: FloatArray
+    """The same with what lost coherence adds, all of the state taken to be in wells."""
     is_level: NDArray[np.bool_]
     """False for marks, and for what rows are filled up with."""
     line_peak: FloatArray
@@ -65,6 +70,8 @@ def find_resonances(
     low_eV: FloatArray,
     high_eV: FloatArray,
     depth_eV: float,
+    *,
+    dephasing: Dephasing = COHERENT,
 ) -> Resonances:
     """Find the levels in a window of each member, above both of its contacts' edges.
 
@@ -86,7 +93,7 @@ def find_resonances(
         found = find_levels(family.members[n], float(low_eV[n]), float(high_eV[n]), 2.0 * depth_eV)
         poles = [complex(level.energy_eV, -0.5 * level.width_eV) for level in found.levels]
         rows.append(_row(np.array(poles, dtype=np.complex128), np.empty(0)))
-    return _described(family, rows)
+    return _described(family, rows, dephasing)
 
 
 def _row(pole_eV: ComplexArray, mark_eV: FloatArray) -> tuple[ComplexArray, NDArray[np.bool_]]:
@@ -97,27 +104,43 @@ def _row(pole_eV: ComplexArray, mark_eV: FloatArray) -> tuple[ComplexArray, NDAr
     return both[order], order < poles.size
 
 
-def _described(family: Family, rows: list[tuple[ComplexArray, NDArray[np.bool_]]]) -> Resonances:
+def _described(
+    family: Family, rows: list[tuple[ComplexArray, NDArray[np.bool_]]], dephasing: Dephasing
+) -> Resonances:
     size = (len(rows), max(pole.size for pole, _ in rows))
     energy, width, peak = (np.full(size, np.nan) for _ in range(3))
     is_level = np.zeros(size, dtype=bool)
+    lost = dephasing.width_eV if dephasing.acts else 0.0
     for n, (pole, real) in enumerate(rows):
         energy[n, : pole.size], width[n, : pole.size] = pole.real, -2.0 * pole.imag
         is_level[n, : pole.size] = real
+    total = width + lost
+    for n, (pole, _) in enumerate(rows):
         narrow = np.flatnonzero(width[n] < NARROW_EV)
         if narrow.size:
-            width[n, narrow], peak[n, narrow] = _from_flux(family.members[n], pole[narrow])
+            found = _from_flux(family.members[n], pole[narrow], dephasing)
+            width[n, narrow], total[n, narrow], peak[n, narrow] = found
         gap = np.diff(pole.real, prepend=-np.inf, append=np.inf)
-        peak[n, : pole.size][np.minimum(gap[1:], gap[:-1]) <= APART_EV] = np.nan
-    return Resonances(energy, width, is_level, peak)
+        crowded = np.minimum(gap[1:], gap[:-1]) <= APART_EV
+        peak[n, : pole.size][crowded] = np.nan
+    peak[total >= NARROW_EV] = np.nan
+    return Resonances(energy, width, total, is_level, peak)
 
 
-def _from_flux(profile: Profile, pole_eV: ComplexArray) -> tuple[FloatArray, FloatArray]:
-    """Width and T at the peak of narrow levels, each of shape (N,)."""
+def _from_flux(
+    profile: Profile, pole_eV: ComplexArray, dephasing: Dephasing
+) -> tuple[FloatArray, FloatArray, FloatArray]:
+    """Elastic and total width of narrow levels and T at their peak, each of shape (N,)."""
     sectors = cut(profile, float(pole_eV.real.min()), float(pole_eV.real.max()), stops=STOPS)
     states = leaving_states(profile, sectors, OPEN, pole_eV)
     log_width = np.logaddexp(*states.log_width_eV)
-    return np.exp(log_width), 4.0 * np.exp(states.log_width_eV.sum(axis=0) - 2.0 * log_width)
+    width, total = np.exp(log_width), np.exp(log_width)
+    if dephasing.acts:
+        well = np.append(dephasing.well_of_layer, -1)[profile.layer_index[sectors.piece_index]]
+        total = width + dephasing.width_eV * states.content[well >= 0].sum(axis=0)
+    with np.errstate(divide="ignore"):
+        log_peak = states.log_width_eV.sum(axis=0) - log_width - np.log(total)
+    return width, total, 4.0 * np.exp(log_peak)
 
 
 @dataclass(frozen=True, eq=False)
@@ -163,7 +186,7 @@ def _closed_energies(
     rank = ends[:, :1] + np.arange(int(number.max()))  # (B, R)
     lower = np.broadcast_to(low_eV[:, None], rank.shape)
     upper = np.broadcast_to(high_eV[:, None], rank.shape)
-    share = np.linspace(0.0, 1.0, SECTION + 1)
+    share = np.linspace(0.0, 1.0, TRIALS + 1)
     while rank.size and float((upper - lower).max()) > START_EV:
         trial = lower[..., None] + (upper - lower)[..., None] * share  # (B, R, T)
         inner = trial[..., 1:-1].reshape(rank.shape[0], -1)

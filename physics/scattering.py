@@ -14,6 +14,7 @@ The dwell time is the probability in the stack over the incident flux (F. T. Smi
 from __future__ import annotations
 
 import math
+from collections.abc import Iterator
 from dataclasses import dataclass, fields
 
 import numpy as np
@@ -21,7 +22,8 @@ from numpy.typing import NDArray
 
 from physics.constants import HBAR2_OVER_2M0_EV_NM2 as C_EV_NM2
 from physics.constants import HBAR_EV_S
-from physics.field import Contacts, Profile, contact_mass_at
+from physics.contacts import Contacts, contact_mass_at
+from physics.field import Profile
 from physics.sectors import Expanded, Sectors, cut, matrices, matrices_and_slopes
 
 FloatArray = NDArray[np.float64]
@@ -82,16 +84,21 @@ def scatter(profile: Profile, energy_eV: FloatArray) -> Scattering:
     StructureError
         The stack is too thick for these energies.
     """
-    energy = np.atleast_1d(np.asarray(energy_eV, dtype=np.float64))
-    sectors = cut(profile, float(energy.min()), float(energy.max()))
-    parts = [
-        scatter_through(profile, sectors, energy[first : first + ENERGIES_AT_ONCE])
-        for first in range(0, energy.size, ENERGIES_AT_ONCE)
-    ]
+    parts = list(scatter_in_parts(profile, energy_eV))
     if len(parts) == 1:
         return parts[0]
     names = [field.name for field in fields(Scattering)]
     return Scattering(*(np.concatenate([getattr(p, name) for p in parts]) for name in names))
+
+
+def scatter_in_parts(profile: Profile, energy_eV: FloatArray) -> Iterator[Scattering]:
+    """As `scatter`, `ENERGIES_AT_ONCE` by `ENERGIES_AT_ONCE`; what is refused is so at once."""
+    energy = np.atleast_1d(np.asarray(energy_eV, dtype=np.float64))
+    sectors = cut(profile, float(energy.min()), float(energy.max()))
+    return (
+        scatter_through(profile, sectors, energy[first : first + ENERGIES_AT_ONCE])
+        for first in range(0, energy.size, ENERGIES_AT_ONCE)
+    )
 
 
 def scatter_through(profile: Profile, sectors: Sectors, energy_eV: FloatArray) -> Scattering:

@@ -18,7 +18,7 @@ edge, and no difference between flat, tilted and graded layers. A mass that goes
 from __future__ import annotations
 
 from collections.abc import Callable, Iterator, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import Any, Protocol
 
 import numpy as np
@@ -40,6 +40,17 @@ FloatArray = NDArray[np.float64]
 
 class Expanded(Protocol):
     """Transfer matrices as polynomials in the energy, of one profile or of a family of them."""
+
+    @property
+    def piece_index(self) -> NDArray[np.int64]:
+        """Piece that each sector belongs to, shape (S,)."""
+
+    @property
+    def count(self) -> int:
+        """Number of sectors."""
+
+    def some(self, chosen: NDArray[np.bool_]) -> Expanded:
+        """Give some of the sectors."""
 
     @property
     def coefficients(self) -> FloatArray:
@@ -95,6 +106,10 @@ class Sectors:
     def length_nm(self) -> FloatArray:
         """Length of each sector, shape (S,)."""
         return np.diff(self.position_nm)
+
+    def some(self, chosen: NDArray[np.bool_]) -> Sectors:
+        """Give the matrices of some of the sectors; positions stay those of all."""
+        return replace(self, piece_index=self.piece_index[chosen], kind=self.kind[chosen])
 
     def each(
         self, powers: tuple[NDArray[Any], ...], *, forward: bool
@@ -154,7 +169,7 @@ def cut(
     require_above_valence(profile, low_eV)
     piece, left, share = sector_shares(profile, low_eV, high_eV, depth_eV, marks_nm)
     start, end = profile.position_nm[piece], profile.position_nm[piece + 1]
-    position = np.append(start + (end - start) * left, profile.length_nm)
+    position = np.append(start + (end - start) * left, profile.end_nm)
     centre = 0.5 * (low_eV + high_eV)
     reach = max(0.5 * (high_eV - low_eV) + depth_eV, 1e-3)
     described = described_sectors(profile, piece, left, share, centre)

@@ -39,7 +39,13 @@ class Contact:
     donors_cm3: float | None = None
     permittivity: float | None = None
     lattice_nm: float | None = None
-    """Lattice constant; the left contact's is taken for the substrate's."""
+    """Unstrained lattice constant; the left contact's is the substrate's where none is named."""
+    strain: float | None = None
+    """Strain in the plane, positive where stretched; None where it is not known."""
+    edge_shift_eV: float | None = None
+    """What strain has added to the edge, the common zero apart."""
+    critical_nm: float | None = None
+    """Critical thickness under a free surface; None without strain, 0 where no layer holds it."""
     gap_eV: float | None = None
     """Direct gap, that the mass grows with the energy by where the band is not parabolic."""
 
@@ -69,6 +75,7 @@ class Layer:
     name: str = ""
     """The material's name, for the reader."""
     lattice_nm: float | None = None
+    """Unstrained lattice constant (at the left face, as all from here on)."""
     monolayer_nm: float | None = None
     x_edge_eV: float | None = None
     """Lowest conduction-band edge at X, on the same scale as ``edge_eV``, where it is known."""
@@ -77,11 +84,26 @@ class Layer:
     """Direct gap, that the mass grows with the energy by where the band is not parabolic."""
     to_gap_eV: float | None = None
     """Direct gap at the right face; None: as at the left one."""
+    strain: float | None = None
+    """Strain in the plane, positive where stretched; None where it is not known."""
+    to_strain: float | None = None
+    """Strain at the right face; None: as at the left one, or not known."""
+    edge_shift_eV: float | None = None
+    """What strain has added to the edge, the common zero apart."""
+    critical_nm: float | None = None
+    """Critical thickness, buried; None without strain, 0 where no layer holds it."""
 
     @property
     def right_edge_eV(self) -> float:
         """Band edge at the right face."""
         return self.edge_eV if self.to_edge_eV is None else self.to_edge_eV
+
+    @property
+    def mean_strain(self) -> float | None:
+        """Strain in the plane, averaged over the thickness."""
+        if self.strain is None or self.to_strain is None:
+            return self.strain
+        return 0.5 * (self.strain + self.to_strain)
 
     @property
     def right_mass(self) -> float:
@@ -113,6 +135,10 @@ class Structure:
     left: Contact
     layers: tuple[Layer, ...]
     right: Contact
+    substrate: str = ""
+    """The material on whose lattice all is grown; empty where none is named."""
+    critical_nm: float | None = None
+    """Critical thickness of the stack as a whole at its `mean_strain`; as a layer's."""
 
     def __post_init__(self) -> None:
         if not 1 <= len(self.layers) <= MAX_LAYERS:
@@ -134,6 +160,12 @@ class Structure:
     def thickness_nm(self) -> float:
         """Distance between the two contacts' faces."""
         return math.fsum(layer.thickness_nm for layer in self.layers)
+
+    @property
+    def mean_strain(self) -> float:
+        """Strain in the plane, averaged over the stack; a layer without a known one adds none."""
+        total = math.fsum((layer.mean_strain or 0.0) * layer.thickness_nm for layer in self.layers)
+        return total / self.thickness_nm
 
 
 def _require(where: str, key: str, value: float | None, allowed: Range) -> None:

@@ -134,26 +134,73 @@ def local_density_of_states(
     StructureError
         A position outside the stack.
     """
-    x = np.asarray(x_nm, dtype=np.float64)
-    energy = np.atleast_1d(np.asarray(energy_eV, dtype=np.float64))
-    if x.size == 0 or not (x.min() >= 0.0 and x.max() <= profile.length_nm):
-        allowed = f"positions lie between 0 and {profile.length_nm:g} nm"
-        raise StructureError("profile", "x_nm", x.tolist()[:3], allowed)
-    sectors = cut(profile, float(energy.min()), float(energy.max()), marks_nm=x)
-    face = _nearest_face(sectors, x)
-    right = _ratios(profile, sectors, energy, face, from_right=True)
-    left = _ratios(profile, sectors, energy, face, from_right=False)
+    left, right, slope = _both_ratios(profile, x_nm, energy_eV)
     real, imag = right[0] - left[0], right[1] - left[1]
     size = real**2 + imag**2
     waves = imag
     if not profile.is_parabolic:
-        slope = np.append(sectors.mass_slope[0], sectors.mass_slope[1, -1])[face][:, None]
         # Waves from the left have the right solution's f / psi, and the other way round.
         from_left = left[1] * (right[0] ** 2 + right[1] ** 2)
         from_right = right[1] * (left[0] ** 2 + left[1] ** 2)
         waves = imag + slope / C_EV_NM2 * (from_right - from_left)
     with np.errstate(invalid="ignore", divide="ignore"):
         return np.where(imag > 0.0, waves / size, 0.0) / np.pi
+
+
+def injected_density_of_states(
+    profile: Profile, x_nm: FloatArray, energy_eV: FloatArray
+) -> FloatArray:
+    """Local density of the states that come in from each contact, per spin, in 1 / (eV nm).
+
+    With the ratios f / psi of the two leaving solutions, ``|G|^2`` times the flux that leaves to
+    one side is what that side brings in (S. Datta, Electronic Transport in Mesoscopic Systems
+    (1995), ch. 3, from memory). It equals ``|psi|^2 / (2 pi hbar v)`` for a wave of unit density
+    and velocity v in that contact.
+
+    Parameters
+    ----------
+    x_nm : ndarray, shape (X,)
+        Positions in the stack.
+    energy_eV : ndarray, shape (E,)
+        Energies.
+
+    Returns
+    -------
+    ndarray, shape (2, X, E)
+        From the left contact and from the right one.
+
+    Raises
+    ------
+    StructureError
+        A position outside the stack.
+    """
+    left, right, slope = _both_ratios(profile, x_nm, energy_eV)
+    size = (right[0] - left[0]) ** 2 + (right[1] - left[1]) ** 2
+    flux = np.stack([-left[1], right[1]])
+    valence = np.stack([right[0] ** 2 + right[1] ** 2, left[0] ** 2 + left[1] ** 2])
+    density = flux * (1.0 + slope / C_EV_NM2 * valence)
+    with np.errstate(invalid="ignore", divide="ignore"):
+        return np.where(flux > 0.0, density / size, 0.0) / np.pi
+
+
+def _both_ratios(
+    profile: Profile, x_nm: FloatArray, energy_eV: FloatArray
+) -> tuple[tuple[FloatArray, FloatArray], tuple[FloatArray, FloatArray], FloatArray]:
+    """Ratios f / psi of the solutions that leave to the left and to the right, as `_ratios`.
+
+    And the mass slope at each position, shape (X, 1).
+    """
+    x = np.asarray(x_nm, dtype=np.float64)
+    energy = np.atleast_1d(np.asarray(energy_eV, dtype=np.float64))
+    if x.size == 0 or not (x.min() >= profile.start_nm and x.max() <= profile.end_nm):
+        allowed = f"positions lie between {profile.start_nm:g} and {profile.end_nm:g} nm"
+        raise StructureError("profile", "x_nm", x.tolist()[:3], allowed)
+    sectors = cut(profile, float(energy.min()), float(energy.max()), marks_nm=x)
+    face = _nearest_face(sectors, x)
+    right = _ratios(profile, sectors, energy, face, from_right=True)
+    left = _ratios(profile, sectors, energy, face, from_right=False)
+    slope = np.append(sectors.mass_slope[0], sectors.mass_slope[1, -1])[face][:, None]
+    return left, right, slope
 
 
 def _ratios(
@@ -214,8 +261,8 @@ def _density(
     valence = sectors.mass_slope[0, 0] / C_EV_NM2 * abs(flux[0]) ** 2
     first = (abs(psi[0]) ** 2 + valence) * math.exp(2.0 * float(log_scale[0]))
     x = sectors.position_nm[:-1] + stops[:, None] * sectors.length_nm
-    x = np.append(0.0, x.T.ravel())
-    x[-1] = profile.length_nm
+    x = np.append(profile.start_nm, x.T.ravel())
+    x[-1] = profile.end_nm
     return Density(
         x, profile.edge_eV(x), np.append(first, inside.T.ravel()), float(np.real(energy)), norm
     )

@@ -7,9 +7,8 @@ from dataclasses import dataclass
 import numpy as np
 
 from physics.levels import Level
-from physics.scattering import scatter
 from physics.wavefunction import Density, level_state, scattering_state
-from tui.study import Study
+from tui.study import Study, scatter_scene
 
 
 @dataclass(frozen=True, eq=False)
@@ -44,7 +43,7 @@ def read_level(study: Study, number: int) -> Reading:
 def _reading(
     study: Study, energy_eV: float, number: int | None, level: Level | None, density: Density | None
 ) -> Reading:
-    at = scatter(study.profile, np.array([energy_eV]))
+    at = scatter_scene(study.scene, np.array([energy_eV]))
     return Reading(
         energy_eV=energy_eV,
         number=number,

@@ -2,18 +2,25 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable
+from collections.abc import Callable, Iterator
 from dataclasses import dataclass, replace
+from functools import cached_property
+
+import numpy as np
+from numpy.typing import NDArray
 
 from physics.advice import Advice, advise
+from physics.dephasing import Dephasing, scatter_dephased, wells_of
 from physics.errors import EnergyError
 from physics.field import Profile, go_on, uniform_field, valence_top
 from physics.levels import LevelSet, find_levels
-from physics.scattering import Scattering
+from physics.poisson import screened_field
+from physics.scattering import ENERGIES_AT_ONCE, Scattering, scatter
+from physics.screening import ScreeningReport
 from physics.spectrum import adaptive_spectrum
 from physics.structure import Structure
-from tui.session.model import Session
-from tui.session.resolve import resolve
+from tui.session.model import Conditions, Session
+from tui.session.resolve import dephasing_of, resolve
 
 FLAT_EV = 1e-3
 """A stack whose edges differ by less has no barrier to take a window from."""
@@ -43,6 +50,15 @@ class Scene:
     from_eV: float
     to_eV: float
     max_width_eV: float
+    dephasing_eV: float = 0.0
+    """Width by which lost coherence broadens levels in wells; 0 for the coherent answer."""
+    screening: ScreeningReport | None = None
+    """How Poisson's equation was solved; None where the field is uniform."""
+
+    @cached_property
+    def dephasing(self) -> Dephasing:
+        """How coherence is lost, and in which layers."""
+        return Dephasing(self.dephasing_eV, wells_of(self.structure))
 
 
 @dataclass(frozen=True, eq=False)
@@ -62,7 +78,9 @@ class Study:
     @property
     def reached(self) -> bool:
         """Whether the count was proved and every stated accuracy met."""
-        return self.levels.complete and self.levels.accurate
+        screening = self.scene.screening
+        bent = screening is None or screening.converged
+        return bent and self.levels.complete and self.levels.accurate
 
 
 def set_scene(request: Request, watch: Callable[[], None] = go_on) -> Scene:
@@ -81,8 +99,7 @@ def set_scene(request: Request, watch: Callable[[], None] = go_on) -> Scene:
         The session does not describe something that can be computed.
     """
     structure = resolve(request.session)
-    conditions = request.session.conditions
-    profile = uniform_field(structure, conditions.bias_V, band=conditions.band)
+    profile, screening = _field(request.session.conditions, structure, watch)
     profile = replace(profile, watch=watch)
     low, high = energy_window(profile)
     view = request.session.view
@@ -94,7 +111,8 @@ def set_scene(request: Request, watch: Callable[[], None] = go_on) -> Scene:
             f"the band edges reach from {low:g} to {high:g} eV"
         )
     width = _first(request.max_width_eV, view.max_width_eV)
-    return Scene(request, structure, profile, start, stop, width)
+    lost = dephasing_of(request.session, structure.left.mass)
+    return Scene(request, structure, profile, start, stop, width, lost, screening)
 
 
 def solve(request: Request, watch: Callable[[], None] = go_on) -> Study:
@@ -107,10 +125,55 @@ def solve(request: Request, watch: Callable[[], None] = go_on) -> Study:
     """
     scene = set_scene(request, watch)
     levels = find_levels(scene.profile, scene.from_eV, scene.to_eV, scene.max_width_eV)
-    spectrum = adaptive_spectrum(scene.profile, scene.from_eV, scene.to_eV, levels)
+    lost = scene.dephasing
+    spectrum = adaptive_spectrum(scene.profile, scene.from_eV, scene.to_eV, levels, lost)
     temperature = request.session.conditions.temperature_K
-    notes = advise(scene.structure, scene.profile, temperature, levels, spectrum)
+    notes = advise(
+        scene.structure,
+        scene.profile,
+        temperature,
+        levels,
+        spectrum,
+        dephasing=lost,
+        screening=scene.screening,
+    )
     return Study(scene, levels, spectrum, notes)
+
+
+def scatter_scene(scene: Scene, energy_eV: NDArray[np.float64]) -> Scattering:
+    """T and R with lost coherence, all else of the coherent wave, at given energies (E,)."""
+    plain = scatter(scene.profile, energy_eV)
+    if not scene.dephasing.acts:
+        return plain
+    lost = scatter_dephased(scene.profile, scene.structure, energy_eV, scene.dephasing_eV)
+    return replace(
+        plain,
+        transmission=lost.transmission,
+        reflection=lost.reflection,
+        log10_transmission=lost.log10_transmission,
+    )
+
+
+def scatter_scene_in_parts(scene: Scene, energy_eV: NDArray[np.float64]) -> Iterator[Scattering]:
+    """As `scatter_scene`, a part of the energies at a time."""
+    for first in range(0, energy_eV.size, ENERGIES_AT_ONCE):
+        yield scatter_scene(scene, energy_eV[first : first + ENERGIES_AT_ONCE])
+
+
+def _field(
+    conditions: Conditions, structure: Structure, watch: Callable[[], None]
+) -> tuple[Profile, ScreeningReport | None]:
+    if conditions.field == "uniform":
+        return uniform_field(structure, conditions.bias_V, band=conditions.band), None
+    screened = screened_field(
+        structure,
+        conditions.bias_V,
+        conditions.temperature_K,
+        charge=conditions.charge,
+        band=conditions.band,
+        watch=watch,
+    )
+    return screened.profile, screened.report
 
 
 def energy_window(profile: Profile) -> tuple[float, float]:

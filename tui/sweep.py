@@ -11,8 +11,10 @@ from collections.abc import Callable
 from dataclasses import dataclass, replace
 
 import numpy as np
+from numpy.typing import NDArray
 
-from physics.curve import Curve, Drive, curve_at, own_curve
+from physics.curve import Curve, Drive, curve_at, even_biases, own_curve
+from physics.dephasing import Dephasing, wells_of
 from physics.device import (
     HOT_W_PER_CM2,
     Figures,
@@ -24,10 +26,15 @@ from physics.errors import EnergyError
 from physics.extremes import Region, main_region, regions
 from physics.field import Profile, go_on, uniform_field
 from physics.levels import Level, find_levels
+from physics.screening import ScreeningReport
+from physics.solutions import Solutions, solutions_over
 from physics.structure import Structure
+from tui.session.lines import KeyPath
 from tui.session.model import Session
-from tui.session.resolve import resolve
+from tui.session.refusal import SessionError
+from tui.session.resolve import dephasing_of, resolve
 
+NEEDS_ELECTRONS = "a current needs electrons: state donors_cm3 or fermi_eV of both contacts"
 STEP_V, LEAST_V, MOST_V = 0.1, 0.3, 2.0
 """A range of its own ends at a multiple of the step, between these."""
 NEAR_LEVEL_EV = 0.02
@@ -54,18 +61,21 @@ class Sweep:
     from_V: float
     to_V: float
     curve: Curve
-    regions: tuple[Region, ...]
-    main: Region | None
-    """The peak that a reader asks for."""
-    figures: Figures | None
-    notes: tuple[str, ...]
     refined: bool
     """False for a first answer, whose features are not sought yet."""
+    regions: tuple[Region, ...] = ()
+    main: Region | None = None
+    """The peak that a reader asks for."""
+    figures: Figures | None = None
+    screening: tuple[ScreeningReport, ...] = ()
+    """How Poisson's equation was solved at each bias, where the field is the screened one."""
+    notes: tuple[str, ...] = ()
 
     @property
     def reached(self) -> bool:
-        """Whether every current reached the stated accuracy."""
-        return bool(self.curve.reached.all())
+        """Whether every field converged and every current reached the stated accuracy."""
+        bent = all(report.converged for report in self.screening)
+        return bent and bool(self.curve.reached.all())
 
 
 def sweep(
@@ -88,31 +98,58 @@ def sweep(
         The session does not describe something that can be computed, or no electrons are stated.
     """
     structure = resolve(request.session)
+    if structure.left.fermi_eV is None:
+        path: KeyPath = ("left", "donors_cm3")
+        raise SessionError("left donors_cm3", "is missing", NEEDS_ELECTRONS, path=path)
     start, stop = _range(request, structure)
-    drive = drive_of(request.session, structure, watch)
+    drive, solutions = drive_of(request.session, structure, (start, stop), watch)
 
     def first(curve: Curve) -> Sweep:
-        return Sweep(request, structure, start, stop, curve, (), None, None, (), refined=False)
+        return Sweep(request, structure, start, stop, curve, refined=False)
 
     if request.points is None:
         told = None if tell is None else (lambda curve: tell(first(curve)))
         curve = own_curve(drive, start, stop, told)
     else:
-        curve = curve_at(drive, np.linspace(start, stop, request.points))
-    return _finished(first(curve), drive)
+        curve = curve_at(drive, even_biases(start, stop, request.points))
+    return _finished(first(curve), drive, solutions)
 
 
-def drive_of(session: Session, structure: Structure, watch: Callable[[], None] = go_on) -> Drive:
-    """Say what the bands are at any bias, by the session's field model."""
+def drive_of(
+    session: Session,
+    structure: Structure,
+    range_V: tuple[float, float],
+    watch: Callable[[], None] = go_on,
+) -> tuple[Drive, Solutions | None]:
+    """Say what the bands are at any bias of a range, by the session's field model.
+
+    Returns
+    -------
+    drive : Drive
+    solutions : Solutions, optional
+        Of Poisson's equation, where the field is the screened one; they come as they are needed.
+    """
     conditions = session.conditions
+    solutions = None
+    if conditions.field == "screened":
+        solutions = solutions_over(
+            structure,
+            conditions.temperature_K,
+            range_V,
+            charge=conditions.charge,
+            band=conditions.band,
+            watch=watch,
+        )
 
-    def profiles(bias_V: np.ndarray[tuple[int], np.dtype[np.float64]]) -> list[Profile]:
+    def uniform(bias_V: NDArray[np.float64]) -> list[Profile]:
         return [
             replace(uniform_field(structure, bias, band=conditions.band), watch=watch)
             for bias in bias_V.tolist()
         ]
 
-    return Drive(structure, conditions.temperature_K, profiles, watch)
+    lost = Dephasing(dephasing_of(session, structure.left.mass), wells_of(structure))
+    profiles = uniform if solutions is None else solutions.profiles
+    return Drive(structure, conditions.temperature_K, profiles, watch, lost), solutions
 
 
 def _range(request: SweepRequest, structure: Structure) -> tuple[float, float]:
@@ -134,7 +171,7 @@ def suggested_V(structure: Structure) -> float:
     return min(max(wanted, LEAST_V), MOST_V)
 
 
-def _finished(first: Sweep, drive: Drive) -> Sweep:
+def _finished(first: Sweep, drive: Drive, solutions: Solutions | None) -> Sweep:
     found = regions(drive, first.curve)
     main = main_region(found, first.curve)
     figures = None
@@ -143,9 +180,16 @@ def _finished(first: Sweep, drive: Drive) -> Sweep:
         stated = first.request.session.device
         mesa = Mesa(stated.mesa_um2, stated.series_ohm, stated.parallel_fF)
         level = carrying_level(first.curve, profile, main.peak.bias_V)
-        capacitance = plate_capacitance_F_per_cm2(first.structure)
+        if solutions is None:
+            capacitance = plate_capacitance_F_per_cm2(first.structure)
+        else:
+            capacitance = solutions.space_charge_F_per_cm2(main.peak.bias_V)
         figures = device_figures(main, profile, level, mesa, capacitance)
-    done = replace(first, regions=found, main=main, figures=figures, refined=True)
+    known = {} if solutions is None else solutions.known
+    reports = tuple(known[bias].report for bias in sorted(known))
+    done = replace(
+        first, regions=found, main=main, figures=figures, screening=reports, refined=True
+    )
     return replace(done, notes=_notes(done))
 
 
@@ -163,7 +207,7 @@ def carrying_level(curve: Curve, profile: Profile, bias_V: float) -> Level | Non
 
 
 def _notes(done: Sweep) -> tuple[str, ...]:
-    notes = []
+    notes = [*_said_of_screening(done.screening)]
     late = ~done.curve.reached
     if late.any():
         worst = done.curve.error_A_per_cm2[late] / np.maximum(
@@ -183,5 +227,36 @@ def _notes(done: Sweep) -> tuple[str, ...]:
             "can burn out in continuous operation: limit the current, sink the heat or pulse it, "
             "and follow your laboratory's rules"
         )
-    notes.append("coherent: no scattering is counted; a measured valley is higher, a peak rounder")
+    notes.append(_said_of_coherence(done))
     return tuple(notes)
+
+
+def _said_of_screening(reports: tuple[ScreeningReport, ...]) -> list[str]:
+    if not reports:
+        return []
+    failed = [report for report in reports if not report.converged]
+    if failed:
+        text = (
+            f"screening: {len(failed)} of {len(reports)} fields did not converge, their currents "
+            f"are those of the last step: {failed[0].reason}"
+        )
+        return [text]
+    residual = max(report.residual for report in reports)
+    neutrality = max(report.neutrality for report in reports)
+    off = max(report.mesh_error_eV for report in reports)
+    text = (
+        f"screening: {reports[0].model}; at all {len(reports)} biases residual up to "
+        f"{residual:.0e}, total charge up to {neutrality:.0e} of all charges, edge good to "
+        f"{1e3 * off:.2g} meV"
+    )
+    return [text]
+
+
+def _said_of_coherence(done: Sweep) -> str:
+    lost = dephasing_of(done.request.session, done.structure.left.mass)
+    if lost == 0.0:
+        return "coherent: no scattering is counted; a measured valley is higher, a peak rounder"
+    return (
+        f"coherence: wells lose it with a width of {1e3 * lost:.3g} meV; the curve without it, and "
+        "one with a larger width, bracket what is measured"
+    )

@@ -7,6 +7,7 @@ from dataclasses import replace
 import pytest
 
 from physics.advice import Advice, advise, scattering_width_eV
+from physics.dephasing import COHERENT, Dephasing, wells_of
 from physics.field import uniform_field
 from physics.levels import find_levels
 from physics.spectrum import adaptive_spectrum
@@ -14,11 +15,16 @@ from physics.structure import Structure
 from reference.stacks import stack, two_barriers
 
 
-def notes(structure: Structure, bias: float = 0.0, temperature: float = 300.0) -> list[Advice]:
+def notes(
+    structure: Structure,
+    bias: float = 0.0,
+    temperature: float = 300.0,
+    dephasing: Dephasing = COHERENT,
+) -> list[Advice]:
     profile = uniform_field(structure, bias)
     levels = find_levels(profile, 0.0, 0.3)
     spectrum = adaptive_spectrum(profile, 0.0, 0.3, levels)
-    return list(advise(structure, profile, temperature, levels, spectrum))
+    return list(advise(structure, profile, temperature, levels, spectrum, dephasing=dephasing))
 
 
 def with_layer(structure: Structure, number: int, **changes: object) -> Structure:
@@ -67,6 +73,30 @@ def test_coherence_depends_on_temperature() -> None:
     assert scattering_width_eV(0.01) == pytest.approx(2e-4)
     # About 2.5 meV at room temperature: the order of a mobility of 8000 cm^2/Vs (common practice).
     assert 1.5e-3 < scattering_width_eV(300.0) < 4e-3
+
+
+def test_a_stated_dephasing_width_says_what_it_does() -> None:
+    structure = two_barriers(4.0, 5.0, 4.0)
+    lost = Dephasing(5e-3, wells_of(structure))
+    (note,) = notes(structure, dephasing=lost)
+    assert note.topic == "coherence"
+    level = find_levels(uniform_field(structure), 0.0, 0.3).levels[0]
+    total = level.width_eV + lost.of_level_eV(level.share_by_layer)
+    assert f"level 1, the narrowest, is {1e3 * total:.3g} meV wide in all" in note.text
+    assert f"by a factor of {total / level.width_eV:.3g};" in note.text
+
+
+def test_a_dephasing_width_without_a_well_is_said_to_do_nothing() -> None:
+    structure = stack([(2.0, 0.3, 0.09)])
+    (note,) = notes(structure, dephasing=Dephasing(5e-3, wells_of(structure)))
+    assert note.topic == "coherence"
+    assert "T is coherent" in note.text
+
+
+def test_a_level_narrower_than_any_double() -> None:
+    structure = stack([(160.0, 1.0, 0.3), (5.0, 0.0, 0.067), (150.0, 1.0, 0.3)])
+    (note,) = notes(structure, dephasing=Dephasing(1e-3, wells_of(structure)))
+    assert "its peak lower by a factor of 1e" in note.text
 
 
 def test_permittivity() -> None:

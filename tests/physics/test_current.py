@@ -1,6 +1,7 @@
 """Currents against a reference of many digits and the closed forms of the limits."""
 
 import math
+from dataclasses import replace
 from itertools import pairwise
 
 import mpmath as mp
@@ -10,10 +11,12 @@ import pytest
 from physics.constants import BOLTZMANN_EV_PER_K, HBAR2_OVER_2M0_EV_NM2
 from physics.current import Currents, current_scale, tsu_esaki
 from physics.curve import Drive, curve_at
+from physics.dephasing import Dephasing, scatter_dephased, wells_of
 from physics.errors import StructureError
 from physics.family import family_of
 from physics.field import uniform_field
 from physics.levels import find_levels
+from physics.scattering import scatter
 from physics.structure import Contact, Structure
 from reference import tsu_esaki as reference
 from reference.stacks import as_reference, stack, two_barriers
@@ -78,9 +81,7 @@ def test_against_many_digits(
     with mp.workdps(30):
         poles = [complex(x.energy_eV, -0.5 * x.width_eV) for x in levels]
         exact = float(
-            reference.current(
-                as_reference(structure, drop_V), poles, mu, temperature_K, (0.0, top)
-            )
+            reference.current(as_reference(structure, drop_V), poles, mu, temperature_K, (0.0, top))
         )
     current, error = found.current_density_A_per_cm2[0], found.error_A_per_cm2[0]
     assert found.reached.all()
@@ -226,8 +227,6 @@ def test_flat_stack_carries_what_the_contacts_send() -> None:
 
 def test_random_stacks_against_an_even_grid() -> None:
     """Random stacks against the trapezoidal rule on two million energies, lines permitting."""
-    from physics.scattering import scatter
-
     rng = np.random.default_rng(7)
     kT = kT_eV(200.0)
     for _ in range(6):
@@ -251,6 +250,76 @@ def test_random_stacks_against_an_even_grid() -> None:
         )
 
 
+@pytest.mark.parametrize("width_eV", [1e-13, 1e-9, 1e-6, 1e-4])
+def test_lost_coherence_keeps_a_narrow_level_s_current(width_eV: float) -> None:
+    """The area under T stays (Stone and Lee, Phys. Rev. Lett. 54, 1196 (1985), from memory)."""
+    structure = two_barriers(17.0, 5.0, 17.0)
+    (level,) = find_levels(uniform_field(structure), 1e-6, 0.28).levels
+    assert level.width_eV < 1e-10
+    mu = (level.energy_eV + 0.06, level.energy_eV + 0.05)
+    family = family_of([uniform_field(structure)])
+    ends = (np.array([x]) for x in mu)
+    lost = Dephasing(width_eV, wells_of(structure))
+    found = tsu_esaki(family, *ends, 20.0, MASS, dephasing=lost)
+    area = 2.0 * math.pi * level.left_width_eV * level.right_width_eV / level.width_eV
+    expected = current_scale(MASS) * area * 0.01
+    assert found.by_level_A_per_cm2[0, 0] == pytest.approx(expected, rel=0.02)
+    assert found.reached.all()
+
+
+def test_lost_coherence_lowers_the_peak_and_lifts_the_valley() -> None:
+    structure = with_electrons(two_barriers(3.0, 5.0, 3.0), 0.03)
+    bias = np.linspace(0.0, 0.35, 36)
+    plain = curve_at(drive(structure, 77.0), bias).current_density_A_per_cm2
+    lost = replace(drive(structure, 77.0), dephasing=Dephasing(5e-3, wells_of(structure)))
+    broad = curve_at(lost, bias).current_density_A_per_cm2
+    assert broad[0] == 0.0
+    assert broad.max() < plain.max()
+    top = int(plain.argmax())
+    assert np.all(broad[top + 4 : top + 10] > 1.2 * plain[top + 4 : top + 10])
+
+
+@pytest.mark.parametrize("width_eV", [1e-5, 3e-3])
+def test_lost_coherence_against_an_even_grid(width_eV: float) -> None:
+    """The trapezoidal rule over what `physics.dephasing` gives at each energy."""
+    structure = two_barriers(2.5, 5.0, 3.5)
+    drop, mu, kT = 0.08, (0.05, 0.01), kT_eV(200.0)
+    profile = uniform_field(structure, drop)
+    lost = Dephasing(width_eV, wells_of(structure))
+    family = family_of([profile])
+    found = tsu_esaki(family, np.array(mu[:1]), np.array(mu[1:]), 200.0, MASS, dephasing=lost)
+    energy = np.linspace(0.0, 1.0, 200_001)
+    through = scatter_dephased(profile, structure, energy[1:], width_eV).transmission
+    supply = kT * (
+        np.logaddexp(0.0, (mu[0] - energy) / kT) - np.logaddexp(0.0, (mu[1] - energy) / kT)
+    )
+    plain = np.trapezoid(np.append(0.0, through) * supply, energy)
+    assert found.current_density_A_per_cm2[0] == pytest.approx(
+        current_scale(MASS) * plain, rel=2e-5
+    )
+
+
+def test_two_band_current_is_that_of_its_transmission() -> None:
+    """The trapezoidal rule over T with a mass that goes with the energy."""
+    plain = two_barriers(2.0, 4.0, 2.0)
+    layers = tuple(replace(layer, gap_eV=1.4) for layer in plain.layers)
+    ends = (replace(side, gap_eV=1.4) for side in (plain.left, plain.right))
+    structure = Structure(next(ends), layers, next(ends))
+    profile = uniform_field(structure, 0.05, band="kane")
+    mu, kT = (0.05, 0.0), kT_eV(300.0)
+    found = tsu_esaki(
+        family_of([profile]), np.array(mu[:1]), np.array(mu[1:]), 300.0, MASS
+    ).current_density_A_per_cm2[0]
+    energy = np.linspace(1e-9, 1.2, 100_001)
+    supply = kT * (
+        np.logaddexp(0.0, (mu[0] - energy) / kT) - np.logaddexp(0.0, (mu[1] - energy) / kT)
+    )
+    exact = np.trapezoid(scatter(profile, energy).transmission * supply, energy)
+    assert found == pytest.approx(current_scale(MASS) * exact, rel=2e-5)
+    flat = between(plain, mu, 300.0, 0.05).current_density_A_per_cm2[0]
+    assert abs(found / flat - 1.0) > 0.01
+
+
 def test_no_electrons_no_answer() -> None:
     with pytest.raises(StructureError, match="donors_cm3 or fermi_eV"):
         curve_at(drive(two_barriers()), np.array([0.1]))
@@ -271,14 +340,9 @@ def test_two_levels_that_all_but_coincide() -> None:
     assert levels[1].energy_eV - levels[0].energy_eV < 1e-4
     found = between(structure, (0.15, 0.14), 4.0)
     energy = np.concatenate(
-        [
-            x.energy_eV + 0.5 * x.width_eV * np.sinh(np.linspace(-14.0, 14.0, 4001))
-            for x in levels
-        ]
+        [x.energy_eV + 0.5 * x.width_eV * np.sinh(np.linspace(-14.0, 14.0, 4001)) for x in levels]
     )
     energy = np.unique(np.clip(energy, 1e-6, 0.145))
-    from physics.scattering import scatter
-
     through = scatter(uniform_field(structure), energy).transmission
     kT = kT_eV(4.0)
     supply = kT * (
@@ -286,5 +350,3 @@ def test_two_levels_that_all_but_coincide() -> None:
     )
     plain = np.trapezoid(through * supply, energy)
     assert found.by_level_A_per_cm2.sum() == pytest.approx(current_scale(MASS) * plain, rel=1e-3)
-
-

@@ -12,9 +12,10 @@ from hypothesis import strategies as st
 
 from physics.constants import HBAR2_OVER_2M0_EV_NM2 as C
 from physics.constants import HBAR_EV_S
-from physics.errors import EnergyError
+from physics.errors import EnergyError, StructureError
 from physics.field import uniform_field
-from physics.levels import find_levels
+from physics.levels import find_levels, follow_levels
+from physics.ranges import THICKNESS_NM
 from physics.scattering import scatter
 from physics.structure import Structure
 from reference import integrated, many_digits
@@ -192,6 +193,17 @@ def test_count_of_a_superlattice_band() -> None:
     assert [level.nodes for level in found.levels] == list(range(30))
 
 
+def test_the_thinnest_layer_that_is_taken() -> None:
+    """A well far thinner than its wave binds at (V d)^2 m / 4c, as a delta function does."""
+    thickness_nm, edge_eV, mass = THICKNESS_NM.low, -0.3, 0.067
+    profile = uniform_field(stack([(thickness_nm, edge_eV, mass)]))
+    (level,) = find_levels(profile, -0.3, 0.3).levels
+    binding_eV = (edge_eV * thickness_nm) ** 2 * mass / (4.0 * C)
+    assert level.energy_eV == pytest.approx(-binding_eV, rel=1e-3)
+    with pytest.raises(StructureError, match="1e-6"):
+        stack([(0.5 * thickness_nm, edge_eV, mass)])
+
+
 def test_no_barrier_no_level() -> None:
     profile = uniform_field(stack([(5.0, 0.0, 0.067)]))
     found = find_levels(profile, 0.0, 0.5, 0.05)
@@ -260,3 +272,18 @@ def test_every_narrow_line_of_the_spectrum_is_a_level(
     for peak in peaks:
         assert places.size
         assert np.any(np.abs(places - peak) < 2.0 * reach)
+
+
+def test_levels_are_followed_through_a_small_change() -> None:
+    """As `find_levels` finds them, bound, narrow and broad; one that crosses an edge too."""
+    layers = [(3.0, 0.3, 0.09), (9.0, -0.15, 0.067), (2.5, 0.3, 0.09)]
+    structure = stack(layers)
+    for bias, change in ((0.1, 1e-4), (0.1, 3e-3), (0.004, -0.008)):
+        before = find_levels(uniform_field(structure, bias), -0.3, 0.3)
+        profile = uniform_field(structure, bias + change)
+        expected = find_levels(profile, -0.3, 0.3)
+        found = follow_levels(profile, before)
+        assert len(found.levels) == len(expected.levels) > 2
+        for one, other in zip(found.levels, expected.levels, strict=True):
+            assert one.energy_eV == pytest.approx(other.energy_eV, abs=1e-12)
+            assert one.width_eV == pytest.approx(other.width_eV, rel=1e-8)

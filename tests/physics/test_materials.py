@@ -15,7 +15,9 @@ from physics.errors import MaterialError
 from physics.formula import GROUP_III, GROUP_V
 from physics.materials import MAX_TEMPERATURE_K, Material, material
 
-NUMBERS = [field.name for field in dataclasses.fields(Material) if field.name != "name"]
+NUMBERS = [
+    field.name for field in dataclasses.fields(Material) if field.name not in {"name", "elastic"}
+]
 COMPOUNDS = [a + b for a in GROUP_III for b in GROUP_V]
 
 shares = st.floats(0.0, 1.0)
@@ -23,7 +25,7 @@ temperatures = st.floats(0.0, 400.0)
 
 
 def numbers(of: Material) -> dict[str, float]:
-    return {key: getattr(of, key) for key in NUMBERS}
+    return {key: getattr(of, key) for key in NUMBERS} | dataclasses.asdict(of.elastic)
 
 
 def mix(cations: dict[str, float], anions: dict[str, float]) -> str:
@@ -45,6 +47,8 @@ def test_a_compound_has_the_values_of_its_rows(name: str) -> None:
     assert (found.mass, found.permittivity) == (row.mass.value, row.permittivity.value)
     assert found.monolayer_nm == 0.5 * row.lattice_nm.value
     assert material(name, 300.0).lattice_nm == row.lattice_nm.value
+    for key, value in dataclasses.asdict(found.elastic).items():
+        assert value == getattr(row, key).value
 
 
 @pytest.mark.parametrize("name", COMPOUNDS)
@@ -90,6 +94,8 @@ def test_a_ternary_follows_its_quadratic_law(
         ("mass", (first.mass, second.mass), found.mass),
         ("permittivity", (first.permittivity, second.permittivity), found.permittivity),
         ("lattice_nm", (first.lattice_nm, second.lattice_nm), found.lattice_nm),
+        ("c11_GPa", (first.elastic.c11_GPa, second.elastic.c11_GPa), found.elastic.c11_GPa),
+        ("a_c_eV", (first.elastic.a_c_eV, second.elastic.a_c_eV), found.elastic.a_c_eV),
     ]:
         row = rows.get(quantity)
         bow = 0.0 if row is None else row.constant + row.per_x * x

@@ -37,9 +37,7 @@ def test_gauss_is_exact_to_degree_13(power: int) -> None:
 def test_a_line_however_narrow(half_width: float) -> None:
     """Integral of 1 / (1 + (x/g)^2) from -a to a is 2 g atan(a/g)."""
     ends = np.linspace(-math.asinh(0.1 / half_width), math.asinh(0.1 / half_width), 120)
-    panels = joined(
-        [panel(PEAK, 0.3, half_width, a, b) for a, b in pairwise(ends)]
-    )
+    panels = joined([panel(PEAK, 0.3, half_width, a, b) for a, b in pairwise(ends)])
     distance, dx = panels.nodes()
     integral, error = estimate(1.0 / (1.0 + (distance / half_width) ** 2), dx)
     exact = 2.0 * half_width * math.atan(0.1 / half_width)

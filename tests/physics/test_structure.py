@@ -15,6 +15,8 @@ LAYER = Layer(2.0, 0.3, 0.092)
     ("layer", "key"),
     [
         (Layer(0.0, 0.3, 0.092), "thickness_nm"),
+        (Layer(5e-324, 0.3, 0.092), "thickness_nm"),
+        (Layer(1e-12, 0.3, 0.092), "thickness_nm"),
         (Layer(-1.0, 0.3, 0.092), "thickness_nm"),
         (Layer(math.nan, 0.3, 0.092), "thickness_nm"),
         (Layer(math.inf, 0.3, 0.092), "thickness_nm"),

@@ -25,8 +25,24 @@ from tui.study import Request, set_scene, solve
 
 DEMO = read_session(demo_text(), "demo")
 HEAD = ["schema", "command", "title", "conditions"]
-CONDITIONS = ["temperature_K", "bias_V", "field", "band"]
+LOST = ["dephasing_eV", "scattering_time_s", "mobility_cm2_Vs"]
+CONDITIONS = ["temperature_K", "bias_V", "field", "charge", "band", *LOST]
 SPECTRUM = ["energy_eV", "transmission", "log10_transmission", "reflection"]
+IV = [
+    "bias_V",
+    "current_density_A_per_cm2",
+    "error_A_per_cm2",
+    "conductance_S_per_cm2",
+    "reached",
+    "peak",
+    "valley",
+    "peak_to_valley",
+    "onset_V",
+    "regions",
+    "levels",
+    "figures",
+    "notes",
+]
 LEVEL = [
     "number",
     "energy_eV",
@@ -101,7 +117,8 @@ def as_json(capsys: pytest.CaptureFixture[str], *arguments: str) -> dict[str, An
         (["levels"], [*LEVELS, "advice"]),
         (["profile"], PROFILE),
         (["profile", "--energy", "0.1"], PROFILE),
-        (["report"], ["left", "layers", "right", *LEVELS, "spectrum", "advice"]),
+        (["report"], ["left", "layers", "right", *LEVELS, "spectrum", "advice", "current"]),
+        (["iv", "--points", "5"], IV),
     ],
 )
 def test_keys(
@@ -110,12 +127,9 @@ def test_keys(
     result = as_json(capsys, arguments[0], design, *arguments[1:])
     assert list(result) == [*HEAD, *keys]
     assert (result["schema"], result["command"]) == (1, arguments[0])
-    assert result["conditions"] == {
-        "temperature_K": 300.0,
-        "bias_V": 0.0,
-        "field": "uniform",
-        "band": "parabolic",
-    }
+    said = {"temperature_K": 300.0, "bias_V": 0.0, "field": "uniform"}
+    said |= {"charge": "semi-classical", "band": "parabolic"}
+    assert result["conditions"] == said | dict.fromkeys(LOST)
 
 
 def test_keys_within(capsys: pytest.CaptureFixture[str], design: str) -> None:

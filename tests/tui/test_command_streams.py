@@ -50,7 +50,7 @@ def shell(command: str) -> subprocess.CompletedProcess[str]:
         ("winze <&-", 2, "the workbench needs a terminal"),
         ("winze >&-", 2, "the workbench needs a terminal"),
         ("winze a.toml <&- >&-", 2, "the workbench needs a terminal"),
-        ("winze iv - --from 0 --to 1 --points 3", 2, "'iv'"),
+        ("winze ivy - --from 0 --to 1 --points 3", 2, "'ivy'"),
         ("winze levels - -o /dev/null/x", 2, "it cannot be written; not a directory"),
     ],
 )
@@ -150,3 +150,26 @@ def test_a_number_that_python_will_not_write(
 def test_the_version_is_the_distribution_s() -> None:
     project = tomllib.loads((TOP / "pyproject.toml").read_text(encoding="utf-8"))["project"]
     assert project["version"] == VERSION
+
+
+@pytest.mark.skipif(not Path("/proc/self/task").is_dir(), reason="counts threads by /proc")
+def test_products_stay_on_one_thread() -> None:
+    """Several would wait for each other, five times as long where cores are shared."""
+    program = (
+        "import os\n"
+        "from tui.command.entry import main\n"
+        "assert main(['levels', '-', '-o', os.devnull]) == 0\n"
+        "print(len(os.listdir('/proc/self/task')))\n"
+    )
+    inherited = {key: value for key, value in os.environ.items() if not key.endswith("_THREADS")}
+    done = subprocess.run(
+        [sys.executable, "-c", program],
+        input=demo_text(),
+        capture_output=True,
+        text=True,
+        check=False,
+        cwd=TOP,
+        env=inherited,
+        timeout=60,
+    )
+    assert done.stdout == "1\n"

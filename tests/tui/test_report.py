@@ -9,7 +9,8 @@ from functools import lru_cache
 import pytest
 
 from tui.report import quantities
-from tui.report.text import columns, report_text
+from tui.report.layout import columns
+from tui.report.text import report_text
 from tui.session.demo import demo_text
 from tui.session.read import read_session
 from tui.study import Request, Study, solve
@@ -167,7 +168,7 @@ def test_the_report_is_ascii_but_for_what_the_user_typed() -> None:
 
 def test_the_report_of_an_unproved_or_empty_window() -> None:
     study = rich()
-    unproved = replace(study, levels=replace(study.levels, complete=False, counted=-1))
+    unproved = replace(study, levels=replace(study.levels, complete=False))
     assert "the count could not be proved, some may be missing" in report_text(unproved, "x")
     empty = replace(study, levels=replace(study.levels, levels=(), counted=0), advice=())
     text = report_text(empty, "x")

@@ -9,7 +9,7 @@ from dataclasses import replace
 
 import pytest
 
-from tui.session.model import LayerEntry, MaterialEntry, Session, View
+from tui.session.model import Growth, LayerEntry, MaterialEntry, Session, View
 from tui.session.origin import sources
 from tui.session.read import read_session
 from tui.session.write import write_session
@@ -126,6 +126,7 @@ def edit(session: Session, chance: random.Random) -> Session:
         lambda: replace(session, conditions=replace(session.conditions, bias_V=0.25)),
         lambda: replace(session, left=replace(session.left, fermi_eV=0.05)),
         lambda: replace(session, right=replace(session.right, edge_eV=None, material="AlAs")),
+        lambda: replace(session, growth=Growth("InP")),
         lambda: replace(session, view=View(0.0, 1.0, 0.2)),
         lambda: replace(
             session,

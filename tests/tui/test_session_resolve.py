@@ -150,6 +150,7 @@ TWO_NM = "thickness_nm = 2.0"
         (text_of(NUMBERS, f"{GAAS}\n{TWO_NM}", NUMBERS), "layer 1 material", 6, "left contact's"),
         (text_of(NUMBERS, f"{NUMBERS}\n{TWO_NM}", GAAS), "right material", 10, "left contact's"),
         (text_of(GAAS, f"{GAAS}\nthickness_ml = 1e6", GAAS), "layer 1 thickness_nm", 4, "1e5 nm"),
+        (text_of(GAAS, f"{GAAS}\nthickness_ml = 1e-9", GAAS), "layer 1 thickness_nm", 4, "1e-6"),
         (text_of(GAAS, f"{NUMBERS}\nthickness_ml = 9", GAAS), "layer 1 thickness_ml", 7, "nm"),
         (
             text_of(f"{GAAS}\ndonors_cm3 = 1e18", f"{GAAS}\n{TWO_NM}", GAAS),

@@ -16,6 +16,7 @@ from tui.session.demo import demo_text
 from tui.session.model import (
     Conditions,
     ContactEntry,
+    Growth,
     LayerEntry,
     MaterialEntry,
     Session,
@@ -141,10 +142,13 @@ def test_the_comment_of_a_key_that_goes_stays() -> None:
 
 def test_tables_come_and_go() -> None:
     mine = MaterialEntry("Own stuff", 0.2, 0.08)
-    session = replace(SESSION, materials=(mine,), view=View(from_eV=0.1, to_eV=0.2))
+    session = replace(
+        SESSION, materials=(mine,), view=View(from_eV=0.1, to_eV=0.2), growth=Growth("InP")
+    )
     text = written(session)
     assert comments(text) == comments(COMMENTED)
     assert written(SESSION, text).count("[material") == 0
+    assert "substrate" not in written(SESSION, text)
 
 
 INLINE = """\
@@ -177,6 +181,7 @@ words = st.text(st.characters(exclude_categories=["C", "Z"]), max_size=12)
 numbers = st.floats(0.02, 50.0)
 maybe = st.none() | numbers
 gaps = st.none() | st.floats(0.1, 10.0)
+share = st.none() | st.floats(0.0, 1.0)
 layer = st.builds(
     LayerEntry,
     label=words,
@@ -201,11 +206,13 @@ session = st.builds(
         temperature_K=numbers,
         bias_V=numbers,
         band=st.sampled_from(["parabolic", "kane"]),
+        dephasing_eV=share,
     ),
     left=contact,
     layers=st.lists(layer, min_size=1, max_size=5).map(tuple),
     right=contact,
     materials=st.lists(own, max_size=2, unique_by=lambda entry: entry.name).map(tuple),
+    growth=st.builds(Growth, substrate=st.none() | words),
     view=st.builds(View, from_eV=st.none() | st.floats(-1.0, 0.0), to_eV=maybe),
 )
 

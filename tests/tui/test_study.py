@@ -4,15 +4,18 @@ from __future__ import annotations
 
 from dataclasses import replace
 
+import numpy as np
 import pytest
 
 from physics.errors import EnergyError
 from physics.field import uniform_field
+from tui.reading import read_level
 from tui.session.demo import demo_text
 from tui.session.model import ContactEntry, LayerEntry, Session, View
 from tui.session.read import read_session
+from tui.session.refusal import SessionError
 from tui.session.resolve import resolve
-from tui.study import Request, energy_window, set_scene, solve
+from tui.study import Request, energy_window, scatter_scene, set_scene, solve
 
 DEMO = read_session(demo_text(), "demo")
 PLAIN = ContactEntry(edge_eV=0.0, mass=0.067)
@@ -105,3 +108,58 @@ def test_the_window_begins_above_valence_bands() -> None:
     assert solve(Request(session)).reached
     with pytest.raises(EnergyError, match=r"left: 0\.1 eV lies in its valence band"):
         solve(Request(session, from_eV=0.1))
+
+
+def losing(**stated: float) -> Session:
+    return replace(DEMO, conditions=replace(DEMO.conditions, **stated))
+
+
+def test_lost_coherence_lowers_the_peak_and_leaves_the_rest() -> None:
+    coherent, lost = solve(Request(DEMO)), solve(Request(losing(dephasing_eV=5e-3)))
+    assert lost.levels == coherent.levels
+    assert (coherent.scene.dephasing_eV, lost.scene.dephasing_eV) == (0.0, 5e-3)
+    before, after = read_level(coherent, 1), read_level(lost, 1)
+    assert after.transmission < 0.6 * before.transmission
+    assert after.dwell_time_s == before.dwell_time_s
+    at = lost.spectrum.energy_eV
+    assert scatter_scene(lost.scene, at).transmission == pytest.approx(
+        lost.spectrum.transmission, rel=1e-9
+    )
+    assert np.abs(lost.spectrum.transmission + lost.spectrum.reflection - 1.0).max() < 1e-15
+    assert "5 meV of lost coherence" in " ".join(note.text for note in lost.advice)
+
+
+def test_ways_to_state_it_agree() -> None:
+    """hbar over 0.1 ps is 6.582 meV (CODATA 2022)."""
+    width = set_scene(Request(losing(scattering_time_s=1e-13))).dephasing_eV
+    assert width == pytest.approx(6.582119569e-3, rel=1e-9)
+    both = losing(scattering_time_s=1e-13, dephasing_eV=6.5821196e-3)
+    assert set_scene(Request(both)).dephasing_eV == 6.5821196e-3
+    mass = resolve(DEMO).left.mass
+    mobility = 1e-13 / (1e-4 * mass * 9.1093837e-31 / 1.602176634e-19)
+    scene = set_scene(Request(losing(mobility_cm2_Vs=mobility)))
+    assert scene.dephasing_eV == pytest.approx(width, rel=1e-7)
+    assert set_scene(Request(losing(dephasing_eV=0.0))).dephasing_eV == 0.0
+
+
+@pytest.mark.parametrize(
+    ("stated", "key", "said"),
+    [
+        (
+            {"dephasing_eV": 1e-3, "scattering_time_s": 1e-12},
+            "scattering_time_s",
+            "keep one of the two, scattering_time_s or dephasing_eV",
+        ),
+        (
+            {"dephasing_eV": 0.0, "mobility_cm2_Vs": 8000.0},
+            "mobility_cm2_Vs",
+            "keep one of the two, mobility_cm2_Vs or dephasing_eV",
+        ),
+        ({"mobility_cm2_Vs": 1.0}, "mobility_cm2_Vs", "a dephasing width lies between"),
+    ],
+)
+def test_what_disagrees_is_refused(stated: dict[str, float], key: str, said: str) -> None:
+    with pytest.raises(SessionError, match=said) as caught:
+        set_scene(Request(losing(**stated)))
+    assert caught.value.key == f"conditions {key}"
+    assert caught.value.path == ("conditions", key)

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import asyncio
+import os
 from collections.abc import AsyncIterator, Callable
 from contextlib import asynccontextmanager
 from dataclasses import replace
@@ -108,7 +109,7 @@ async def test_typing_a_value_and_being_refused() -> None:
         assert b.app.is_asking
         await b.type("0")
         assert b.app.is_asking
-        assert "above 0" in b.text("prompt-label")
+        assert "1e-6" in b.text("prompt-label")
         assert b.app.query_one(Prompt).line.value == "0"
         await b.type("3.2 nm")
         assert not b.app.is_asking
@@ -285,6 +286,46 @@ async def test_save_as_open_and_new(path: Path, tmp_path: Path) -> None:
         await b.type(str(path))
         assert b.app.document.path == path
         assert len(b.app.session.layers) == 5
+
+
+async def test_pipes_and_devices_are_no_place_for_a_design(
+    path: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    monkeypatch.chdir(path.parent)
+    os.mkfifo("pipe")
+    async with bench(documents.opened(path)) as b:
+        for name in ("pipe", os.devnull):
+            await b.press("W")
+            await b.type(name)
+            assert b.app.is_asking
+            assert "no regular file" in b.text("prompt-label")
+            await b.press("escape")
+        assert b.app.document.path == path
+        path.unlink()  # and where the design's own file has become one
+        os.mkfifo(path)
+        await b.press("plus", "w", "o")
+        assert b.app.document.is_changed
+
+
+async def test_the_notes_of_the_design(path: Path) -> None:
+    async with bench(documents.opened(path)) as b:
+        before = b.app.session
+        assert "\n" in before.notes
+        await b.press("T", "enter")
+        assert b.app.session is before
+        await b.press("T")
+        await b.type("one\\ntwo \\\\n")
+        assert b.app.session.notes == "one\ntwo \\n"
+        await b.press("w")
+        assert load(path)[1].notes == "one\ntwo \\n"
+        await b.press("T")
+        assert b.app.query_one(Prompt).line.value == "one\\ntwo \\\\n"
+        await b.type("")
+        assert b.app.session.notes == ""
+        await b.press("T")
+        await b.type("\x1b")
+        assert b.app.is_asking
+        assert "control" in b.text("prompt-label")
 
 
 async def test_a_folder_that_cannot_be_written(path: Path) -> None:

@@ -54,11 +54,11 @@ def test_donors_and_fermi_energy_stand_against_each_other() -> None:
 @pytest.mark.parametrize(
     ("key", "text", "word"),
     [
-        ("thickness_nm", "0", "above 0"),
+        ("thickness_nm", "0", "1e-6"),
         ("thickness_nm", "thick", "number"),
         ("thickness_nm", "", "needed"),
         ("thickness_nm", "3 kg", "unit kg"),
-        ("thickness_nm", "1e999", "above 0"),
+        ("thickness_nm", "1e999", "1e5 nm"),
         ("mass", "0", "mass lies"),
         ("label", "a\x1b", "control"),
         ("material", "", "needed"),

@@ -6,17 +6,17 @@ import argparse
 import sys
 from typing import Any, NoReturn
 
-from tui.command import example, levels, profile, report, spectrum
+from tui.command import example, iv, levels, profile, report, spectrum
 from tui.command.options import NUMBERS, locate
 from tui.command.workbench import open_workbench
 from tui.diagnostics import WRONG, CallError
 from tui.session.refusal import SessionError
 
 VERSION = "0.1.0"
-COMMANDS = (levels, spectrum, profile, report, example)
+COMMANDS = (levels, spectrum, profile, iv, report, example)
 DESCRIPTION = """\
 Design layered tunnelling structures: where the levels are, how long they live,
-what gets through.
+what gets through, what current flows.
 
   winze                       open the workbench on the demo design
   winze FILE                  open the workbench on a session text
@@ -29,6 +29,7 @@ examples:
   winze levels diode.toml --bias 0.12
   winze spectrum diode.toml --from 0 --to 0.4 --points 2000 > t.csv
   winze profile diode.toml --level 2 --json | jq .norm
+  winze iv diode.toml --from 0 --to 0.5 -o iv.csv
   sed 's/= 10$/= 11/' diode.toml | winze report -
 
 exit status: 0 done, 1 a check failed, 2 wrong input or call,

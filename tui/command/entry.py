@@ -2,14 +2,21 @@
 
 from __future__ import annotations
 
+import os
 import signal
 import sys
 from collections.abc import Callable, Sequence
+
+THREADS = ("OPENBLAS_NUM_THREADS", "MKL_NUM_THREADS", "VECLIB_MAXIMUM_THREADS")
+"""Read by numpy's matrix products when it is loaded. Ours are slim: several threads spend their
+time waiting for each other, and five times as much where cores are shared."""
 
 
 def main(argv: Sequence[str] | None = None) -> int:
     """Run winze with the given arguments, or the process's own."""
     release = _hold_interrupts()
+    for name in THREADS:
+        os.environ.setdefault(name, "1")
     from tui.diagnostics import guarded
 
     def run() -> int:

@@ -6,7 +6,7 @@ import argparse
 import contextlib
 import sys
 from argparse import ArgumentParser, Namespace
-from collections.abc import Callable
+from collections.abc import Callable, Iterable
 from dataclasses import replace
 from pathlib import Path
 
@@ -18,8 +18,8 @@ from tui.session import tables
 from tui.session.model import Session
 from tui.session.read import MAX_BYTES, decode, load, read_session
 from tui.session.refusal import SessionError, printable
-from tui.session.save import save
-from tui.study import Request, Study
+from tui.session.save import save_parts
+from tui.study import Request, Scene, Study
 
 STANDARD_INPUT = "standard input"
 NUMBERS = ("--from", "--to", "--energy", "--bias", "--temperature", "--max-width")
@@ -154,12 +154,17 @@ def locate(options: Namespace, error: SessionError) -> SessionError:
 
 def put(options: Namespace, text: str) -> None:
     """Write a result to where the call wants it."""
+    put_parts(options, [text])
+
+
+def put_parts(options: Namespace, parts: Iterable[str]) -> None:
+    """Write a result that comes in parts to where the call wants it."""
     if options.output not in (None, "-"):
-        save(Path(options.output), text)
+        save_parts(Path(options.output), parts)
     elif sys.stdout is None:
         raise CallError("standard output is closed; name a file with -o")
     else:
-        sys.stdout.write(text)
+        sys.stdout.writelines(parts)
 
 
 def put_either(options: Namespace, session: Session, table: str, content: Object) -> None:
@@ -171,6 +176,15 @@ def say_notes(study: Study) -> None:
     """Say the notes of an answer beside a table, which has no room for them."""
     for note in study.advice:
         say(f"note: {note.topic}: {note.text}")
+
+
+def status_of_field(scene: Scene) -> int:
+    """Say whether the field under an answer converged, also in words where it did not."""
+    screening = scene.screening
+    if screening is None or screening.converged:
+        return DONE
+    say(f"note: screening: the field did not converge: {screening.reason}")
+    return INACCURATE
 
 
 def status_of(study: Study) -> int:

@@ -8,7 +8,7 @@ from typing import Any
 from physics.levels import LevelSet, find_levels
 from physics.wavefunction import level_state, scattering_state
 from tui.command import options as shared
-from tui.diagnostics import DONE, INACCURATE, CallError
+from tui.diagnostics import INACCURATE, CallError
 from tui.report.objects import profile_object
 from tui.report.tables import profile_table
 from tui.session.tables import ENERGY_EV
@@ -47,14 +47,15 @@ def run(options: Namespace) -> int:
     """Answer."""
     request = shared.request_of(options)
     scene = set_scene(request)
-    status, number = DONE, None
+    status, number = shared.status_of_field(scene), None
     if options.energy is not None:
         density = scattering_state(scene.profile, options.energy)
     else:
         levels = find_levels(scene.profile, scene.from_eV, scene.to_eV, scene.max_width_eV)
         number = _number(levels, options.level, scene)
         density = level_state(scene.profile, levels.levels[number - 1])
-        status = DONE if levels.complete and levels.accurate else INACCURATE
+        if not (levels.complete and levels.accurate):
+            status = INACCURATE
     content = profile_object(density, number)
     shared.put_either(options, request.session, profile_table(density), content)
     return status

@@ -7,12 +7,10 @@ from typing import Any
 
 import numpy as np
 
-from physics.scattering import scatter
 from tui.command import options as shared
-from tui.diagnostics import DONE
-from tui.report.objects import advice_object, spectrum_object
-from tui.report.tables import spectrum_table
-from tui.study import set_scene, solve
+from tui.report.objects import advice_object, spectrum_document_parts, spectrum_object
+from tui.report.tables import spectrum_table, spectrum_table_parts
+from tui.study import scatter_scene_in_parts, set_scene, solve
 
 MOST_POINTS = 10_000_000
 
@@ -42,10 +40,14 @@ def run(options: Namespace) -> int:
     if options.points is not None:
         scene = set_scene(request)
         energy = np.linspace(scene.from_eV, scene.to_eV, options.points)
-        result = scatter(scene.profile, energy)
-        table = "" if options.json else spectrum_table(result)
-        shared.put_either(options, request.session, table, spectrum_object(result))
-        return DONE
+        parts = scatter_scene_in_parts(scene, energy)
+        text = (
+            spectrum_document_parts(options.command, request.session, parts)
+            if options.json
+            else spectrum_table_parts(parts)
+        )
+        shared.put_parts(options, text)
+        return shared.status_of_field(scene)
     study = solve(request)
     content = spectrum_object(study.spectrum) | advice_object(study.advice)
     content["levels_complete"] = study.levels.complete

@@ -42,8 +42,8 @@ PAD_ABOVE, PAD_BELOW = 0.18, 0.04
 """Room above and below the window, as shares of its span."""
 WALL_COLUMNS = 2.5
 """Columns that a wall needs on the average to be drawn."""
-CONTACT_SHARE = 0.06
-"""Length of each contact that is drawn, as a share of the stack's."""
+CONTACT_SHARE, BENT_CONTACT_SHARE = 0.06, 0.15
+"""Length of each contact that is drawn, as a share of the stack's; where its edge is bent."""
 DENSITY_SHARE, LEAST_DENSITY = 0.30, 0.10
 """Largest and least height of the density, as shares of the energy axis."""
 SITS_FROM = 0.08
@@ -145,10 +145,12 @@ def figure(base: Base, reading: Reading | None) -> Cells:
 
 def _position_limits(study: Study) -> Limits:
     span = study.scene.to_eV - study.scene.from_eV
-    margin = CONTACT_SHARE * study.profile.length_nm
+    left, right = study.profile.faces_nm
+    bent = study.scene.screening is not None
+    margin = (BENT_CONTACT_SHARE if bent else CONTACT_SHARE) * (right - left)
     return Limits(
-        -margin,
-        study.profile.length_nm + margin,
+        left - margin,
+        right + margin,
         study.scene.from_eV - PAD_BELOW * span,
         study.scene.to_eV + PAD_ABOVE * span,
     )
@@ -177,10 +179,14 @@ def _edges(profile: Profile, base: Base) -> list[Curve]:
 
 
 def _with_contacts(x_nm: FloatArray, edge_eV: FloatArray, base: Base) -> Curve:
-    """Go on with an edge into both contacts, down or up their faces."""
-    left, right = base.study.profile.contact_edge_eV
-    faces = (0.0, base.study.profile.length_nm)
-    x = np.concatenate([[base.position.left, faces[0]], x_nm, [faces[1], base.position.right]])
+    """Go on with an edge into both contacts, down or up their faces, as far as is drawn."""
+    profile = base.study.profile
+    ends = np.array([base.position.left, base.position.right])
+    seen = (x_nm > ends[0]) & (x_nm < ends[1])
+    faces = np.clip([profile.start_nm, profile.end_nm], *ends)
+    x_nm, edge_eV = x_nm[seen], edge_eV[seen]
+    left, right = profile.edge_eV(ends)
+    x = np.concatenate([[ends[0], faces[0]], x_nm, [faces[1], ends[1]]])
     return Curve(x, np.concatenate([[left, left], edge_eV, [right, right]]), "edge")
 
 
@@ -263,8 +269,9 @@ def _density(base: Base, cells: Cells, reading: Reading, row: int) -> None:
     density = reading.density
     if density is None:
         return
-    heights = _heights(density.density_per_nm, base, reading.energy_eV)
-    x, y = thinned(density.x_nm, heights, base.position_width)
+    seen = (density.x_nm >= base.position.left) & (density.x_nm <= base.position.right)
+    heights = _heights(density.density_per_nm[seen], base, reading.energy_eV)
+    x, y = thinned(density.x_nm[seen], heights, base.position_width)
     top, bottom = max(base.row_of(float(y.max())), 0), row
     y[y - reading.energy_eV < SEEN_FROM_DOTS * base.dot_eV()] = np.nan
     band = band_of(base.position, base.rows, base.glyphs, top, bottom)

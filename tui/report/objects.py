@@ -7,6 +7,7 @@ from __future__ import annotations
 
 import json
 import math
+from collections.abc import Iterable, Iterator
 from dataclasses import asdict
 from typing import Any
 
@@ -40,12 +41,31 @@ def spectrum_object(spectrum: Scattering) -> Object:
     return {name: getattr(spectrum, name).tolist() for name in SPECTRUM}
 
 
+def spectrum_document_parts(
+    command: str, session: Session, spectra: Iterable[Scattering]
+) -> Iterator[str]:
+    """Write what `document` writes of `spectrum_object`, part by part.
+
+    A list comes after the other, so that the columns are held, though not their text.
+    """
+    parts = [{name: getattr(spectrum, name) for name in SPECTRUM} for spectrum in spectra]
+    yield document(command, session, {}).removesuffix("\n}\n")
+    for name in SPECTRUM:
+        yield f',\n "{name}": ['
+        for number, part in enumerate(parts):
+            values = _sayable(part[name].tolist())
+            words = ",\n  ".join("null" if value is None else repr(value) for value in values)
+            yield (",\n  " if number else "\n  ") + words
+        yield "\n ]"
+    yield "\n}\n"
+
+
 def levels_object(levels: LevelSet) -> Object:
     """Every level, the window, and what was proved."""
     return {
         "levels": [_level(level, number) for number, level in enumerate(levels.levels, start=1)],
         "complete": levels.complete,
-        "counted": levels.counted if levels.counted >= 0 else None,
+        "counted": levels.counted,
         "accurate": levels.accurate,
         "from_eV": levels.from_eV,
         "to_eV": levels.to_eV,
@@ -68,8 +88,8 @@ def report_object(study: Study) -> Object:
     """Give the whole answer."""
     structure, profile = study.scene.structure, study.profile
     layers = [
-        _layer(layer, number, float(profile.edge_left_eV[at]), float(profile.edge_right_eV[at]))
-        for at, (number, layer) in enumerate(enumerate(structure.layers, start=1))
+        _layer(layer, number, *profile.layer_edges_eV(number - 1))
+        for number, layer in enumerate(structure.layers, start=1)
     ]
     return {
         "left": _contact(structure.left, profile.contact_edge_eV[0]),

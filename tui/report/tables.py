@@ -8,7 +8,7 @@ from __future__ import annotations
 import csv
 import io
 import math
-from collections.abc import Iterable, Sequence
+from collections.abc import Iterable, Iterator, Sequence
 
 from physics.levels import LevelSet
 from physics.scattering import Scattering
@@ -35,8 +35,16 @@ PROFILE = ("x_nm", "edge_eV", "density_per_nm")
 
 def spectrum_table(spectrum: Scattering) -> str:
     """Write T and R over energy."""
-    columns = [getattr(spectrum, name).tolist() for name in SPECTRUM]
-    return _csv(SPECTRUM, zip(*columns, strict=True))
+    return "".join(spectrum_table_parts([spectrum]))
+
+
+def spectrum_table_parts(parts: Iterable[Scattering]) -> Iterator[str]:
+    """Write T and R over energy, part by part: the whole may be too much to hold."""
+    header = csv_text(SPECTRUM, [])
+    for part in parts:
+        columns = [getattr(part, name).tolist() for name in SPECTRUM]
+        yield header + _rows(zip(*columns, strict=True))
+        header = ""
 
 
 def levels_table(levels: LevelSet) -> str:
@@ -46,13 +54,13 @@ def levels_table(levels: LevelSet) -> str:
         layer, share = main_layer(level.share_by_layer)
         named = [getattr(level, name) for name in LEVELS[1:9]]
         rows.append([number, *named, layer, share, level.log10_width_eV, level.width_error])
-    return _csv(LEVELS, rows)
+    return csv_text(LEVELS, rows)
 
 
 def profile_table(density: Density) -> str:
     """Write band edge and density over position."""
     columns = [getattr(density, name).tolist() for name in PROFILE]
-    return _csv(PROFILE, zip(*columns, strict=True))
+    return csv_text(PROFILE, zip(*columns, strict=True))
 
 
 def main_layer(share_by_layer: Sequence[float]) -> tuple[int, float]:
@@ -61,10 +69,14 @@ def main_layer(share_by_layer: Sequence[float]) -> tuple[int, float]:
     return share_by_layer.index(share) + 1, share
 
 
-def _csv(header: Sequence[str], rows: Iterable[Sequence[object]]) -> str:
+def csv_text(header: Sequence[str], rows: Iterable[Sequence[object]]) -> str:
+    """Write a table with its header."""
+    return _rows([header]) + _rows(rows)
+
+
+def _rows(rows: Iterable[Sequence[object]]) -> str:
     text = io.StringIO()
     writer = csv.writer(text, lineterminator="\n")
-    writer.writerow(header)
     writer.writerows([_cell(value) for value in row] for row in rows)
     return text.getvalue()
 

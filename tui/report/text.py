@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from unicodedata import combining, east_asian_width
 
 import numpy as np
 
@@ -11,8 +10,11 @@ from physics.field import built_in_eV
 from physics.levels import Level
 from physics.structure import Contact, Layer
 from tui.report import quantities
+from tui.report.currents import sweep_text
+from tui.report.layout import columns
 from tui.report.tables import main_layer
 from tui.study import Study
+from tui.sweep import Sweep
 
 SAMPLES = 11
 """Energies at which the transmission is quoted."""
@@ -30,7 +32,7 @@ LEVEL_HEAD = (
 )
 
 
-def report_text(study: Study, source: str) -> str:
+def report_text(study: Study, source: str, sweep: Sweep | None = None) -> str:
     """Write the report.
 
     Parameters
@@ -39,12 +41,16 @@ def report_text(study: Study, source: str) -> str:
         The answer.
     source : str
         Where the session came from.
+    sweep : Sweep, optional
+        The current curve.
     """
+    no_current = "none: state donors_cm3 or fermi_eV of both contacts\n"
     parts = [
         _heading(study, source),
         "Stack, left to right\n" + _stack(study),
         _window(study) + "\n" + _levels(study) + _proof(study),
         "Transmission\n" + _transmission(study),
+        "Current\n" + (no_current if sweep is None else sweep_text(sweep)),
         "Notes\n" + _notes(study),
     ]
     return "\n\n".join(part.rstrip("\n") for part in parts) + "\n"
@@ -68,7 +74,7 @@ def _stack(study: Study) -> str:
     structure, profile = study.scene.structure, study.profile
     rows = [_contact_row("L", structure.left, profile.contact_edge_eV[0])]
     for n, layer in enumerate(structure.layers):
-        left, right = float(profile.edge_left_eV[n]), float(profile.edge_right_eV[n])
+        left, right = profile.layer_edges_eV(n)
         rows.append(_layer_row(n + 1, layer, left, right))
     rows.append(_contact_row("R", structure.right, profile.contact_edge_eV[1]))
     return columns(STACK_HEAD, rows, left_aligned=(1, 2))
@@ -151,28 +157,3 @@ def _transmission(study: Study) -> str:
 
 def _notes(study: Study) -> str:
     return "".join(f"- {note.topic}: {note.text}\n" for note in study.advice) or "none\n"
-
-
-def columns(head: Sequence[str], rows: list[list[str]], left_aligned: tuple[int, ...]) -> str:
-    """Lay out a table in columns two blanks apart; numbers end in line."""
-    every = [list(head), *rows]
-    widths = [max(_cells(row[n]) for row in every) for n in range(len(head))]
-    used = [n for n, width in enumerate(widths) if any(row[n] for row in rows) or n == 0]
-    lines = []
-    for row in every:
-        cells = [_padded(row[n], widths[n], left=n in left_aligned) for n in used]
-        lines.append("  ".join(cells).rstrip() + "\n")
-    return "".join(lines)
-
-
-def _padded(text: str, width: int, *, left: bool) -> str:
-    blanks = " " * (width - _cells(text))
-    return text + blanks if left else blanks + text
-
-
-def _cells(text: str) -> int:
-    """Count the terminal's cells: a label may be in a script with wide signs, or with accents."""
-    if text.isascii():
-        return len(text)
-    wide = sum(east_asian_width(sign) in {"W", "F"} for sign in text)
-    return len(text) + wide - sum(bool(combining(sign)) for sign in text)

@@ -13,17 +13,31 @@ from typing import Literal
 from physics.band import Band
 from physics.levels import DEFAULT_MAX_WIDTH_EV
 
-FieldModel = Literal["uniform"]
+FieldModel = Literal["uniform", "screened"]
+ChargeModel = Literal["semi-classical", "quantum"]
 
 
 @dataclass(frozen=True)
 class Conditions:
-    """Temperature, bias, the field model and the band model."""
+    """Temperature, bias, the models, and how coherence is lost (none stated: not at all)."""
 
     temperature_K: float = 300.0
     bias_V: float = 0.0
     field: FieldModel = "uniform"
+    charge: ChargeModel = "semi-classical"
+    """Electrons between the barriers; it matters to the screened field alone."""
     band: Band = "parabolic"
+    dephasing_eV: float | None = None
+    scattering_time_s: float | None = None
+    mobility_cm2_Vs: float | None = None
+
+
+@dataclass(frozen=True)
+class Growth:
+    """What the stack is grown on."""
+
+    substrate: str | None = None
+    """A formula of the catalogue; None: nothing is strained."""
 
 
 @dataclass(frozen=True)
@@ -116,3 +130,4 @@ class Session:
     view: View = field(default_factory=View)
     sweep: SweepEntry = field(default_factory=SweepEntry)
     device: DeviceEntry = field(default_factory=DeviceEntry)
+    growth: Growth = field(default_factory=Growth)

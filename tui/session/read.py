@@ -9,7 +9,7 @@ from __future__ import annotations
 import re
 import tomllib
 from pathlib import Path
-from typing import Any, cast
+from typing import Any
 
 from physics.ranges import TEMPERATURE_K
 from tui.session import tables
@@ -19,7 +19,7 @@ from tui.session.model import (
     Conditions,
     ContactEntry,
     DeviceEntry,
-    FieldModel,
+    Growth,
     LayerEntry,
     MaterialEntry,
     Session,
@@ -163,6 +163,9 @@ def _session(document: dict[str, Any]) -> Session:
         device=DeviceEntry(
             **table_values(_table(document, "device"), tables.DEVICE, ("device",), "device")
         ),
+        growth=Growth(
+            **table_values(_table(document, "growth"), tables.GROWTH, ("growth",), "growth")
+        ),
     )
 
 
@@ -183,15 +186,14 @@ def _table(document: dict[str, Any], name: str) -> dict[str, Any]:
 
 def _conditions(table: dict[str, Any]) -> Conditions:
     values = table_values(table, tables.CONDITIONS, ("conditions",), "conditions")
-    field = values.get("field", "uniform")
-    if field not in tables.FIELD_MODELS:
-        path = ("conditions", "field")
-        raise refuse(path, "conditions field", f"is {shown(field)}", tables.FIELD_RULE)
-    values["field"] = cast("FieldModel", field)
-    band = values.get("band", "parabolic")
-    if band not in tables.BANDS:
-        path = ("conditions", "band")
-        raise refuse(path, "conditions band", f"is {shown(band)}", tables.BAND_RULE)
+    for key, models, rule in (
+        ("field", tables.FIELD_MODELS, tables.FIELD_RULE),
+        ("charge", tables.CHARGE_MODELS, tables.CHARGE_RULE),
+        ("band", tables.BANDS, tables.BAND_RULE),
+    ):
+        if values.get(key, models[0]) not in models:
+            found = f"is {shown(values[key])}"
+            raise refuse(("conditions", key), f"conditions {key}", found, rule)
     return Conditions(**values)
 
 

@@ -3,21 +3,33 @@
 Every edge in a session is on one scale, whose zero is the left contact's edge. A catalogue material
 enters as its edge above the left contact's; where the left contact is no catalogue material that
 height is unknown, and the material is refused rather than guessed.
+
+Where the session names a substrate, every catalogue material enters as it is when strained to it,
+the left contact with the others; what the user states in numbers is left as stated.
 """
 
 from __future__ import annotations
 
 from dataclasses import dataclass, replace
-from functools import lru_cache
 
 from physics.band import NEEDS_GAP, Band, masses_of
-from physics.errors import MaterialError, PhysicsError, StructureError
-from physics.materials import Material, material
+from physics.dephasing import dephasing_eV
+from physics.errors import PhysicsError, StructureError
+from physics.materials import Material
 from physics.occupation import fermi_from_donors
 from physics.structure import Contact, Layer, Structure
+from tui.session.growth import (
+    contact_on,
+    grown,
+    layer_on,
+    refused,
+    said,
+    stack_on,
+    substrate_of,
+)
 from tui.session.lines import KeyPath
 from tui.session.model import ContactEntry, LayerEntry, MaterialEntry, Session
-from tui.session.refusal import SessionError, named, printable, shown
+from tui.session.refusal import SessionError, printable, shown
 
 AGREEMENT = 1e-6
 """Relative difference up to which two ways of saying one thing agree."""
@@ -32,8 +44,14 @@ class Scale:
     own: dict[str, MaterialEntry]
     temperature_K: float
     zero_eV: float | None
-    """Catalogue edge of the left contact; None where it is no catalogue material."""
+    """Catalogue edge of the left contact, strained; None where it is no catalogue material."""
+    substrate: str | None = None
+    """Formula; None where none is named."""
     band: Band = "parabolic"
+
+    def formula(self, name: str | None) -> str | None:
+        """Give a material's name if it is the catalogue's and strained, else None."""
+        return None if self.substrate is None or name in self.own else name
 
 
 def resolve(session: Session) -> Structure:
@@ -54,18 +72,57 @@ def resolve(session: Session) -> Structure:
         masses_of(structure, session.conditions.band)  # refuses a missing gap
     except StructureError as error:
         raise _from_structure(error) from error
-    return structure
+    if scale.substrate is None:
+        return structure
+    return stack_on(structure, scale.substrate, scale.temperature_K)
+
+
+def dephasing_of(session: Session, mass: float) -> float:
+    """Width in eV by which lost coherence broadens levels; 0 where nothing is stated.
+
+    Parameters
+    ----------
+    mass : float
+        Mass in m0 that goes with a mobility: the left contact's, the substrate's.
+
+    Raises
+    ------
+    SessionError
+        Two statements that disagree, or a mobility that makes no width that can be computed.
+    """
+    stated = session.conditions
+    widths: dict[str, float] = {}
+    if stated.dephasing_eV is not None:
+        widths["dephasing_eV"] = stated.dephasing_eV
+    try:
+        if stated.scattering_time_s is not None:
+            widths["scattering_time_s"] = dephasing_eV(scattering_time_s=stated.scattering_time_s)
+        if stated.mobility_cm2_Vs is not None:
+            mobility = stated.mobility_cm2_Vs
+            widths["mobility_cm2_Vs"] = dephasing_eV(mobility_cm2_Vs=mobility, mass=mass)
+    except StructureError as error:
+        raise _from_structure(error) from error
+    kept, width = next(iter(widths.items()), ("", 0.0))
+    for key, other in widths.items():
+        if abs(other - width) > AGREEMENT * max(other, width):
+            found = f"makes a width of {other:.9g} eV, but {kept} one of {width:.9g} eV"
+            path: KeyPath = ("conditions", key)
+            raise SessionError(
+                said(path), found, f"keep one of the two, {key} or {kept}", path=path
+            )
+    return width
 
 
 def scale_of(session: Session) -> Scale:
     """Find the scale that a session's catalogue materials are on."""
     own = {entry.name: entry for entry in session.materials}
     temperature = session.conditions.temperature_K
+    substrate = substrate_of(session)
     name = session.left.material
     if name is None or name in own:
-        return Scale(own, temperature, None, session.conditions.band)
-    zero = _catalogue(name, temperature, ("left", "material")).edge_eV
-    return Scale(own, temperature, zero, session.conditions.band)
+        return Scale(own, temperature, None, substrate, session.conditions.band)
+    zero = grown(name, temperature, substrate, ("left", "material")).edge_eV
+    return Scale(own, temperature, zero, substrate, session.conditions.band)
 
 
 def medium_of(name: str, scale: Scale, path: KeyPath) -> Material:
@@ -80,13 +137,13 @@ def medium_of(name: str, scale: Scale, path: KeyPath) -> Material:
             monolayer_nm=entry.monolayer_nm,
             gap_eV=entry.gap_eV,
         )
-    known = _catalogue(name, scale.temperature_K, path)
+    known = grown(name, scale.temperature_K, scale.substrate, path)
     if scale.zero_eV is None:
         allowed = (
             "its edge above the left contact is not known; name the left contact's material, "
             "or give edge_eV and mass here"
         )
-        raise SessionError(_said(path), f"is {shown(name)}", allowed, path=path)
+        raise SessionError(said(path), f"is {shown(name)}", allowed, path=path)
     return _lowered(known, scale.zero_eV)
 
 
@@ -106,13 +163,13 @@ def thickness_nm(entry: LayerEntry, medium: Material, path: KeyPath) -> float:
     if entry.thickness_ml is None:
         if entry.thickness_nm is None:
             raise SessionError(
-                _said(path), "has no thickness", "give thickness_nm or thickness_ml", path=path
+                said(path), "has no thickness", "give thickness_nm or thickness_ml", path=path
             )
         return entry.thickness_nm
     path = (*path, "thickness_ml")
     if medium.monolayer_nm is None:
         allowed = "give thickness_nm, or a material whose monolayer is known"
-        raise SessionError(_said(path), "has no monolayer to count in", allowed, path=path)
+        raise SessionError(said(path), "has no monolayer to count in", allowed, path=path)
     counted = entry.thickness_ml * medium.monolayer_nm
     _require_agreement(entry.thickness_nm, counted, (*path[:-1], "thickness_nm"), "thickness_ml")
     return counted
@@ -130,9 +187,9 @@ def _layer(entry: LayerEntry, index: int, scale: Scale) -> Layer:
         to_gap = end.gap_eV if to_gap is None else to_gap
         if to_gap is None and scale.band == "kane":
             key = (*path, "to_gap_eV")
-            raise SessionError(_said(key), "is missing", NEEDS_GAP, path=key)
+            raise SessionError(said(key), "is missing", NEEDS_GAP, path=key)
     stated = medium.permittivity if entry.permittivity is None else entry.permittivity
-    return Layer(
+    layer = Layer(
         thickness_nm=thickness_nm(entry, medium, path),
         edge_eV=medium.edge_eV,
         mass=medium.mass,
@@ -149,6 +206,11 @@ def _layer(entry: LayerEntry, index: int, scale: Scale) -> Layer:
         gap_eV=medium.gap_eV if entry.gap_eV is None else entry.gap_eV,
         to_gap_eV=to_gap,
     )
+    name = scale.formula(entry.material)
+    if scale.substrate is None or name is None:
+        return layer
+    to_name = scale.formula(entry.to_material)
+    return layer_on(layer, scale.substrate, scale.temperature_K, name, to_name)
 
 
 def _contact(entry: ContactEntry, side: str, scale: Scale, temperature_K: float) -> Contact:
@@ -159,10 +221,10 @@ def _contact(entry: ContactEntry, side: str, scale: Scale, temperature_K: float)
         try:
             filled = fermi_from_donors(entry.donors_cm3, medium.mass, temperature_K)
         except PhysicsError as error:
-            raise _at((*path, "donors_cm3"), entry.donors_cm3, str(error)) from error
+            raise refused((*path, "donors_cm3"), entry.donors_cm3, str(error)) from error
         _require_agreement(fermi, filled, (*path, "fermi_eV"), "donors_cm3")
         fermi = filled
-    return Contact(
+    contact = Contact(
         edge_eV=medium.edge_eV,
         mass=medium.mass,
         fermi_eV=fermi,
@@ -172,6 +234,10 @@ def _contact(entry: ContactEntry, side: str, scale: Scale, temperature_K: float)
         lattice_nm=medium.lattice_nm,
         gap_eV=medium.gap_eV if entry.gap_eV is None else entry.gap_eV,
     )
+    name = scale.formula(entry.material)
+    if scale.substrate is None or name is None:
+        return contact
+    return contact_on(contact, scale.substrate, temperature_K, name)
 
 
 def _medium(
@@ -180,7 +246,7 @@ def _medium(
     if name is None:
         if edge_eV is None or mass is None:
             allowed = "give a material, or edge_eV with mass"
-            raise SessionError(_said(path), "has no material", allowed, path=path)
+            raise SessionError(said(path), "has no material", allowed, path=path)
         return Material("", edge_eV, mass)
     medium = medium_of(name, scale, (*path, "material"))
     _require_agreement(edge_eV, medium.edge_eV, (*path, "edge_eV"), "material")
@@ -192,30 +258,7 @@ def _require_agreement(stated: float | None, other: float, path: KeyPath, by: st
     if stated is None or abs(stated - other) <= AGREEMENT * max(abs(stated), abs(other)):
         return
     found = f"is {stated:.9g}, but {by} makes it {other:.9g}"  # enough to be copied and to agree
-    raise SessionError(_said(path), found, f"keep one of the two, {path[-1]} or {by}", path=path)
-
-
-@lru_cache(maxsize=1024)
-def _known(name: str, temperature_K: float) -> Material:
-    # A stack names few materials many times, and looking one up is pure.
-    return material(name, temperature_K)
-
-
-def _catalogue(name: str, temperature_K: float, path: KeyPath) -> Material:
-    try:
-        return _known(name, temperature_K)
-    except MaterialError as error:
-        said = str(error).removeprefix(f"material {name!r}: ")  # the refusal has named it already
-        raise _at(path, name, f"{said}; or define [material.NAME]") from error
-
-
-def _at(path: KeyPath, value: object, allowed: str) -> SessionError:
-    return SessionError(_said(path), f"is {shown(value)}", printable(allowed), path=path)
-
-
-def _said(path: KeyPath) -> str:
-    """Say a path as a reader counts: layers from 1."""
-    return " ".join(str(part + 1) if isinstance(part, int) else named(part) for part in path)
+    raise SessionError(said(path), found, f"keep one of the two, {path[-1]} or {by}", path=path)
 
 
 def _from_structure(error: StructureError) -> SessionError:

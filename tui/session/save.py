@@ -5,17 +5,24 @@ from __future__ import annotations
 import contextlib
 import os
 import tempfile
+from collections.abc import Iterable
 from pathlib import Path
 
 from tui.session.refusal import SessionError
 
 
-def save(path: Path, text: str) -> None:
-    """Write a text to a file, all of it or nothing.
+def save(path: Path, text: str, *, files_only: bool = False) -> None:
+    """Write a text to a file, all of it or nothing; see `save_parts`."""
+    save_parts(path, [text], files_only=files_only)
+
+
+def save_parts(path: Path, parts: Iterable[str], *, files_only: bool = False) -> None:
+    """Write a text, which comes in parts, to a file, all of it or nothing.
 
     The text goes to a temporary file in the same folder, is flushed to the disk, and takes the
     file's place in one step; a link is followed, the file's permissions and owner are kept. A
-    device or a pipe is written to and never replaced.
+    device or a pipe is written to and never replaced, or refused with ``files_only``: a pipe
+    would wait for its reader.
 
     Raises
     ------
@@ -23,12 +30,12 @@ def save(path: Path, text: str) -> None:
         It could not be written; what was there before is still there.
     """
     try:
-        data = text.encode("utf-8")
+        data = (part.encode("utf-8") for part in parts)
         target = path.resolve()
         if target.is_dir():
             raise IsADirectoryError(21, "it is a folder")
         if path.exists() and not path.is_file():
-            path.write_bytes(data)
+            _write_to_device(path, data, files_only=files_only)
         else:
             _replace(target, data)
     except UnicodeEncodeError as error:
@@ -40,7 +47,14 @@ def save(path: Path, text: str) -> None:
         raise SessionError("", "it cannot be written", allowed, source=str(path)) from error
 
 
-def _replace(target: Path, data: bytes) -> None:
+def _write_to_device(path: Path, data: Iterable[bytes], *, files_only: bool) -> None:
+    if files_only:
+        raise OSError(22, "it is no regular file")
+    with path.open("wb") as file:
+        file.writelines(data)
+
+
+def _replace(target: Path, data: Iterable[bytes]) -> None:
     before = target.stat() if target.exists() else None
     if before is not None and not os.access(target, os.W_OK):
         raise PermissionError(13, "permission denied")
@@ -48,7 +62,7 @@ def _replace(target: Path, data: bytes) -> None:
     temporary = Path(name)
     try:
         with os.fdopen(handle, "wb") as file:
-            file.write(data)
+            file.writelines(data)
             file.flush()
             os.fsync(file.fileno())
         if before is None:

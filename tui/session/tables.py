@@ -17,10 +17,12 @@ MONOLAYERS = Range(0.0, 1e6, "a number of monolayers is above 0", open_below=Tru
 NAME_RULE = "a text on one line without control characters, in quotation marks"
 TEXT_RULE = "a text without control characters, in quotation marks"
 
-FIELD_MODELS = ("uniform",)
-FIELD_RULE = 'this version computes field = "uniform" only'
 BANDS = ("parabolic", "kane")
 BAND_RULE = 'a band is "parabolic" or "kane"'
+FIELD_MODELS = ("uniform", "screened")
+FIELD_RULE = 'a field is "uniform" or "screened"'
+CHARGE_MODELS = ("semi-classical", "quantum")
+CHARGE_RULE = 'a charge is "semi-classical" or "quantum"'
 
 
 @dataclass(frozen=True)
@@ -39,8 +41,13 @@ CONDITIONS: Table = {
     "temperature_K": ranges.TEMPERATURE_K,
     "bias_V": ranges.BIAS_V,
     "field": LINE_TEXT,
+    "charge": LINE_TEXT,
     "band": LINE_TEXT,
+    "dephasing_eV": ranges.DEPHASING_EV,
+    "scattering_time_s": ranges.SCATTERING_TIME_S,
+    "mobility_cm2_Vs": ranges.MOBILITY_CM2_VS,
 }
+GROWTH: Table = {"substrate": LINE_TEXT}
 CONTACT: Table = {
     "material": LINE_TEXT,
     "edge_eV": ranges.EDGE_EV,
@@ -84,13 +91,26 @@ DEVICE: Table = {
     "parallel_fF": ranges.PARALLEL_FF,
 }
 TOP_TEXTS: Table = {"title": LINE_TEXT, "notes": Text(lines=True)}
-TOP_TABLES = ("conditions", "left", "layer", "right", "material", "view", "sweep", "device")
+TOP_TABLES = (
+    "conditions",
+    "growth",
+    "left",
+    "layer",
+    "right",
+    "material",
+    "view",
+    "sweep",
+    "device",
+)
 TOP_KEYS = ("format", *TOP_TEXTS, *TOP_TABLES)
 
 UNITLESS = {
     "thickness": "thickness_nm or thickness_ml",
     "temperature": "temperature_K",
     "bias": "bias_V",
+    "dephasing": "dephasing_eV",
+    "scattering_time": "scattering_time_s",
+    "mobility": "mobility_cm2_Vs",
     "edge": "edge_eV",
     "to_edge": "to_edge_eV",
     "donors": "donors_cm3",

@@ -23,6 +23,7 @@ if TYPE_CHECKING:
 Values = dict[str, Any]
 UNSAID: Values = {
     "band": "parabolic",
+    "charge": "semi-classical",
     "donors_cm3": 0.0,
     **dict.fromkeys(("label", "title", "notes", "overlay_K"), ""),
 }
@@ -149,6 +150,7 @@ def _tables(session: Session) -> dict[KeyPath, Values]:
     result: dict[KeyPath, Values] = {
         (): {"format": FORMAT, "title": session.title, "notes": session.notes},
         ("conditions",): asdict(session.conditions),
+        ("growth",): asdict(session.growth),
         ("left",): asdict(session.left),
         ("right",): asdict(session.right),
     }
@@ -171,10 +173,10 @@ def _fresh(session: Session) -> str:
     for key in ("title", "notes"):
         if parts[()][key]:
             text += f"{key} = {_said(parts[()][key])}\n"
-    pieces = [
-        _table_text(("conditions",), parts["conditions",]),
-        _table_text(("left",), parts["left",]),
-    ]
+    pieces = [_table_text(("conditions",), parts["conditions",])]
+    if session.growth != type(session.growth)():
+        pieces.append(_table_text(("growth",), parts["growth",]))
+    pieces.append(_table_text(("left",), parts["left",]))
     pieces += [_table_text(("layer",), _layer(layer)) for layer in session.layers]
     pieces.append(_table_text(("right",), parts["right",]))
     pieces += [_table_text(name, parts[name]) for name in parts if name[:1] == ("material",)]

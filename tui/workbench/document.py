@@ -62,7 +62,9 @@ class Document:
         if self.path is None or self.text is None:
             return False
         try:
-            return self.path.exists() and decode(self.path.read_bytes(), "") != self.text
+            if not self.path.is_file():  # a pipe would wait for its writer
+                return self.path.exists()
+            return decode(self.path.read_bytes(), "") != self.text
         except (OSError, SessionError):
             return True
 
@@ -71,7 +73,7 @@ class Document:
         try:
             if self.path is not None and path.exists() and path.samefile(self.path):
                 return self.changed_on_disk()
-            return path.exists() and not path.is_dir()
+            return path.is_file()
         except (OSError, ValueError):  # saving there will say what is wrong
             return False
 
@@ -84,7 +86,7 @@ class Document:
             It could not be written; nothing changed, here or there.
         """
         text = write_session(self.session, self.text)
-        save(path, text)
+        save(path, text, files_only=True)
         self.path, self.name, self.text, self.saved = path, path.name, text, self.session
 
     def _shift(self, source: list[Session], target: list[Session]) -> bool:

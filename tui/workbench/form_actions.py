@@ -12,7 +12,7 @@ from tui.workbench import stacking, values
 from tui.workbench.bench import Bench
 from tui.workbench.form import NOT_STATED, Field
 from tui.workbench.sheet import Cursor, moved
-from tui.workbench.typed import Refusal, unit_of
+from tui.workbench.typed import Refusal, as_line, from_line, unit_of
 
 FIRST_LAYER_ROW = 2
 BEGINS_A_NUMBER = "0123456789."
@@ -98,6 +98,17 @@ class FormActions(Bench):
             return self._try(lambda: values.set_typed(self.session, place, "title", text, None))
 
         self.ask("title", self.session.title, accept)
+
+    def action_session_notes(self) -> None:
+        """Change the design's notes."""
+        place = ("top", 0)
+
+        def accept(text: str) -> str:
+            return self._try(
+                lambda: values.set_value(self.session, place, "notes", from_line(text) or None)
+            )
+
+        self.ask("notes", as_line(self.session.notes), accept)
 
     def _type(self, field: Field, initial: str) -> None:
         def accept(text: str) -> str:

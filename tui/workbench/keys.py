@@ -77,6 +77,7 @@ KEYS = (
     Key("u", "u", "undo", "undo", DESIGN),
     Key("r", "r", "redo", "redo", DESIGN),
     Key("t", "t", "title", "change the title", DESIGN),
+    Key("T", "T", "session_notes", "change the design's notes, \\n for a new line", DESIGN),
     Key("o", "o", "open", "open a file", DESIGN),
     Key("w,ctrl+s", "w", "save", "save (write) the file", DESIGN),
     Key("W", "W", "save_as", "save under another name", DESIGN),

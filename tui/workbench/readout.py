@@ -9,7 +9,8 @@ from physics.levels import Level
 from physics.structure import Layer, Structure
 from tui.reading import Reading
 from tui.report import quantities
-from tui.report.text import LEVEL_HEAD, columns, level_row
+from tui.report.layout import columns
+from tui.report.text import LEVEL_HEAD, level_row
 from tui.study import Study
 
 Styled = list[tuple[str, str]]

@@ -6,6 +6,7 @@ import math
 import re
 
 from physics.ranges import Range
+from tui.session.refusal import has_controls
 
 _NUMBER = re.compile(r"\s*([+-]?(?:\d+\.?\d*|\.\d+)(?:[eE][+-]?\d+)?)\s*([A-Za-z^0-9/-]*)\s*$")
 UNITS: dict[str, dict[str, float]] = {
@@ -73,3 +74,23 @@ _UNIT_KEYS = {
     "ohm": ("series_ohm",),
     "fF": ("parallel_fF",),
 }
+
+
+def as_line(text: str) -> str:
+    """Write a text of several lines on one, for it to be edited; see `from_line`."""
+    return text.replace("\\", "\\\\").replace("\n", "\\n").replace("\t", "\\t")
+
+
+def from_line(line: str) -> str:
+    r"""Read a text of several lines from one: \n is a new line, \t a tab, \\ a backslash.
+
+    Raises
+    ------
+    Refusal
+        There are control characters in it.
+    """
+    meant = {"n": "\n", "t": "\t", "\\": "\\"}
+    text = re.sub(r"\\(.)", lambda found: meant.get(found[1], found[0]), line)
+    if has_controls(text, lines=True):
+        raise Refusal("control characters cannot be part of a text")
+    return text
