@@ -2,20 +2,16 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable
 from dataclasses import dataclass
 
 import numpy as np
 
-from physics.curve import Curve, curve_at, slopes
-from physics.field import go_on
-from tui.session.model import Session
-from tui.session.resolve import resolve
-from tui.sweep import drive_of
+from physics.curve import Curve, Drive, curve_at, slopes
 
 APART_V = 2e-4
 """Steps between the five biases that give the slope: far below a level's or kT's share of a curve,
 far above what the error of a current makes of them."""
+REACH_V = 2.0 * APART_V
 
 
 @dataclass(frozen=True)
@@ -33,9 +29,8 @@ class BiasPoint:
     """False where it was read off between the points of a curve."""
 
 
-def point_at(session: Session, bias_V: float, watch: Callable[[], None] = go_on) -> BiasPoint:
-    """Compute what is at a bias."""
-    drive = drive_of(session, resolve(session), watch)
+def point_at(drive: Drive, bias_V: float) -> BiasPoint:
+    """Compute what is at a bias; the drive has to hold for biases `REACH_V` around it."""
     curve = curve_at(drive, bias_V + APART_V * np.arange(-2.0, 3.0))
     slope = slopes(curve.bias_V, curve.current_density_A_per_cm2)
     return _point(curve, 2, bias_V, float(slope[2]), is_exact=True)

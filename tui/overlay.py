@@ -29,5 +29,5 @@ def overlay(
     """Compute a session's curve at a temperature, over a given range; see `tui.sweep.sweep`."""
     conditions = replace(session.conditions, temperature_K=temperature_K)
     session = replace(session, conditions=conditions)
-    drive = drive_of(session, resolve(session), watch)
+    drive, _ = drive_of(session, resolve(session), range_V, watch)
     return Overlay(temperature_K, own_curve(drive, *range_V))

@@ -2,7 +2,7 @@
 
 Peaks and valleys are marked with a number, curves at other temperatures have a marker of their own
 and their name at the right. Below the curve each level has a row that shows its share of the
-current, under its letter; where there is no room, one row says which level carries most.
+current, under its number; where there is no room, one row says which level carries most.
 """
 
 from __future__ import annotations
@@ -249,7 +249,7 @@ def _shares(base: CurrentBase, count: int) -> None:
         best = np.argmax(at, axis=0)
         carried = np.max(at, axis=0) >= CARRIES
         letters = [
-            base.branches[n].letter if is_carried else " "
+            base.branches[n].sign if is_carried else " "
             for n, is_carried in zip(best, carried, strict=True)
         ]
         _share_row(base, 0, "level", "".join(letters))
@@ -257,7 +257,7 @@ def _shares(base: CurrentBase, count: int) -> None:
     ramp = base.glyphs.shares
     for n, (branch, share) in enumerate(zip(base.branches, at, strict=True)):
         steps = np.clip(share * (len(ramp) - 1) + 0.5, 0, len(ramp) - 1).astype(np.int64)
-        _share_row(base, n, f"share {branch.letter}", "".join(ramp[step] for step in steps))
+        _share_row(base, n, f"share {branch.sign}", "".join(ramp[step] for step in steps))
 
 
 def _share_row(base: CurrentBase, n: int, name: str, text: str) -> None:

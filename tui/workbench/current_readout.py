@@ -8,7 +8,7 @@ from physics.device import Figures
 from physics.extremes import Region
 from tui.amounts import amount
 from tui.bias_point import BiasPoint
-from tui.branches import Branch, letter_of
+from tui.branches import Branch, sign_of
 from tui.report import quantities
 from tui.sweep import Sweep
 from tui.workbench.readout import Styled, wrapped
@@ -148,10 +148,10 @@ def _at_bias(
     if point.is_exact:
         line.append((f" +- {amount(point.error_A_per_cm2, DENSITY, 1)}", "faint"))
     line += [("  dJ/dV ", "faint"), (f"{about}{amount(point.conductance_S_per_cm2, SLOPE)}", "")]
-    for letter, share in _shares(sweep, branches, point):
-        more: Styled = [("  level ", "faint"), (letter, "level"), (f" {share}", "strong")]
+    for sign, share in _shares(sweep, branches, point):
+        more: Styled = [("  level ", "faint"), (sign, "level"), (f" {share}", "strong")]
         if _size(line) + _size(more) > width:
-            more = [("  ", ""), (letter, "level"), (f" {share}", "strong")]
+            more = [("  ", ""), (sign, "level"), (f" {share}", "strong")]
         if _size(line) + _size(more) <= width:
             line += more
     return line
@@ -160,15 +160,15 @@ def _at_bias(
 def _shares(
     sweep: Sweep | None, branches: tuple[Branch, ...], point: BiasPoint
 ) -> Iterable[tuple[str, str]]:
-    """Give each level's letter and share at the bias in hand, the largest first."""
+    """Give each level's number and share at the bias in hand, the largest first."""
     if sweep is None:
         return
     bias = sweep.curve.bias_V
     pairs = zip(point.level_eV, point.level_share, strict=True)
     for energy, share in sorted(pairs, key=lambda pair: -abs(pair[1])):
-        letter = letter_of(branches, bias, point.bias_V, energy)
-        if letter and abs(share) >= SAID_FROM:
-            yield letter, f"{100.0 * share:.1f} %"
+        sign = sign_of(branches, bias, point.bias_V, energy)
+        if sign and abs(share) >= SAID_FROM:
+            yield sign, f"{100.0 * share:.1f} %"
 
 
 def _flowed(items: Sequence[Item], width: int, height: int) -> list[Styled]:

@@ -30,7 +30,7 @@ from tui.workbench.sheet import Cursor, moved
 
 TALL_FROM = 30
 """Lines from which the read-out has room for more of the device's figures."""
-CURRENT_HINT = "? keys   c bands   k j bias   n p feature   l log   T temperatures   i figures"
+CURRENT_HINT = "? keys   c bands   k j bias   n p feature   l log   O overlays   i figures"
 TITLE = "This current in full"
 COMPUTING, STOPPED = "the current is being computed; Esc breaks off", "broken off; C computes it"
 
@@ -55,6 +55,7 @@ class CurrentView(Bench):
         self.point_news: PointNews | None = None
         self.wanted_point: PointWish | None = None
         self._scene: Scene | None = None
+        self._bands_due = False
         self.currents = Currents(self._hand_over)
 
     def on_unmount(self) -> None:
@@ -62,8 +63,9 @@ class CurrentView(Bench):
         self.currents.close()
 
     def on_resize(self, event: events.Resize) -> None:
-        """Choose how much is read out."""
+        """Choose how much is read out; what comes into sight is computed."""
         self.set_class(event.size.height >= TALL_FROM, "tall")
+        self.call_after_refresh(self._catch_up)
 
     def take_document(self) -> None:
         """Show a document that was just opened or begun."""
@@ -82,33 +84,58 @@ class CurrentView(Bench):
             self.cursor = Cursor(0, keys.index(key) if key in keys else 0)
             self.cursor = moved(self.cursor, self.rows, 0, 0)
         self.say(CURRENT_HINT if self.shows_current else HINT)
+        self._catch_up()
         self.ask_current()
         self.call_after_refresh(self.show_all)
 
     # Asking
+
+    def _catch_up(self) -> None:
+        """Compute the bands' answer if it is due and seen."""
+        if self._bands_due:
+            self.compute()
 
     def all_keys_done(self) -> None:
         """Compute what was asked for last, the current too where it is looked at."""
         super().all_keys_done()
         self.ask_current()
 
+    def compute(self) -> None:
+        """Ask for the bands' answer, but where they are out of sight only once they are seen."""
+        self._bands_due = self.shows_current and not self.has_class("wide")
+        if not self._bands_due:
+            super().compute()
+        elif not self.are_keys_waiting:
+            self.all_keys_done()
+
     def ask_current(self) -> None:
         """Ask for the curve and for the bias in hand, unless both are there or under way."""
         if not self.shows_current or self.structure is None:
             self.drop_current()
             return
-        wish, point = curve_wish(self.session), point_wish(self.session)
+        wish = curve_wish(self.session)
         is_there = self.news is not None and self.news.done and self.news.wish == wish
         if is_there or wish == self.stopped:
             self.drop_current()
         elif wish != self.wanted:
             self.wanted = wish
             self.currents.curves.ask(wish)
-        known = self.point_news is not None and self.point_news.wish == point
-        if not known and point != self.wanted_point:
-            self.wanted_point = point
-            self.currents.points.ask(point)
+        self._ask_point()
         self.show_answer()
+
+    def _ask_point(self) -> None:
+        """Ask for what is at the bias in hand, once its curve's range is known."""
+        wish = self._point_wish()
+        known = self.point_news is not None and self.point_news.wish == wish
+        if wish is not None and not known and wish != self.wanted_point:
+            self.wanted_point = wish
+            self.currents.points.ask(wish)
+
+    def _point_wish(self) -> PointWish | None:
+        sweep = None if self.news is None else self.news.sweep
+        if sweep is None or self.is_old or not sweep.from_V <= self.bias_V <= sweep.to_V:
+            return None
+        return point_wish(self.session, sweep)
 
     def drop_current(self) -> None:
         """Break off the curve that is being computed."""
@@ -132,6 +159,7 @@ class CurrentView(Bench):
                     self._show_current()
         elif news.wish == self.wanted:
             self.news = news
+            self._ask_point()
             if news.done:
                 self.wanted = None
             if self.shows_current:
@@ -166,15 +194,13 @@ class CurrentView(Bench):
 
     def point(self) -> BiasPoint | None:
         """Give what is at the bias in hand, read off the curve until it is computed."""
-        if self.structure is None:
+        wish, sweep = self._point_wish(), None if self.news is None else self.news.sweep
+        if wish is None or sweep is None:
             return None
         news = self.point_news
-        if news is not None and news.point is not None and news.wish == point_wish(self.session):
+        if news is not None and news.point is not None and news.wish == wish:
             return news.point
-        sweep, bias = None if self.news is None else self.news.sweep, self.bias_V
-        if sweep is None or self.is_old or not sweep.from_V <= bias <= sweep.to_V:
-            return None
-        return point_between(sweep.curve, bias)
+        return point_between(sweep.curve, self.bias_V)
 
     @property
     def bias_V(self) -> float:

@@ -12,18 +12,23 @@ from collections.abc import Callable
 from dataclasses import dataclass, replace
 from typing import TypeVar
 
+from physics.curve import Drive
 from physics.errors import PhysicsError
-from tui.bias_point import BiasPoint, point_at
+from physics.solutions import Solutions
+from tui.bias_point import REACH_V, BiasPoint, point_at
 from tui.figures.current_figure import OVERLAYS
 from tui.overlay import Overlay, overlay
 from tui.session.model import Session, SweepEntry, View
 from tui.session.read import overlay_temperatures
 from tui.session.refusal import SessionError
-from tui.sweep import Sweep, SweepRequest, sweep
+from tui.session.resolve import resolve
+from tui.sweep import Sweep, SweepRequest, drive_of, sweep
 from tui.workbench.worker import Watch, Worker
 
 KEPT = 16
 """Curves that are kept of each kind."""
+MOST_SOLUTIONS = 400
+"""Solutions of Poisson's equation that are kept for the bias in hand."""
 KeptT = TypeVar("KeptT", Sweep, Overlay)
 NO_MEMORY = "there is not enough memory for this design"
 
@@ -58,9 +63,10 @@ class CurveNews:
 
 @dataclass(frozen=True)
 class PointWish:
-    """A session and the bias in hand."""
+    """A session, the range of its curve, and the bias in hand."""
 
     session: Session
+    range_V: tuple[float, float]
     bias_V: float
 
 
@@ -84,9 +90,10 @@ def curve_wish(session: Session) -> CurveWish:
     return CurveWish(replace(_bare(session), sweep=ranged), others[: len(OVERLAYS)])
 
 
-def point_wish(session: Session) -> PointWish:
-    """Ask for what is at a session's bias."""
-    return PointWish(replace(_bare(session), sweep=SweepEntry()), session.conditions.bias_V)
+def point_wish(session: Session, found: Sweep) -> PointWish:
+    """Ask for what is at a session's bias, in the range of its curve."""
+    bare = replace(_bare(session), sweep=SweepEntry())
+    return PointWish(bare, (found.from_V, found.to_V), session.conditions.bias_V)
 
 
 def _bare(session: Session) -> Session:
@@ -101,6 +108,7 @@ class Currents:
         self._deliver = deliver
         self._sweeps: OrderedDict[object, Sweep] = OrderedDict()
         self._overlays: OrderedDict[object, Overlay] = OrderedDict()
+        self._drive: tuple[object, Drive, Solutions | None] | None = None
         self.curves: Worker[CurveWish] = Worker("winze-currents", self._curves)
         self.points: Worker[PointWish] = Worker("winze-point", self._point)
 
@@ -119,6 +127,7 @@ class Currents:
 
     def _answer(self, wish: CurveWish, watch: Watch) -> None:
         session = wish.session
+        _require_range(session)
 
         def tell(first: Sweep) -> None:
             watch()
@@ -142,11 +151,32 @@ class Currents:
 
     def _point(self, wish: PointWish, watch: Watch) -> None:
         try:
-            point = point_at(wish.session, wish.bias_V, watch)
+            point = point_at(self._drive_for(wish, watch), wish.bias_V)
         except (SessionError, PhysicsError, MemoryError):
             self._deliver(PointNews(wish, None))  # the curve says why
         else:
             self._deliver(PointNews(wish, point))
+
+    def _drive_for(self, wish: PointWish, watch: Watch) -> Drive:
+        """Keep the drive, and with it the solutions near which others are found quickly."""
+        key = wish.session, wish.range_V
+        if self._drive is not None and self._drive[0] == key:
+            _, drive, solutions = self._drive
+            if solutions is None or len(solutions.known) < MOST_SOLUTIONS:
+                return drive
+        low, high = wish.range_V
+        reach = low - REACH_V, high + REACH_V
+        drive, solutions = drive_of(wish.session, resolve(wish.session), reach, watch)
+        self._drive = key, drive, solutions
+        return drive
+
+
+def _require_range(session: Session) -> None:
+    """Refuse an empty range in the form's own words."""
+    start, stop = session.sweep.from_V or 0.0, session.sweep.to_V
+    if stop is not None and not start < stop:
+        allowed = "the bias goes from a lower to a higher one; change from V or to V"
+        raise SessionError("", f"the range from {start:g} to {stop:g} V is empty", allowed)
 
 
 def _kept(store: OrderedDict[object, KeptT], key: object, made: KeptT) -> KeptT:

@@ -5,7 +5,7 @@ from __future__ import annotations
 from dataclasses import dataclass
 
 from physics.structure import Contact, Layer, Structure
-from tui.session.model import ContactEntry, LayerEntry, Session
+from tui.session.model import Conditions, ContactEntry, LayerEntry, Session
 from tui.workbench.values import Place
 
 
@@ -107,14 +107,26 @@ def _conditions(session: Session, *, of_current: bool) -> Row:
         Field(given, "temperature_K", f"{conditions.temperature_K:g}", 6, "temp. K"),
         Field(given, "bias_V", f"{conditions.bias_V:g}", 7, "bias V"),
     )
-    # A further value of the conditions, as a dephasing energy, goes here.
-    models = (
+    models = [
         Field(given, "band", conditions.band, 9, "band"),
         Field(given, "field", conditions.field, 8, "field"),
-    )
+    ]
+    if conditions.field == "screened":
+        models.append(Field(given, "charge", conditions.charge, 14, "charge"))
+    substrate = Field(("growth", 0), "substrate", session.growth.substrate or "-", 10, "substrate")
+    last = (_coherence(conditions), substrate)
     if of_current:
-        return Row("", (*first, *models, *_sweep(session), *_device(session)))
-    return Row("", (*first, *_window(session), *models))
+        return Row("", (*first, *models, *_sweep(session), *_device(session), *last))
+    return Row("", (*first, *_window(session), *models, *last))
+
+
+def _coherence(conditions: Conditions) -> Field:
+    """Show how coherence is lost, in the way that it is stated."""
+    ways = {"scattering_time_s": "scatter. s", "mobility_cm2_Vs": "cm2/Vs"}
+    stated = (key for key in ways if getattr(conditions, key) is not None)
+    key = "dephasing_eV" if conditions.dephasing_eV is not None else next(stated, "dephasing_eV")
+    text = _number(getattr(conditions, key), NOT_STATED)
+    return Field(("conditions", 0), key, text, 8, ways.get(key, "dephasing eV"))
 
 
 def _window(session: Session) -> tuple[Field, ...]:

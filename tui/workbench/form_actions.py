@@ -187,6 +187,7 @@ _TEXT_FIELDS = {
     "label": "a name for the layer",
     "material": "a formula like Al0.3Ga0.7As, or a material of the session's own",
     "to_material": "the material at the right face of a graded layer",
+    "substrate": "what the stack is grown on, by its formula, as InP; empty: nothing is strained",
     **{
         key: f"{' or '.join(choices)}; + and - change it" for key, choices in values.CHOICES.items()
     },

@@ -71,7 +71,7 @@ KEYS = (
     Key("e", "e", "energy", "type an energy", ENERGY, "type a bias"),
     Key("c", "c", "switch_view", "bands, or the current over bias", CURRENT),
     Key("l", "l", "scale", "the current's size in decades, or the current", CURRENT),
-    Key("T", "T", "overlays", "type temperatures whose curves are laid over", CURRENT),
+    Key("O", "O", "overlays", "type temperatures whose curves are laid over", CURRENT),
     Key("escape", "Esc", "break_off", "break off the computation of the current", CURRENT),
     Key("C", "C", "compute_current", "compute it after all", CURRENT),
     Key("u", "u", "undo", "undo", DESIGN),

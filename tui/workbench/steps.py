@@ -22,6 +22,7 @@ STEPS: dict[str, tuple[float, float]] = {
     "fraction": (0.01, 0.001),
     "gap_eV": (0.01, 0.001),
     "to_gap_eV": (0.01, 0.001),
+    "dephasing_eV": (0.001, 0.0001),
     "from_V": (0.1, 0.01),
     "to_V": (0.1, 0.01),
     "mesa_um2": (1.0, 0.1),
@@ -32,6 +33,8 @@ STEPS: dict[str, tuple[float, float]] = {
 FACTORS: dict[str, tuple[float, float]] = {
     "donors_cm3": (10.0**0.1, 10.0**0.01),
     "max_width_eV": (2.0, 1.1),
+    "scattering_time_s": (10.0**0.1, 10.0**0.01),
+    "mobility_cm2_Vs": (10.0**0.1, 10.0**0.01),
 }
 """What they multiply by, where a quantity spans decades."""
 FIRST_DONORS_CM3 = 1e16

@@ -32,6 +32,9 @@ AGAINST = {
     "to_mass": ("to_material",),
     "donors_cm3": ("fermi_eV",),
     "fermi_eV": ("donors_cm3",),
+    "dephasing_eV": ("scattering_time_s", "mobility_cm2_Vs"),
+    "scattering_time_s": ("dephasing_eV", "mobility_cm2_Vs"),
+    "mobility_cm2_Vs": ("dephasing_eV", "scattering_time_s"),
 }
 """Values that a new one stands against, and takes away."""
 NEEDED = (
@@ -44,14 +47,20 @@ NEEDED = (
     "bias_V",
     "field",
     "band",
+    "charge",
 )
-CHOICES = {"band": tables.BANDS, "field": tables.FIELD_MODELS}
+CHOICES = {
+    "band": tables.BANDS,
+    "field": tables.FIELD_MODELS,
+    "charge": tables.CHARGE_MODELS,
+}
 """Texts of which there are a few; a step goes to the next."""
 EMPTY = {"title": "", "notes": "", "label": "", "max_width_eV": View().max_width_eV}
 """What an emptied field falls back to."""
 TABLES: dict[str, tables.Table] = {
     "conditions": tables.CONDITIONS,
     "view": tables.VIEW,
+    "growth": tables.GROWTH,
     "sweep": tables.SWEEP,
     "device": tables.DEVICE,
     "top": tables.TOP_TEXTS,
@@ -106,7 +115,7 @@ def set_value(
     if isinstance(entry, (LayerEntry, ContactEntry)):
         changes = _medium_changes(entry, place, key, value, structure)
     else:
-        changes = {key: _needed(key, value)}
+        changes = dict.fromkeys(AGAINST.get(key, ())) | {key: _needed(key, value)}
     return with_entry(session, place, replace(entry, **changes))
 
 
@@ -204,6 +213,9 @@ def _medium_changes(
     changes: dict[str, Any] = {}
     if key in ("edge_eV", "mass"):
         changes = explicit(entry, place, structure) | {"material": None}
+    if key in ("to_edge_eV", "to_mass") and isinstance(entry, LayerEntry) and entry.to_material:
+        part = _resolved(place, structure)
+        changes["to_gap_eV"] = entry.to_gap_eV if part is None else part.to_gap_eV
     changes |= {other: None for other in AGAINST.get(key, ()) if hasattr(entry, other)}
     if key == "donors_cm3" and isinstance(entry, LayerEntry):
         return changes | {key: value or 0.0}
