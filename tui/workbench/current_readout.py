@@ -22,16 +22,18 @@ Item = tuple[str, str]
 
 
 def current_lines(
-    sweep: Sweep | None,
+    sweep: Sweep,
     branches: tuple[Branch, ...],
     point: BiasPoint | None,
     width: int,
     height: int,
 ) -> list[Styled]:
     """Say what is at the bias in hand, and below what fits of the curve's and device's figures."""
-    lines = [_at_bias(sweep, branches, point, width)]
-    if sweep is None:
-        return lines
+    if point is None:
+        lines: list[Styled] = [[(" the bias in hand is outside the curve, ", "faint")]]
+        lines[0] += _strong(_range(sweep))
+    else:
+        lines = [_at_bias(sweep, branches, point, width)]
     if not sweep.refined:
         said = "peaks and valleys are sought when the curve is done"
         return [*lines, [(f" {said}", "faint")]]
@@ -46,12 +48,14 @@ def summary(sweep: Sweep) -> list[Item]:
     if region is None:
         return []
     name = sweep.regions.index(region) + 1 if region in sweep.regions else 1
-    items = [(f"P{name}", _point(region.peak.bias_V, region.peak.current_density_A_per_cm2))]
+    current = region.peak.current_density_A_per_cm2
+    size = f"{amount(current, DENSITY)} = {1e-5 * abs(current):.4g} mA/um2"
+    items = [(f"P{name}", f"{size} at {region.peak.bias_V:.4f} V")]
     if region.valley is not None:
         at = region.valley.bias_V, region.valley.current_density_A_per_cm2
         items.append((f"V{name}", _point(*at)))
     items += _shape(region)
-    return items if figures is None else items + _device(figures)
+    return items if figures is None else items + _device(figures)[1:]  # P says the first
 
 
 def report(sweep: Sweep) -> list[str]:
@@ -89,9 +93,9 @@ def _device(figures: Figures) -> list[Item]:
     """List the figures that there are."""
     per_area = [
         ("peak", f"{figures.peak_kA_per_cm2:.4g} kA/cm2 = {figures.peak_mA_per_um2:.4g} mA/um2"),
-        ("heat", amount(figures.dissipated_W_per_cm2, "W/cm2", 3)),
         ("swing", _swing(figures)),
         ("power", _amount(figures.available_power_W_per_cm2, "W/cm2")),
+        ("heat", amount(figures.dissipated_W_per_cm2, "W/cm2", 3)),
         ("cut-off", _cutoff(figures)),
         ("-G", _amount(figures.negative_conductance_S_per_cm2, SLOPE)),
         ("C plates", amount(figures.space_charge_F_per_cm2, CAPACITANCE)),
@@ -133,11 +137,7 @@ def _range(sweep: Sweep) -> str:
     return f"{sweep.from_V:g} to {sweep.to_V:g} V"
 
 
-def _at_bias(
-    sweep: Sweep | None, branches: tuple[Branch, ...], point: BiasPoint | None, width: int
-) -> Styled:
-    if point is None:
-        return []
+def _at_bias(sweep: Sweep, branches: tuple[Branch, ...], point: BiasPoint, width: int) -> Styled:
     about = "" if point.is_exact else "~"
     current = point.current_density_A_per_cm2
     line: Styled = [
@@ -158,11 +158,9 @@ def _at_bias(
 
 
 def _shares(
-    sweep: Sweep | None, branches: tuple[Branch, ...], point: BiasPoint
+    sweep: Sweep, branches: tuple[Branch, ...], point: BiasPoint
 ) -> Iterable[tuple[str, str]]:
     """Give each level's number and share at the bias in hand, the largest first."""
-    if sweep is None:
-        return
     bias = sweep.curve.bias_V
     pairs = zip(point.level_eV, point.level_share, strict=True)
     for energy, share in sorted(pairs, key=lambda pair: -abs(pair[1])):

@@ -7,6 +7,7 @@ from __future__ import annotations
 
 from textual import events
 from textual.message import Message
+from textual.timer import Timer
 
 from tui.bias_point import BiasPoint, point_between
 from tui.figures.cells import Glyphs
@@ -30,6 +31,8 @@ from tui.workbench.sheet import Cursor, moved
 
 TALL_FROM = 30
 """Lines from which the read-out has room for more of the device's figures."""
+BANDS_PAUSE_S = 0.1
+"""How long the bias line has to rest before the levels beside the current are computed."""
 CURRENT_HINT = "? keys   c bands   k j bias   n p feature   l log   O overlays   i figures"
 TITLE = "This current in full"
 COMPUTING, STOPPED = "the current is being computed; Esc breaks off", "broken off; C computes it"
@@ -56,6 +59,7 @@ class CurrentView(Bench):
         self.wanted_point: PointWish | None = None
         self._scene: Scene | None = None
         self._bands_due = False
+        self._pausing: Timer | None = None
         self.currents = Currents(self._hand_over)
 
     def on_unmount(self) -> None:
@@ -92,26 +96,34 @@ class CurrentView(Bench):
 
     def _catch_up(self) -> None:
         """Compute the bands' answer if it is due and seen."""
-        if self._bands_due:
-            self.compute()
+        if self._bands_due and (self.has_class("wide") or not self.shows_current):
+            self._bands_due = False
+            super().compute()
+
+    def compute(self) -> None:
+        """Ask for the current; for the bands' answer once that is seen, and the moves pause."""
+        self._bands_due = self.shows_current
+        if not self.shows_current:
+            super().compute()
+            return
+        if self.has_class("wide"):
+            if self._pausing is not None:
+                self._pausing.stop()
+            self._pausing = self.set_timer(BANDS_PAUSE_S, self._catch_up)
+        if not self.are_keys_waiting:
+            self.all_keys_done()
 
     def all_keys_done(self) -> None:
         """Compute what was asked for last, the current too where it is looked at."""
         super().all_keys_done()
         self.ask_current()
 
-    def compute(self) -> None:
-        """Ask for the bands' answer, but where they are out of sight only once they are seen."""
-        self._bands_due = self.shows_current and not self.has_class("wide")
-        if not self._bands_due:
-            super().compute()
-        elif not self.are_keys_waiting:
-            self.all_keys_done()
-
     def ask_current(self) -> None:
         """Ask for the curve and for the bias in hand, unless both are there or under way."""
         if not self.shows_current or self.structure is None:
             self.drop_current()
+            if self.shows_current:
+                self.show_answer()
             return
         wish = curve_wish(self.session)
         is_there = self.news is not None and self.news.done and self.news.wish == wish
@@ -166,6 +178,11 @@ class CurrentView(Bench):
                 self.show_answer()
 
     # Showing
+
+    @property
+    def is_computing(self) -> bool:
+        """Whether an answer is being waited for."""
+        return any(wish is not None for wish in (self.asked, self.wanted, self.wanted_point))
 
     @property
     def scene(self) -> Scene | None:

@@ -138,6 +138,9 @@ def _conditions(row: Row, cursor: Cursor, width: int) -> list[StyledLine]:
             role = "cursor" if n == here else "strong"
             line += [(f" {field.head} ", "faint"), (f" {field.text} ", role)]
         lines.append(line)
+    if len(parts) > MOST_CONDITIONS:
+        lines[0].append((" <" if first else "", "faint"))
+        lines[-1].append((" >" if first + MOST_CONDITIONS < len(parts) else "", "faint"))
     return lines
 
 
