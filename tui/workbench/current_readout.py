@@ -11,7 +11,7 @@ from tui.bias_point import BiasPoint
 from tui.branches import Branch, sign_of
 from tui.report import quantities
 from tui.sweep import Sweep
-from tui.workbench.readout import Styled, wrapped
+from tui.workbench.readout import Styled, cut_to, wrapped
 
 DENSITY, SLOPE, CAPACITANCE = "A/cm2", "S/cm2", "F/cm2"
 SAID_FROM = 5e-4
@@ -39,7 +39,8 @@ def current_lines(
         return [*lines, [(f" {said}", "faint")]]
     if sweep.main is None:
         return [*lines, [(" no peak between ", "faint"), *_strong(_range(sweep))]]
-    return [*lines, *_flowed(summary(sweep), width, height - 1)]
+    lines += _flowed(summary(sweep), width, height - 1)
+    return [cut_to(line, width) for line in lines]
 
 
 def summary(sweep: Sweep) -> list[Item]:
@@ -181,8 +182,8 @@ def _flowed(items: Sequence[Item], width: int, height: int) -> list[Styled]:
         elif not last:
             lines.append(item)
         else:
-            blanks = " " * (width - len(MORE) - _size(lines[-1]))
-            lines[-1].append((blanks + MORE, "faint"))
+            kept = cut_to(lines[-1], room)
+            lines[-1] = [*kept, (" " * (room - _size(kept)) + MORE, "faint")]
             break
     return lines
 
