@@ -176,7 +176,9 @@ def _limits(scene: Scene) -> tuple[Limits, float]:
         top, bottom = (max(float(every.max()), 0.0)), min(float(every.min()), 0.0)
         top, bottom = top / scale, bottom / scale
     span = top - bottom or 1.0
-    below = PAD_ABOVE if bottom < 0.0 and not scene.is_log else PAD_BELOW
+    below = PAD_BELOW
+    if not scene.is_log:
+        below = PAD_ABOVE if bottom < 0.0 else 0.0
     limits = Limits(sweep.from_V, sweep.to_V, bottom - below * span, top + PAD_ABOVE * span)
     return limits, scale
 

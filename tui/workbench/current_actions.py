@@ -11,7 +11,7 @@ from tui.figures.current_figure import OVERLAYS, features_of
 from tui.session.model import Session
 from tui.session.read import overlay_temperatures
 from tui.session.tables import CONDITIONS
-from tui.workbench.current_view import STOPPED, CurrentView
+from tui.workbench.current_view import CURRENT_HINT, STOPPED, CurrentView
 from tui.workbench.document import Document
 from tui.workbench.energy_actions import FINE, EnergyActions
 from tui.workbench.panes import CurrentPane
@@ -146,6 +146,7 @@ class CurrentActions(CurrentView, EnergyActions):
         at = self.bias_V / step
         to = math.floor(at + 1e-6) + steps if steps > 0 else math.ceil(at - 1e-6) + steps
         self._take_bias(min(max(float(f"{to * step:.9g}"), low), high))
+        self.say(CURRENT_HINT)
 
     def _take_bias(self, bias_V: float) -> None:
         """Make a bias the session's; moves that follow each other quickly are one edit."""

@@ -48,7 +48,7 @@ def summary(sweep: Sweep) -> list[Item]:
     region, figures = sweep.main, sweep.figures
     if region is None:
         return []
-    name = sweep.regions.index(region) + 1 if region in sweep.regions else 1
+    name = _number(sweep, region)
     current = region.peak.current_density_A_per_cm2
     size = f"{amount(current, DENSITY)} = {1e-5 * abs(current):.4g} mA/um2"
     items = [(f"P{name}", f"{size} at {region.peak.bias_V:.4f} V")]
@@ -65,10 +65,14 @@ def report(sweep: Sweep) -> list[str]:
     for number, region in enumerate(sweep.regions, start=1):
         lines += [*_about_region(number, region), ""]
     if sweep.main is not None and sweep.figures is not None:
-        lines.append("Figures between peak and valley of the largest fall")
+        lines.append(f"Figures of P{_number(sweep, sweep.main)} and the fall behind it")
         lines += [f"  {name:<24} {value}" for name, value in _device(sweep.figures)]
         lines.append("")
     return [*lines, *(line for note in sweep.notes for line in [*wrapped(note, 70), ""])]
+
+
+def _number(sweep: Sweep, region: Region) -> int:
+    return sweep.regions.index(region) + 1 if region in sweep.regions else 1
 
 
 def _about_region(number: int, region: Region) -> list[str]:

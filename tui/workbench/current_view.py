@@ -130,7 +130,7 @@ class CurrentView(Bench):
         if is_there or wish == self.stopped:
             self.drop_current()
         elif wish != self.wanted:
-            self.wanted = wish
+            self.wanted, self.stopped = wish, None
             self.currents.curves.ask(wish)
         self._ask_point()
         self.show_answer()
@@ -243,10 +243,10 @@ class CurrentView(Bench):
         figure, pane = self.query_one("#current", CurrentPane), self.query_one("#reading", Pane)
         scene, point = self.scene, self.point()
         if self.current_trouble and (scene is None or self.structure is not None):
-            figure.say([self.current_trouble], "trouble")
+            figure.say(self.current_trouble, "trouble")
             pane.show([])
         elif scene is None:
-            figure.say([STOPPED if self.stopped else COMPUTING], "faint")
+            figure.say(STOPPED if self.stopped else COMPUTING, "faint")
             pane.show([])
         else:
             figure.draw(scene, self.bias_V, point, is_old=self.is_old)

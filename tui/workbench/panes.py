@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import textwrap
 from collections.abc import Sequence
 
 from rich.segment import Segment
@@ -124,9 +125,10 @@ class CurrentPane(Pane):
         lines = current_figure(base, bias_V, current).lines()
         self.show(dimmed(lines) if is_old else lines)
 
-    def say(self, lines: Sequence[str], role: str) -> None:
+    def say(self, text: str, role: str) -> None:
         """Say why there is no figure."""
         self.base = None
+        lines = textwrap.wrap(text, max(20, self.size.width - 2))
         self.show([[("", "")], *([(f" {line}", role)] for line in lines)])
 
     @staticmethod
