@@ -143,18 +143,22 @@ def test_plain_characters_where_the_terminal_has_no_others(
     assert t.until("one row up").isascii()
 
 
+def codes(raw: bytes) -> set[bytes]:
+    """Find the numbers of what sets colours and the like."""
+    return {
+        code
+        for part in raw.split(b"\x1b[")[1:]
+        if b"m" in part[:24] and part[: part.index(b"m")].replace(b";", b"").isdigit()
+        for code in part[: part.index(b"m")].split(b";")
+    }
+
+
 def test_no_colour(terminals: list[Terminal]) -> None:
     t = Terminal(80, 24, TERM="xterm-256color", LANG="C.UTF-8", LC_ALL="C.UTF-8", NO_COLOR="1")
     terminals.append(t)
     t.until("proved complete")
-    codes = {
-        code
-        for part in t.raw.split(b"\x1b[")[1:]
-        if b"m" in part[:24] and part[: part.index(b"m")].replace(b";", b"").isdigit()
-        for code in part[: part.index(b"m")].split(b";")
-    }
     colours = {*range(30, 39), *range(40, 49), *range(90, 98), *range(100, 108)}
-    assert not {int(code) for code in codes} & colours
+    assert not {int(code) for code in codes(t.raw)} & colours
     cursor = [c for row in t.screen.buffer.values() for c in row.values() if c.reverse]
     assert cursor  # the form's cursor is seen without colour
 
@@ -240,3 +244,27 @@ def test_a_slow_link_is_not_flooded(terminals: list[Terminal]) -> None:
         time.sleep(0.03)
     t.until("21.95", 5.0)  # 5 nm and 60 monolayers
     assert len(t.raw) - before < 60_000
+
+
+@pytest.mark.parametrize("term", ["linux", "xterm-256color"])
+def test_the_current_needs_no_colour_and_is_quiet_when_done(
+    terminals: list[Terminal], term: str
+) -> None:
+    t = Terminal(80, 24, TERM=term, LANG="C", LC_ALL="C", NO_COLOR="1")
+    terminals.append(t)
+    t.until("proved complete")
+    t.press("c")
+    shown = t.until("ratio", 30.0)
+    assert shown.isascii()
+    for said in ("P1", "V1", "level", "bias V", "J "):
+        assert said in shown
+    t.press("lkkn")
+    t.until("1e4")
+    t.read(1.0)
+    assert t.read(1.5) == b""
+    colours = {*range(30, 39), *range(40, 49), *range(90, 98), *range(100, 108)}
+    assert not {int(code) for code in codes(t.raw)} & colours
+    t.press("cq")
+    t.until("unsaved changes")  # the bias has moved
+    t.press("d")
+    assert t.wait() == 0

@@ -4,21 +4,16 @@ from __future__ import annotations
 
 import asyncio
 import os
-from collections.abc import AsyncIterator, Callable
-from contextlib import asynccontextmanager
 from dataclasses import replace
 from pathlib import Path
-from typing import Any
 
 import pytest
 
 from physics.levels import find_levels
-from tui.figures.cells import PLAIN, RICH
+from pilot import bench
 from tui.session.demo import demo_text
 from tui.session.read import load
 from tui.workbench import document as documents
-from tui.workbench.app import Workbench
-from tui.workbench.document import Document
 from tui.workbench.panes import Pane
 from tui.workbench.prompt import Prompt
 from tui.workbench.screens import Question, Reader
@@ -31,49 +26,6 @@ def path(tmp_path: Path) -> Path:
     file = tmp_path / "diode.toml"
     file.write_text(COMMENT + demo_text(), encoding="utf-8")
     return file
-
-
-class Driver:
-    """A pilot that waits for answers instead of for time."""
-
-    def __init__(self, app: Workbench, pilot: Any) -> None:
-        self.app, self.pilot = app, pilot
-
-    async def until(self, condition: Callable[[], bool]) -> None:
-        for _ in range(400):
-            if condition():
-                return
-            await asyncio.sleep(0.01)
-        raise AssertionError(self.text())
-
-    async def press(self, *keys: str) -> None:
-        await self.pilot.press(*keys)
-        await self.settle()
-
-    async def settle(self) -> None:
-        await self.pilot.pause()
-        await self.until(lambda: self.app.asked is None)
-        await self.pilot.pause()
-
-    async def type(self, text: str) -> None:
-        self.app.query_one(Prompt).line.value = text
-        await self.press("enter")
-
-    def text(self, pane: str = "") -> str:
-        panes = [self.app.query_one(f"#{pane}", Pane)] if pane else list(self.app.query(Pane))
-        return "\n".join(strip.text for p in panes for strip in p._strips)
-
-
-@asynccontextmanager
-async def bench(
-    document: Document | None = None, size: tuple[int, int] = (110, 35), *, plain: bool = False
-) -> AsyncIterator[Driver]:
-    app = Workbench(document or documents.demo(), PLAIN if plain else RICH)
-    async with app.run_test(size=size) as pilot:
-        driver = Driver(app, pilot)
-        await driver.until(lambda: app.study is not None)
-        await driver.settle()
-        yield driver
 
 
 async def test_what_is_shown_is_what_was_computed() -> None:
@@ -370,7 +322,7 @@ async def test_long_stacks_are_walked_by_pages() -> None:
         assert b.app.cursor.row == 12
         await b.press("end")
         assert b.app.field.place == ("right", 0)
-        assert "36 above" in b.text("sheet")  # 42 rows, 6 of them seen
+        assert "37 above" in b.text("sheet")  # 42 rows, 5 of them seen
         await b.press("pageup", "home")
         assert b.app.field.place == ("conditions", 0)
 

@@ -6,6 +6,7 @@ from dataclasses import replace
 
 import pytest
 
+from physics.band import masses_of
 from physics.formula import parse_formula
 from tui.session.demo import demo_text
 from tui.session.model import LayerEntry, Session
@@ -219,11 +220,12 @@ def test_the_form_fits_and_shows_the_cursor(width: int, height: int) -> None:
 def test_rows_out_of_sight_are_counted() -> None:
     session = replace(DEMO, layers=DEMO.layers * 10)
     rows = rows_of(session, None)
-    first = "".join(text for text, _ in sheet_lines(rows, Cursor(2, 2), 100, 10)[0])
-    assert first.endswith("44 below")  # 52 rows, 8 of them seen
-    middle = "".join(text for text, _ in sheet_lines(rows, Cursor(26, 2), 80, 10)[0])
+    # The conditions take two lines, the heads one; of 52 rows 7 are seen.
+    first = "".join(text for text, _ in sheet_lines(rows, Cursor(2, 2), 100, 10)[1])
+    assert first.endswith("45 below")
+    middle = "".join(text for text, _ in sheet_lines(rows, Cursor(26, 2), 80, 10)[1])
     above, below = (int(part[1:]) for part in middle.split()[-2:])
-    assert above + below == 44
+    assert above + below == 45
 
 
 @pytest.mark.parametrize("height", [18, 24, 35, 50, 200])
@@ -239,3 +241,99 @@ def test_every_key_is_listed_once() -> None:
     assert len(names) == len(set(names))
     text = "\n".join(help_lines())
     assert all(key.text in text for key in KEYS)
+
+
+def test_an_edge_of_ones_own_keeps_the_materials_gap() -> None:
+    layer = typed("edge_eV", "0.31")
+    assert layer.gap_eV == STRUCTURE.layers[1].gap_eV
+    assert typed("mass", "0.09").gap_eV == STRUCTURE.layers[1].gap_eV
+    stated = typed("gap_eV", "1.7")
+    assert (stated.material, stated.gap_eV) == ("Al0.4Ga0.6As", 1.7)
+    back = replace(DEMO, layers=(DEMO.layers[0], stated))
+    assert typed("material", "AlAs", back).gap_eV is None
+    kane = replace(DEMO, conditions=replace(DEMO.conditions, band="kane"))
+    resolve(values.set_typed(kane, FIRST, "edge_eV", "0.31", STRUCTURE))
+
+
+def test_a_layer_like_its_neighbour_has_its_gap() -> None:
+    session = values.set_typed(DEMO, FIRST, "edge_eV", "0.31", STRUCTURE)
+    assert stacking.add_layer(session, 1).layers[2].gap_eV == STRUCTURE.layers[1].gap_eV
+
+
+def test_halves_of_a_grade_have_the_masses_of_the_whole() -> None:
+    kane = replace(DEMO, conditions=replace(DEMO.conditions, band="kane"))
+    session = values.set_typed(kane, FIRST, "to_material", "GaAs", STRUCTURE)
+    before = resolve(session)
+    after = resolve(stacking.split_layer(session, 1, before))
+    whole, halves = masses_of(before, "kane"), masses_of(after, "kane")
+    middle = 0.5 * (whole.slope_left[1] + whole.slope_right[1])
+    assert halves.slope_left[1] == pytest.approx(whole.slope_left[1])
+    assert halves.slope_right[1] == pytest.approx(middle, rel=1e-8)
+    assert halves.slope_left[2] == pytest.approx(middle, rel=1e-8)
+    assert halves.slope_right[2] == pytest.approx(whole.slope_right[1])
+    turned = resolve(stacking.turn_layer(session, 1, before)).layers[1]
+    assert turned.gap_eV == before.layers[1].right_gap_eV
+    own = resolve(values.set_typed(session, FIRST, "to_edge_eV", "0.1", before)).layers[1]
+    assert own.right_gap_eV == before.layers[1].right_gap_eV
+
+
+def test_models_are_stepped_round() -> None:
+    place = ("conditions", 0)
+    kane = values.step(DEMO, place, "band", 1)
+    assert kane.conditions.band == "kane"
+    assert values.step(kane, place, "band", 1) == DEMO
+    assert values.step(DEMO, place, "band", -1).conditions.band == "kane"
+    for key, choices in values.CHOICES.items():
+        seen = DEMO
+        for _ in choices:
+            seen = values.step(seen, place, key, 1)
+        assert seen == DEMO
+    assert values.set_typed(DEMO, place, "band", "kane", None) == kane
+    with pytest.raises(Refusal, match="parabolic, kane"):
+        values.set_typed(DEMO, place, "band", "flat", None)
+    with pytest.raises(Refusal, match="needed"):
+        values.set_typed(DEMO, place, "band", "", None)
+
+
+def test_coherence_is_stated_in_one_way() -> None:
+    place = ("conditions", 0)
+    timed = values.set_typed(DEMO, place, "scattering_time_s", "0.2 ps", None)
+    assert timed.conditions.scattering_time_s == 0.2e-12
+    assert "scatter. s" in [field.head for field in rows_of(timed, None)[0].fields]
+    wide = values.set_typed(timed, place, "dephasing_eV", "2 meV", None)
+    assert (wide.conditions.dephasing_eV, wide.conditions.scattering_time_s) == (0.002, None)
+    assert values.set_typed(wide, place, "dephasing_eV", "", None) == DEMO
+
+
+def test_gaps_are_shown_where_they_matter() -> None:
+    def heads(session: Session) -> list[str]:
+        return [field.head for field in rows_of(session, resolve(session))[2].fields]
+
+    assert "gap eV" not in heads(DEMO)
+    kane = values.step(DEMO, ("conditions", 0), "band", 1)
+    assert "gap eV" in heads(kane)
+    row = rows_of(kane, resolve(kane))[3]
+    shown = next(field for field in row.fields if field.key == "gap_eV")
+    assert (shown.text, shown.stated) == (f"{resolve(kane).layers[1].gap_eV:.4f}", False)
+
+
+def test_range_and_device() -> None:
+    session = values.set_typed(DEMO, ("sweep", 0), "to_V", "600 mV", None)
+    session = values.set_typed(session, ("device", 0), "mesa_um2", "4 um2", None)
+    session = values.set_typed(session, ("device", 0), "parallel_fF", "0.1 pF", None)
+    session = values.step(session, ("device", 0), "mesa_um2", 1)
+    assert (session.sweep.to_V, session.device.mesa_um2) == (0.6, 5.0)
+    assert session.device.parallel_fF == 100.0
+    assert read_session(write_session(session), "x") == session
+    texts = [field.text for field in rows_of(session, None, of_current=True)[0].fields]
+    assert texts[4:9] == ["auto", "0.6", "5", "-", "100"]
+
+
+def test_conditions_break_into_lines_around_the_cursor() -> None:
+    rows = rows_of(DEMO, None, of_current=True)
+    for column in range(len(rows[0].fields)):
+        lines = sheet_lines(rows, Cursor(0, column), 60, 8)
+        assert sum(role == "cursor" for line in lines[:2] for _, role in line) == 1
+        assert len(lines) == 8
+        text = "".join(text for line in lines[:2] for text, _ in line)
+        assert (">" in text) or ("<" in text)

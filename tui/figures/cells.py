@@ -6,7 +6,24 @@ from collections.abc import Mapping
 from dataclasses import dataclass, field
 from typing import Literal
 
-Role = Literal["", "axis", "edge", "density", "fill", "level", "curve", "fermi", "line", "pointer"]
+Role = Literal[
+    "",
+    "axis",
+    "edge",
+    "density",
+    "fill",
+    "level",
+    "curve",
+    "fermi",
+    "line",
+    "pointer",
+    "feature",
+    "share",
+    "overlay 1",
+    "overlay 2",
+    "overlay 3",
+    "overlay 4",
+]
 Line = list[tuple[str, Role]]
 """One row: runs of text with their roles."""
 
@@ -29,12 +46,28 @@ class Glyphs:
     tick_left: str
     tick_below: str
     cross_below: str
+    upright_line: str
+    """The line at the bias in hand, and what points to it from below."""
+    upward: str
+    feature: str
+    """A peak or a valley of a current."""
+    here: str
+    """The current at the bias in hand."""
+    shares: str
+    """Shares from none to all, in equal steps."""
 
 
-_DOTS = dict.fromkeys(("edge", "density", "curve"), "braille")
-_LETTERS = {"edge": "#", "density": "o", "curve": "*"}
-RICH = Glyphs(_DOTS, 4, "━", "┄", "▶", "·", "│", "─", "└", "┤", "┬", "┴")
-PLAIN = Glyphs(_LETTERS, 1, "=", "-", ">", ".", "|", "-", "+", "+", "+", "+")
+_OVERLAYS = {"overlay 1": "+", "overlay 2": "x", "overlay 3": "%", "overlay 4": "&"}
+_DOTS = dict.fromkeys(("edge", "density", "curve"), "braille") | _OVERLAYS
+_LETTERS = {"edge": "#", "density": "o", "curve": "*"} | _OVERLAYS
+RICH = Glyphs(
+    *(_DOTS, 4, "━", "┄", "▶", "·", "│", "─", "└", "┤", "┬", "┴"),
+    *("┊", "▲", "•", "◆", " ▁▂▃▄▅▆▇█"),
+)
+PLAIN = Glyphs(
+    *(_LETTERS, 1, "=", "-", ">", ".", "|", "-", "+", "+", "+", "+"),
+    *(":", "^", "O", "@", " .:-=*%#@"),
+)
 BRAILLE = 0x2800
 
 

@@ -17,7 +17,7 @@ os.environ.setdefault("TEXTUAL_SMOOTH_SCROLL", "0")
 os.environ["TEXTUAL_THEME"] = "ansi-dark"
 
 from tui.workbench import document as documents
-from tui.workbench.energy_actions import EnergyActions
+from tui.workbench.current_actions import CurrentActions
 from tui.workbench.file_actions import FileActions
 from tui.workbench.form_actions import FormActions
 from tui.workbench.look import glyphs_for_terminal
@@ -25,7 +25,7 @@ from tui.workbench.look import glyphs_for_terminal
 SIGNALLED = 128
 
 
-class Workbench(FormActions, EnergyActions, FileActions):
+class Workbench(FormActions, CurrentActions, FileActions):
     """The whole application."""
 
     def on_mount(self) -> None:

@@ -7,8 +7,7 @@ this class; what they decide is decided by pure functions.
 from __future__ import annotations
 
 import time
-from collections.abc import Callable
-from typing import Any, ClassVar
+from typing import ClassVar
 
 from textual import events
 from textual.app import ComposeResult
@@ -26,24 +25,25 @@ from tui.session.model import Session
 from tui.session.refusal import SessionError
 from tui.session.resolve import resolve
 from tui.study import Request, Study
+from tui.workbench.asking import Asking
 from tui.workbench.document import Document
 from tui.workbench.form import Field, Row, rows_of
-from tui.workbench.keys import KEYS, KeysInTurn
-from tui.workbench.panes import FigurePane, Pane
-from tui.workbench.prompt import Accept, Prompt
-from tui.workbench.readout import answer_state, dimmed, level_lines, note_lines, reading_lines
-from tui.workbench.screens import Question
+from tui.workbench.keys import KEYS
+from tui.workbench.panes import CurrentPane, FigurePane, Pane
+from tui.workbench.prompt import Prompt
+from tui.workbench.readout import dimmed, level_lines, note_lines, reading_lines, standing, wrapped
 from tui.workbench.sheet import Cursor, field_at, field_place, moved, sheet_height, sheet_lines
 from tui.workbench.solver import Hand, Outcome, Solver, Task
 
+NOTE_WIDTH = 70
 WIDE_FROM, SMALLEST = (160, 30), (60, 18)
 RESIZE_PAUSE_S = 0.08
 SLOW_S, PROGRESS_S = 0.3, 1.0
 """When a computation is called slow, and how often its time is shown."""
-HINT = "? keys   Enter change   + - step   n p level   a d x layer   w save   q quit"
+HINT = "? keys   Enter change   + - step   n p level   c current   w save   q quit"
 
 
-class Bench(KeysInTurn[int], inherit_bindings=False):
+class Bench(Asking, inherit_bindings=False):
     """State and panes of the workbench."""
 
     CSS_PATH = "bench.tcss"
@@ -67,14 +67,13 @@ class Bench(KeysInTurn[int], inherit_bindings=False):
         self.cursor = Cursor()
         self.hand = Hand()
         self.structure: Structure | None = None
+        self.shows_current = False
         self.rows: list[Row] = rows_of(document.session, None)
         self.study: Study | None = None
         self.reading: Reading | None = None
-        self.trouble = ""
         self.asked: Task | None = None
         self._due: Task | None = None
         self._asked_at = 0.0
-        self.field_region = Region(0, 0, 0, 0)
         self._form_height = 0
         self._resizing: Timer | None = None
         self._progressing: Timer | None = None
@@ -86,6 +85,7 @@ class Bench(KeysInTurn[int], inherit_bindings=False):
         with Container(id="body"):
             with Container(id="answer"):
                 yield FigurePane(self.glyphs, id="figure")
+                yield CurrentPane(self.glyphs, id="current")
                 yield Pane(id="reading")
             with Container(id="side"):
                 yield Pane(id="sheet")
@@ -134,10 +134,14 @@ class Bench(KeysInTurn[int], inherit_bindings=False):
         except (SessionError, PhysicsError) as error:
             self.structure, trouble = None, str(error)
         self._take_trouble(trouble)
-        self.rows = rows_of(self.session, self.structure)
-        self.cursor = moved(self.cursor, self.rows, 0, 0)
+        self.lay_form()
         self.show_form()
         self.compute()
+
+    def lay_form(self) -> None:
+        """Lay the form out for what is there now and for the view."""
+        self.rows = rows_of(self.session, self.structure, of_current=self.shows_current)
+        self.cursor = moved(self.cursor, self.rows, 0, 0)
 
     def compute(self) -> None:
         """Ask for the answer to what is there now, once all keys that have come are acted on."""
@@ -203,7 +207,9 @@ class Bench(KeysInTurn[int], inherit_bindings=False):
 
     def _fit_form(self, pane: Pane) -> None:
         """Give the form the height that its rows want, and draw all once that has happened."""
-        height = sheet_height(self.rows, self.size.height, beside=self.has_class("wide"))
+        width = pane.content_size.width or self.size.width
+        is_wide = self.has_class("wide")
+        height = sheet_height(self.rows, self.size.height, beside=is_wide, width=width)
         if self._form_height != height:
             self._form_height = height
             pane.styles.height = height
@@ -232,19 +238,27 @@ class Bench(KeysInTurn[int], inherit_bindings=False):
         advice = () if self.study is None else self.study.advice
         return [f"{note.topic}: {note.text}" for note in advice]
 
+    def notes_in_full(self) -> tuple[str, list[str]]:
+        """Give what there is to read on the answer, under a title."""
+        lines = [line for note in self.notes() for line in [*wrapped(note, NOTE_WIDTH), ""]]
+        if self.trouble:
+            lines = [*wrapped(self.trouble, NOTE_WIDTH), "", *lines]
+        return "Notes on this answer", lines
+
     def show_title(self) -> None:
         """Show what is in hand, and how its answer stands."""
         document, pane = self.document, self.query_one("#title", Pane)
         mark = "*" if document.is_changed else ""
         left = f" {document.name}{mark}  {self.session.title}"
-        right = f" {self._state()} "
+        right = f" {self.answer_state()} "
         room = max(0, pane.size.width - len(right))
         role = "trouble" if self.trouble else "bar"
         pane.show([[(left[:room].ljust(room), "bar"), (right, role)]])
 
-    def _state(self) -> str:
+    def answer_state(self) -> str:
+        """Say how the answer stands."""
         waited_s = 0.0 if self.asked is None else time.monotonic() - self._asked_at
-        return answer_state(self.study, self.trouble, waited_s if waited_s > SLOW_S else 0.0)
+        return standing(self.study, self.trouble, waited_s if waited_s > SLOW_S else 0.0)
 
     def _show_progress(self) -> None:
         """Say how long it takes, for as long as it does; nothing ticks otherwise."""
@@ -256,28 +270,6 @@ class Bench(KeysInTurn[int], inherit_bindings=False):
         if self._progressing is not None:
             self._progressing.stop()
         self._progressing = self.set_timer(seconds, self._show_progress)
-
-    # Asking and telling
-
-    def say(self, text: str, role: str = "faint") -> None:
-        """Show a message on the lowest line; a design that does not compute has precedence."""
-        if self.trouble and role == "faint":
-            text, role = self.trouble, "trouble"
-        self.query_one("#prompt", Prompt).say(f" {text}", role)
-
-    def ask(self, label: str, initial: str, accept: Accept, *, in_form: bool = False) -> None:
-        """Ask for a line of text, on the lowest line or in the form at the cursor."""
-        field = self.field_region if in_form else None
-        self.query_one("#prompt", Prompt).ask(f" {label} ", initial, accept, field)
-
-    def choose(self, question: str, answers: dict[str, str], then: Callable[[str], Any]) -> None:
-        """Ask a question; ``then`` is called with the key of an answer, unless it is left."""
-        self.push_screen(Question(question, answers), lambda key: then(key) if key else None)
-
-    @property
-    def is_asking(self) -> bool:
-        """Whether a line of text is being typed."""
-        return self.query_one("#prompt", Prompt).is_open
 
     def on_resize(self, event: events.Resize) -> None:
         """Choose the layout; draw once the resizing has paused."""

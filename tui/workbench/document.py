@@ -40,11 +40,12 @@ class Document:
         """Whether leaving would lose something."""
         return self.session != self.saved
 
-    def become(self, session: Session) -> None:
-        """Take an edit; the one before can be had back."""
+    def become(self, session: Session, *, joins: bool = False) -> None:
+        """Take an edit; the one before can be had back, unless this one joins it."""
         if session == self.session:
             return
-        self.past.append(self.session)
+        if not joins or not self.past or self.session == self.saved:
+            self.past.append(self.session)
         self.future.clear()
         self.session = session
 

@@ -11,7 +11,6 @@ from tui.workbench.bench import Bench
 from tui.workbench.document import Document
 from tui.workbench.keys import help_lines
 from tui.workbench.panes import Pane
-from tui.workbench.readout import wrapped
 from tui.workbench.screens import Reader
 
 
@@ -61,10 +60,8 @@ class FileActions(Bench):
 
     def action_notes(self) -> None:
         """Show the notes in full."""
-        lines = [line for note in self.notes() for line in [*wrapped(note, 70), ""]]
-        if self.trouble:
-            lines = [*wrapped(self.trouble, 70), "", *lines]
-        self.push_screen(Reader("Notes on this answer", "\n".join(lines) or "none"))
+        title, lines = self.notes_in_full()
+        self.push_screen(Reader(title, "\n".join(lines) or "none"))
 
     def action_redraw(self) -> None:
         """Draw the whole screen anew."""

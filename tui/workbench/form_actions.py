@@ -10,7 +10,7 @@ from physics.ranges import Range
 from tui.session.model import Session
 from tui.workbench import stacking, values
 from tui.workbench.bench import Bench
-from tui.workbench.form import Field
+from tui.workbench.form import NOT_STATED, Field
 from tui.workbench.sheet import Cursor, moved
 from tui.workbench.typed import Refusal, as_line, from_line, unit_of
 
@@ -41,7 +41,7 @@ class FormActions(Bench):
         field = self.field
         stated = values.value_of(self.session, field.place, field.key)
         if stated is None:
-            initial = "" if field.text == "auto" else field.text
+            initial = "" if field.text in ("auto", NOT_STATED) else field.text
         else:
             initial = stated if isinstance(stated, str) else repr(stated)
         self._type(field, initial)
@@ -187,4 +187,8 @@ _TEXT_FIELDS = {
     "label": "a name for the layer",
     "material": "a formula like Al0.3Ga0.7As, or a material of the session's own",
     "to_material": "the material at the right face of a graded layer",
+    "substrate": "what the stack is grown on, by its formula, as InP; empty: nothing is strained",
+    **{
+        key: f"{' or '.join(choices)}; + and - change it" for key, choices in values.CHOICES.items()
+    },
 }

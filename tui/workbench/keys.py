@@ -26,12 +26,15 @@ class Key:
     action: str
     text: str
     group: str
+    current: str = ""
+    """What it does in the current view, where that is something else."""
 
 
-FORM, STACK, ENERGY, DESIGN, SCREEN = (
+FORM, STACK, ENERGY, CURRENT, DESIGN, SCREEN = (
     "Form",
     "Stack",
     "Energy line",
+    "Current view",
     "Design",
     "Screen",
 )
@@ -59,13 +62,18 @@ KEYS = (
     Key("s", "s", "split", "split this layer in two halves", STACK),
     Key("m", "m", "mirror", "mirror the stack about this layer", STACK),
     Key("v", "v", "turn", "turn this layer's grade round", STACK),
-    Key("n", "n", "level(1)", "to the next level up", ENERGY),
-    Key("p", "p", "level(-1)", "to the next level down", ENERGY),
-    Key("k", "k", "line(1)", "one row up", ENERGY),
-    Key("j", "j", "line(-1)", "one row down", ENERGY),
-    Key("K", "K", "fine_line(1)", "a tenth of a row up", ENERGY),
-    Key("J", "J", "fine_line(-1)", "a tenth of a row down", ENERGY),
-    Key("e", "e", "energy", "type an energy", ENERGY),
+    Key("n", "n", "level(1)", "to the next level up", ENERGY, "to the next onset, peak or valley"),
+    Key("p", "p", "level(-1)", "to the next level down", ENERGY, "to the one before"),
+    Key("k", "k", "line(1)", "one row up", ENERGY, "the bias line one step up"),
+    Key("j", "j", "line(-1)", "one row down", ENERGY, "the bias line one step down"),
+    Key("K", "K", "fine_line(1)", "a tenth of a row up", ENERGY, "a tenth of a step up"),
+    Key("J", "J", "fine_line(-1)", "a tenth of a row down", ENERGY, "a tenth of a step down"),
+    Key("e", "e", "energy", "type an energy", ENERGY, "type a bias"),
+    Key("c", "c", "switch_view", "bands, or the current over bias", CURRENT),
+    Key("l", "l", "scale", "the current's size in decades, or the current", CURRENT),
+    Key("O", "O", "overlays", "type temperatures whose curves are laid over", CURRENT),
+    Key("escape", "Esc", "break_off", "break off the computation of the current", CURRENT),
+    Key("C", "C", "compute_current", "compute it after all", CURRENT),
     Key("u", "u", "undo", "undo", DESIGN),
     Key("r", "r", "redo", "redo", DESIGN),
     Key("t", "t", "title", "change the title", DESIGN),
@@ -145,6 +153,8 @@ def help_lines() -> list[str]:
                 others = [_plain(k) for k in key.keys.split(",")[1:]]
                 also = f"  (also {', '.join(others)})" if others else ""
                 lines.append(f"  {key.shown:<10} {key.text}{also}")
+            elif key.current and group == CURRENT:
+                lines.append(f"  {key.shown:<10} {key.current}")
     return lines
 
 

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import textwrap
 from collections.abc import Sequence
 
 from rich.segment import Segment
@@ -10,7 +11,9 @@ from textual.strip import Strip
 from textual.timer import Timer
 from textual.widget import Widget
 
+from tui.bias_point import BiasPoint
 from tui.figures.cells import Glyphs
+from tui.figures.current_figure import CurrentBase, Scene, current_base, current_figure
 from tui.figures.energy_figure import MIN_HEIGHT, MIN_WIDTH, Base, base_figure, figure
 from tui.reading import Reading
 from tui.study import Study
@@ -95,4 +98,39 @@ class FigurePane(Pane):
 
     @staticmethod
     def _size_of(base: Base) -> tuple[int, int]:
+        return base.cells.width, base.cells.height
+
+
+class CurrentPane(Pane):
+    """The figure of a current; what does not depend on the bias in hand is drawn once and kept."""
+
+    def __init__(self, glyphs: Glyphs, *, id: str) -> None:  # noqa: A002
+        super().__init__(id=id)
+        self.glyphs = glyphs
+        self.base: CurrentBase | None = None
+
+    def draw(
+        self, scene: Scene, bias_V: float, point: BiasPoint | None, *, is_old: bool = False
+    ) -> None:
+        """Draw a current, fainter where it is that of something else than is there now."""
+        width, height = self.size
+        if width < MIN_WIDTH or height < MIN_HEIGHT:
+            self.base = None
+            self.show([[(f"the figure needs {MIN_WIDTH} x {MIN_HEIGHT} cells", "faint")]])
+            return
+        base = self.base
+        if base is None or base.scene is not scene or self._size_of(base) != (width, height):
+            base = self.base = current_base(scene, width, height, self.glyphs)
+        current = None if point is None else point.current_density_A_per_cm2
+        lines = current_figure(base, bias_V, current).lines()
+        self.show(dimmed(lines) if is_old else lines)
+
+    def say(self, text: str, role: str) -> None:
+        """Say why there is no figure."""
+        self.base = None
+        lines = textwrap.wrap(text, max(20, self.size.width - 2))
+        self.show([[("", "")], *([(f" {line}", role)] for line in lines)])
+
+    @staticmethod
+    def _size_of(base: CurrentBase) -> tuple[int, int]:
         return base.cells.width, base.cells.height

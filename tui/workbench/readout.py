@@ -28,7 +28,7 @@ def reading_lines(study: Study, reading: Reading, width: int) -> list[Styled]:
         number = study.levels.levels.index(near) + 1
         in_hand = reading.level is not None
         lines += _about_level(study, near, number, width, is_in_hand=in_hand)
-    return [_cut(line, width) for line in lines]
+    return [cut_to(line, width) for line in lines]
 
 
 def level_lines(study: Study, reading: Reading | None, height: int) -> list[Styled]:
@@ -48,7 +48,7 @@ def level_lines(study: Study, reading: Reading | None, height: int) -> list[Styl
     return lines + [[(text[number], "cursor" if number == here else "")] for number in seen]
 
 
-def answer_state(study: Study | None, trouble: str, waited_s: float) -> str:
+def standing(study: Study | None, trouble: str, waited_s: float) -> str:
     """Say how the answer that is shown stands, in a few words.
 
     Parameters
@@ -157,7 +157,8 @@ def _nearest(study: Study, energy_eV: float) -> Level | None:
     return min(levels, key=lambda level: abs(level.energy_eV - energy_eV), default=None)
 
 
-def _cut(line: Styled, width: int) -> Styled:
+def cut_to(line: Styled, width: int) -> Styled:
+    """Cut a line to a width."""
     cut: Styled = []
     room = width
     for text, role in line:

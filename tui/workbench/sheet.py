@@ -4,12 +4,15 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 
-from tui.workbench.form import COLUMNS, Field, Row
+from tui.workbench.form import Field, Row
 
 StyledLine = list[tuple[str, str]]
+Fields = tuple[Field, ...]
 NAME_WIDTH = 3
-FIXED_LINES = 2
-"""Conditions and column heads stay in sight."""
+HEAD_LINES = 1
+"""Column heads stay in sight, as the conditions do."""
+MOST_CONDITIONS = 2
+"""Lines that the conditions may take where they don't fit into one."""
 LEAST_LINES = 5
 SHARE = 0.36
 """Most of the height that the form takes, where it stands below the figure."""
@@ -45,10 +48,11 @@ def field_at(cursor: Cursor, rows: list[Row]) -> Field:
     return rows[inside.row].fields[inside.column]
 
 
-def sheet_height(rows: list[Row], screen_height: int, *, beside: bool) -> int:
+def sheet_height(rows: list[Row], screen_height: int, *, beside: bool, width: int = 200) -> int:
     """Give the form's height: all of its rows, where they leave room for the rest."""
     share = SHARE_BESIDE if beside else SHARE
-    return max(LEAST_LINES, min(len(rows) - 1 + FIXED_LINES, int(share * screen_height)))
+    fixed = HEAD_LINES + min(len(_condition_parts(rows[0], width)), MOST_CONDITIONS)
+    return max(LEAST_LINES, min(len(rows) - 1 + fixed, int(share * screen_height)))
 
 
 def field_place(lines: list[StyledLine]) -> tuple[int, int, int] | None:
@@ -72,15 +76,18 @@ def sheet_lines(rows: list[Row], cursor: Cursor, width: int, height: int) -> lis
     width, height : int
         The room, in cells.
     """
-    first, last = _columns_in_sight(cursor, width)
-    room = max(1, height - FIXED_LINES)
+    columns = rows[1].fields
+    first, last = _columns_in_sight(columns, cursor, width)
+    lines = _conditions(rows[0], cursor, width)
+    fixed = len(lines) + HEAD_LINES
+    room = max(1, height - fixed)
     stack = rows[1:]
     top = _top(cursor.row - 1, len(stack), room)
-    lines = [_conditions(rows[0], cursor, width), _heads(first, last)]
+    lines[-1] = _with_more(lines[-1], top, max(0, len(stack) - top - room), width)
+    lines.append(_heads(columns[first:last]))
     for n in range(top, min(top + room, len(stack))):
         at = cursor.column if cursor.row == n + 1 else -1
         lines.append(_stack_line(stack[n], at, first, last))
-    lines[0] = _with_more(lines[0], top, max(0, len(stack) - top - room), width)
     return [_fitted(line, width) for line in lines]
 
 
@@ -89,37 +96,57 @@ def _top(row: int, count: int, room: int) -> int:
     return max(0, min(row - room // 2, count - room))
 
 
-def _columns_in_sight(cursor: Cursor, width: int) -> tuple[int, int]:
+def _columns_in_sight(columns: Fields, cursor: Cursor, width: int) -> tuple[int, int]:
     """First column, and the one behind the last, that fit with the cursor's among them."""
     wanted = cursor.column if cursor.row > 0 else 0
     room = width - NAME_WIDTH
     first = 0
-    while sum(column.width + 1 for column in COLUMNS[first : wanted + 1]) > room and first < wanted:
+    while sum(column.width + 1 for column in columns[first : wanted + 1]) > room and first < wanted:
         first += 1
     last, used = first, 0
-    while last < len(COLUMNS) and used + COLUMNS[last].width + 1 <= room:
-        used += COLUMNS[last].width + 1
+    while last < len(columns) and used + columns[last].width + 1 <= room:
+        used += columns[last].width + 1
         last += 1
     return first, max(last, first + 1)
 
 
-def _conditions(row: Row, cursor: Cursor, width: int) -> StyledLine:
-    """Write the conditions; what does not fit gives way from the left."""
+def _condition_parts(row: Row, width: int) -> list[list[int]]:
+    """Break the conditions into lines; give the indices of each line's fields."""
+    lines: list[list[int]] = [[]]
+    used = 0
+    for n, field in enumerate(row.fields):
+        size = len(field.head) + len(field.text) + 4
+        if lines[-1] and used + size > width:
+            lines.append([])
+            used = 0
+        lines[-1].append(n)
+        used += size
+    return lines
+
+
+def _conditions(row: Row, cursor: Cursor, width: int) -> list[StyledLine]:
+    """Write the conditions, those around the cursor where not all lines have room."""
     here = min(cursor.column, len(row.fields) - 1) if cursor.row == 0 else -1
-    parts = [
-        [(f" {field.head} ", "faint"), (f" {field.text} ", "cursor" if n == here else "strong")]
-        for n, field in enumerate(row.fields)
-    ]
-    sizes = [sum(len(text) for text, _ in part) for part in parts]
-    first = 0
-    while first < here and sum(sizes[first : here + 1]) > width:
-        first += 1
-    return [run for part in parts[first:] for run in part]
+    parts = _condition_parts(row, width)
+    at = next((n for n, part in enumerate(parts) if here in part), 0)
+    first = max(0, min(at, len(parts) - MOST_CONDITIONS))
+    lines: list[StyledLine] = []
+    for part in parts[first : first + MOST_CONDITIONS]:
+        line: StyledLine = []
+        for n in part:
+            field = row.fields[n]
+            role = "cursor" if n == here else "strong"
+            line += [(f" {field.head} ", "faint"), (f" {field.text} ", role)]
+        lines.append(line)
+    if len(parts) > MOST_CONDITIONS:
+        lines[0].append((" <" if first else "", "faint"))
+        lines[-1].append((" >" if first + MOST_CONDITIONS < len(parts) else "", "faint"))
+    return lines
 
 
-def _heads(first: int, last: int) -> StyledLine:
+def _heads(columns: Fields) -> StyledLine:
     line: StyledLine = [(" " * NAME_WIDTH, "head")]
-    for column in COLUMNS[first:last]:
+    for column in columns:
         line.append((" " + _aligned(column.head, column.width, column.left_aligned), "head"))
     return line
 

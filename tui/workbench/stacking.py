@@ -21,6 +21,7 @@ def add_layer(session: Session, after: int) -> Session:
         edge_eV=medium.edge_eV,
         mass=medium.mass,
         permittivity=medium.permittivity,
+        gap_eV=medium.gap_eV,
         thickness_nm=NEW_THICKNESS_NM,
     )
     return _with(session, (*session.layers[: after + 1], fresh, *session.layers[after + 1 :]))
@@ -117,7 +118,8 @@ def _with(session: Session, layers: tuple[LayerEntry, ...]) -> Session:
 
 
 def _is_graded(layer: LayerEntry) -> bool:
-    return not (layer.to_material is None and layer.to_edge_eV is None and layer.to_mass is None)
+    ends = (layer.to_material, layer.to_edge_eV, layer.to_mass, layer.to_gap_eV)
+    return any(end is not None for end in ends)
 
 
 def _turned(layer: LayerEntry, at: int, structure: Structure | None) -> LayerEntry:
@@ -127,7 +129,13 @@ def _turned(layer: LayerEntry, at: int, structure: Structure | None) -> LayerEnt
         raise Refusal("the layer's grade is not known yet; mend the design first")
     part = structure.layers[at]
     if layer.material is not None and layer.to_material is not None:
-        turned = replace(layer, material=layer.to_material, to_material=layer.material)
+        turned = replace(
+            layer,
+            material=layer.to_material,
+            to_material=layer.material,
+            gap_eV=layer.to_gap_eV,
+            to_gap_eV=layer.gap_eV,
+        )
         if layer.thickness_ml is None:
             return turned
         # The other material's monolayer differs; the thickness is to stay.
@@ -140,6 +148,8 @@ def _turned(layer: LayerEntry, at: int, structure: Structure | None) -> LayerEnt
         "mass": short(part.right_mass),
         "to_edge_eV": short(part.edge_eV),
         "to_mass": short(part.mass),
+        "gap_eV": _short_or_none(part.right_gap_eV),
+        "to_gap_eV": _short_or_none(part.gap_eV),
     }
     return replace(layer, **changes)
 
@@ -157,9 +167,35 @@ def _halves(half: LayerEntry, part: Layer) -> tuple[LayerEntry, LayerEntry]:
         thickness_ml=None,
         permittivity=part.permittivity,
     )
+    gap = _middle_gap_eV(part)
     first = replace(
-        plain, edge_eV=short(part.edge_eV), mass=part.mass, to_edge_eV=edge, to_mass=mass
+        plain,
+        edge_eV=short(part.edge_eV),
+        mass=part.mass,
+        gap_eV=part.gap_eV,
+        to_edge_eV=edge,
+        to_mass=mass,
+        to_gap_eV=gap,
     )
-    last_edge, last_mass = short(part.right_edge_eV), part.right_mass
-    second = replace(plain, edge_eV=edge, mass=mass, to_edge_eV=last_edge, to_mass=last_mass)
+    second = replace(
+        plain,
+        edge_eV=edge,
+        mass=mass,
+        gap_eV=gap,
+        to_edge_eV=short(part.right_edge_eV),
+        to_mass=part.right_mass,
+        to_gap_eV=part.right_gap_eV,
+    )
     return first, second
+
+
+def _middle_gap_eV(part: Layer) -> float | None:
+    """Gap in the middle of a grade: mass over gap goes linearly from face to face."""
+    if part.gap_eV is None or part.right_gap_eV is None:
+        return None
+    slope = 0.5 * (part.mass / part.gap_eV + part.right_mass / part.right_gap_eV)
+    return short(0.5 * (part.mass + part.right_mass) / slope)
+
+
+def _short_or_none(value: float | None) -> float | None:
+    return None if value is None else short(value)

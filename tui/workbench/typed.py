@@ -17,6 +17,10 @@ UNITS: dict[str, dict[str, float]] = {
     "K": {"": 1.0, "K": 1.0},
     "m0": {"": 1.0, "m0": 1.0},
     "cm-3": {"": 1.0, "cm-3": 1.0, "cm^-3": 1.0},
+    "s": {"": 1.0, "s": 1.0, "ps": 1e-12, "fs": 1e-15},
+    "um2": {"": 1.0, "um2": 1.0, "um^2": 1.0},
+    "ohm": {"": 1.0, "ohm": 1.0, "kohm": 1e3},
+    "fF": {"": 1.0, "fF": 1.0, "pF": 1e3},
     "": {"": 1.0},
 }
 
@@ -59,11 +63,18 @@ def unit_of(key: str) -> str:
 _UNIT_KEYS = {
     "nm": ("thickness_nm", "monolayer_nm"),
     "ml": ("thickness_ml",),
-    "eV": ("edge_eV", "to_edge_eV", "fermi_eV", "from_eV", "to_eV", "max_width_eV"),
-    "V": ("bias_V",),
+    "eV": (
+        *("edge_eV", "to_edge_eV", "fermi_eV", "gap_eV", "to_gap_eV"),
+        *("from_eV", "to_eV", "max_width_eV", "dephasing_eV"),
+    ),
+    "V": ("bias_V", "from_V", "to_V"),
     "K": ("temperature_K",),
     "m0": ("mass", "to_mass"),
     "cm-3": ("donors_cm3",),
+    "s": ("scattering_time_s",),
+    "um2": ("mesa_um2",),
+    "ohm": ("series_ohm",),
+    "fF": ("parallel_fF",),
 }
 
 

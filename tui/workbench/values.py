@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import re
 from dataclasses import replace
 from typing import Any
 
@@ -11,47 +10,31 @@ from physics.structure import Layer, Structure
 from tui.session import tables
 from tui.session.model import ContactEntry, LayerEntry, Session, View
 from tui.session.refusal import has_controls
+from tui.workbench.steps import (
+    FACTORS,
+    FIRST_DONORS_CM3,
+    STEPS,
+    next_choice,
+    stepped_formula,
+)
 from tui.workbench.typed import Refusal, number, unit_of
 
 Place = tuple[str, int]
 """``("conditions", 0)``, ``("view", 0)``, ``("top", 0)``, ``("left", 0)``, ``("right", 0)`` or
 ``("layer", n)`` with n from 0."""
 
-STEPS: dict[str, tuple[float, float]] = {
-    "thickness_nm": (0.1, 0.01),
-    "thickness_ml": (1.0, 0.5),
-    "edge_eV": (0.01, 0.001),
-    "to_edge_eV": (0.01, 0.001),
-    "fermi_eV": (0.01, 0.001),
-    "from_eV": (0.01, 0.001),
-    "to_eV": (0.01, 0.001),
-    "mass": (0.001, 0.0001),
-    "to_mass": (0.001, 0.0001),
-    "bias_V": (0.01, 0.001),
-    "temperature_K": (10.0, 1.0),
-    "permittivity": (0.1, 0.01),
-    "fraction": (0.01, 0.001),
-}
-"""What one step and one fine step add."""
-FACTORS: dict[str, tuple[float, float]] = {
-    "donors_cm3": (10.0**0.1, 10.0**0.01),
-    "max_width_eV": (2.0, 1.1),
-}
-"""What they multiply by, where a quantity spans decades."""
-FIRST_DONORS_CM3 = 1e16
-DECIMALS = 6
-"""Decimals of a fraction that was stepped."""
-_ELEMENT, _FRACTION = r"([A-Z][a-z]?)", r"(0?\.\d+)"
-_ALLOY = re.compile(rf"{_ELEMENT}?{_ELEMENT}{_FRACTION}{_ELEMENT}{_FRACTION}{_ELEMENT}?", re.ASCII)
 AGAINST = {
     "thickness_nm": ("thickness_ml",),
     "thickness_ml": ("thickness_nm",),
-    "material": ("edge_eV", "mass"),
-    "to_material": ("to_edge_eV", "to_mass"),
+    "material": ("edge_eV", "mass", "gap_eV"),
+    "to_material": ("to_edge_eV", "to_mass", "to_gap_eV"),
     "to_edge_eV": ("to_material",),
     "to_mass": ("to_material",),
     "donors_cm3": ("fermi_eV",),
     "fermi_eV": ("donors_cm3",),
+    "dephasing_eV": ("scattering_time_s", "mobility_cm2_Vs"),
+    "scattering_time_s": ("dephasing_eV", "mobility_cm2_Vs"),
+    "mobility_cm2_Vs": ("dephasing_eV", "scattering_time_s"),
 }
 """Values that a new one stands against, and takes away."""
 NEEDED = (
@@ -63,12 +46,23 @@ NEEDED = (
     "temperature_K",
     "bias_V",
     "field",
+    "band",
+    "charge",
 )
+CHOICES = {
+    "band": tables.BANDS,
+    "field": tables.FIELD_MODELS,
+    "charge": tables.CHARGE_MODELS,
+}
+"""Texts of which there are a few; a step goes to the next."""
 EMPTY = {"title": "", "notes": "", "label": "", "max_width_eV": View().max_width_eV}
 """What an emptied field falls back to."""
 TABLES: dict[str, tables.Table] = {
     "conditions": tables.CONDITIONS,
     "view": tables.VIEW,
+    "growth": tables.GROWTH,
+    "sweep": tables.SWEEP,
+    "device": tables.DEVICE,
     "top": tables.TOP_TEXTS,
     "left": tables.CONTACT,
     "right": tables.CONTACT,
@@ -104,10 +98,12 @@ def set_typed(
         if key in ("thickness_nm", "thickness_ml"):
             key, unit = _thickness_key(key, stripped)
             rule = tables.LAYER[key]
-        value = None if not stripped else number(stripped, unit, _range(rule))
+        value = None if not stripped else number(stripped, unit, as_range(rule))
         return set_value(session, place, key, value, structure)
     if has_controls(stripped):
         raise Refusal("control characters cannot be part of a text")
+    if key in CHOICES and stripped and stripped not in CHOICES[key]:
+        raise Refusal(f"one of these is expected: {', '.join(CHOICES[key])}")
     return set_value(session, place, key, stripped or None, structure)
 
 
@@ -119,7 +115,7 @@ def set_value(
     if isinstance(entry, (LayerEntry, ContactEntry)):
         changes = _medium_changes(entry, place, key, value, structure)
     else:
-        changes = {key: _needed(key, value)}
+        changes = dict.fromkeys(AGAINST.get(key, ())) | {key: _needed(key, value)}
     return with_entry(session, place, replace(entry, **changes))
 
 
@@ -144,6 +140,9 @@ def step(
         formula = value_of(session, place, key) or ""
         by = direction * STEPS["fraction"][fine]
         return set_value(session, place, key, stepped_formula(formula, by), structure)
+    if key in CHOICES:
+        chosen = next_choice(CHOICES[key], value_of(session, place, key), direction)
+        return set_value(session, place, key, chosen, structure)
     if not isinstance(rule, Range):
         raise Refusal("only numbers and alloys can be stepped")
     value = _stated_or_resolved(session, place, key, structure)
@@ -159,29 +158,6 @@ def step(
     if not rule.holds(stepped):
         raise Refusal(rule.allowed)
     return set_value(session, place, key, stepped, structure)
-
-
-def stepped_formula(formula: str, by: float) -> str:
-    """Give an alloy's first fraction more, and the one that goes with it less.
-
-    Raises
-    ------
-    Refusal
-        The formula is not that of two elements that share a sublattice, or the step would leave
-        only one of them.
-    """
-    match = _ALLOY.fullmatch(formula)
-    if match is None:
-        raise Refusal("only an alloy of two fractions, as Al0.3Ga0.7As, can be stepped; type it")
-    before, first, written, second, other, after = (part or "" for part in match.groups())
-    fraction = round(float(written) + by, DECIMALS)
-    if abs(float(written) + float(other) - 1.0) > 10.0**-DECIMALS or not 0.0 < fraction < 1.0:
-        raise Refusal(f"the fractions lie between 0 and 1, and sum to 1; type {formula} anew")
-    return f"{before}{first}{_digits(fraction)}{second}{_digits(1.0 - fraction)}{after}"
-
-
-def _digits(fraction: float) -> str:
-    return f"{fraction:.{DECIMALS}f}".rstrip("0")
 
 
 def entry_at(session: Session, place: Place) -> Any:
@@ -201,7 +177,8 @@ def with_entry(session: Session, place: Place, entry: Any) -> Session:
     return entry if kind == "top" else replace(session, **{kind: entry})
 
 
-def _range(rule: tables.Entry) -> Range:
+def as_range(rule: tables.Entry) -> Range:
+    """Give a number's range."""
     if not isinstance(rule, Range):
         raise TypeError(rule)
     return rule
@@ -236,6 +213,9 @@ def _medium_changes(
     changes: dict[str, Any] = {}
     if key in ("edge_eV", "mass"):
         changes = explicit(entry, place, structure) | {"material": None}
+    if key in ("to_edge_eV", "to_mass") and isinstance(entry, LayerEntry) and entry.to_material:
+        part = _resolved(place, structure)
+        changes["to_gap_eV"] = entry.to_gap_eV if part is None else part.to_gap_eV
     changes |= {other: None for other in AGAINST.get(key, ()) if hasattr(entry, other)}
     if key == "donors_cm3" and isinstance(entry, LayerEntry):
         return changes | {key: value or 0.0}
@@ -254,6 +234,8 @@ def explicit(
     changes = {"edge_eV": short(part.edge_eV), "mass": part.mass}
     if entry.permittivity is None:
         changes["permittivity"] = part.permittivity
+    if entry.gap_eV is None:
+        changes["gap_eV"] = part.gap_eV
     if isinstance(entry, LayerEntry) and isinstance(part, Layer) and entry.thickness_ml is not None:
         changes |= {"thickness_nm": short(part.thickness_nm), "thickness_ml": None}
     return changes
