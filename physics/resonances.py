@@ -185,6 +185,7 @@ def fast_poles(
     marked = still_there(family, core, np.where(bare, closed, np.nan), NEAR_EV)
     missed = still_there(family, core, np.where(marked, closed, np.nan), NARROW_FROM_EV)
     inside = (pole.real >= low_eV[:, None]) & (pole.real <= high_eV[:, None])
+    marked &= (closed >= low_eV[:, None]) & (closed <= high_eV[:, None])
     return FastPoles(
         np.where(inside, pole, complex(np.nan, np.nan)),
         np.where(marked, closed, np.nan),
