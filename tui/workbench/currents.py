@@ -55,10 +55,12 @@ class CurveNews:
     def progress(self) -> str:
         """Say how far it is: which curve, or how many points of the first."""
         count = len(self.wish.overlays_K) + 1
-        if self.sweep is None or not self.sweep.refined:
-            points = 0 if self.sweep is None else self.sweep.curve.bias_V.size
-            return f"current 1 of {count}" + (f", {points} points" if points else "")
-        return f"current {min(len(self.overlays) + 2, count)} of {count}"
+        at = 1
+        points = 0 if self.sweep is None else self.sweep.curve.bias_V.size
+        if self.sweep is not None and self.sweep.refined:
+            at, points = min(len(self.overlays) + 2, count), 0
+        said = f"current {at} of {count}" if count > 1 else "computing the current"
+        return said + (f", {points} points" if points else "")
 
 
 @dataclass(frozen=True)
