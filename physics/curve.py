@@ -30,6 +30,9 @@ HALVINGS = 5
 STRAIGHT = 0.004
 """Departure from a straight line, as a share of the curve's range or of the current itself, up to
 which a step in bias is left alone."""
+CLOSE_V = 2e-4
+"""Distance of the biases that give a slope: far below a level's or kT's share of a curve, far above
+what the error of a current makes of it."""
 DECIMALS = 12
 """Decimals of a bias in V that is chosen here."""
 STENCIL = 5
@@ -118,6 +121,23 @@ def curve_at(drive: Drive, bias_V: FloatArray) -> Curve:
         )
         parts.append((chunk, found))
     return joined_curves([_curve(*part) for part in parts])
+
+
+def slopes_at(drive: Drive, curve: Curve) -> FloatArray:
+    """Slope dJ/dV at each bias of a curve from currents computed close to it, shape (B,).
+
+    At the ends of the curve the difference is one-sided.
+    """
+    bias = curve.bias_V
+    if bias.size < 2:
+        return np.full(bias.size, np.nan)
+    low, high = np.maximum(bias - CLOSE_V, bias[0]), np.minimum(bias + CLOSE_V, bias[-1])
+    near = curve_at(drive, np.concatenate([low, high]))
+    first, last = (
+        near.current_density_A_per_cm2[np.searchsorted(near.bias_V, ends)] for ends in (low, high)
+    )
+    slope: FloatArray = (last - first) / (high - low)
+    return slope
 
 
 def even_biases(from_V: float, to_V: float, points: int) -> FloatArray:

@@ -13,7 +13,7 @@ from dataclasses import dataclass, replace
 import numpy as np
 from numpy.typing import NDArray
 
-from physics.curve import Curve, Drive, curve_at, even_biases, own_curve
+from physics.curve import Curve, Drive, curve_at, even_biases, own_curve, slopes_at
 from physics.dephasing import Dephasing, wells_of
 from physics.device import (
     HOT_W_PER_CM2,
@@ -37,6 +37,8 @@ from tui.session.resolve import dephasing_of, resolve
 NEEDS_ELECTRONS = "a current needs electrons: state donors_cm3 or fermi_eV of both contacts"
 STEP_V, LEAST_V, MOST_V = 0.1, 0.3, 2.0
 """A range of its own ends at a multiple of the step, between these."""
+MOST_SCREENED_SLOPES = 25
+"""Points of a screened curve whose slopes are computed beside them; for more it takes too long."""
 NEAR_LEVEL_EV = 0.02
 """Half the window in which the level that carries a current is looked up again."""
 
@@ -63,6 +65,8 @@ class Sweep:
     curve: Curve
     refined: bool
     """False for a first answer, whose features are not sought yet."""
+    close_slope_S_per_cm2: NDArray[np.float64] | None = None
+    """dJ/dV at each bias from close differences; None where the curve's own points are close."""
     regions: tuple[Region, ...] = ()
     main: Region | None = None
     """The peak that a reader asks for."""
@@ -70,6 +74,12 @@ class Sweep:
     screening: tuple[ScreeningReport, ...] = ()
     """How Poisson's equation was solved at each bias, where the field is the screened one."""
     notes: tuple[str, ...] = ()
+
+    @property
+    def conductance_S_per_cm2(self) -> NDArray[np.float64]:
+        """Slope dJ/dV at each bias."""
+        close = self.close_slope_S_per_cm2
+        return self.curve.conductance_S_per_cm2 if close is None else close
 
     @property
     def reached(self) -> bool:
@@ -172,6 +182,8 @@ def suggested_V(structure: Structure) -> float:
 
 
 def _finished(first: Sweep, drive: Drive, solutions: Solutions | None) -> Sweep:
+    if _wants_close_slopes(first, solutions):
+        first = replace(first, close_slope_S_per_cm2=slopes_at(drive, first.curve))
     found = regions(drive, first.curve)
     main = main_region(found, first.curve)
     figures = None
@@ -191,6 +203,12 @@ def _finished(first: Sweep, drive: Drive, solutions: Solutions | None) -> Sweep:
         first, regions=found, main=main, figures=figures, screening=reports, refined=True
     )
     return replace(done, notes=_notes(done))
+
+
+def _wants_close_slopes(first: Sweep, solutions: Solutions | None) -> bool:
+    """Say whether slopes are computed beside the points; a field for each costs its time."""
+    points = first.request.points
+    return points is not None and (solutions is None or points <= MOST_SCREENED_SLOPES)
 
 
 def carrying_level(curve: Curve, profile: Profile, bias_V: float) -> Level | None:
@@ -227,6 +245,8 @@ def _notes(done: Sweep) -> tuple[str, ...]:
             "can burn out in continuous operation: limit the current, sink the heat or pulse it, "
             "and follow your laboratory's rules"
         )
+    if done.request.points is not None and done.close_slope_S_per_cm2 is None:
+        notes.append("conductance: dJ/dV is the slope of the polynomial through the points given")
     notes.append(_said_of_coherence(done))
     return tuple(notes)
 

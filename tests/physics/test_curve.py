@@ -5,7 +5,16 @@ from dataclasses import replace
 import numpy as np
 import pytest
 
-from physics.curve import FIRST_POINTS, Curve, Drive, curve_at, joined_curves, own_curve, slopes
+from physics.curve import (
+    FIRST_POINTS,
+    Curve,
+    Drive,
+    curve_at,
+    joined_curves,
+    own_curve,
+    slopes,
+    slopes_at,
+)
 from physics.extremes import main_region, regions
 from physics.field import uniform_field
 from physics.structure import Contact, Structure
@@ -65,6 +74,16 @@ def test_slope_against_close_differences(diode: tuple[Drive, Curve]) -> None:
     exact = (8.0 * (values[2] - values[1]) - (values[3] - values[0])) / (12.0 * step)
     size = np.abs(curve.conductance_S_per_cm2).max()
     assert curve.conductance_S_per_cm2[inner] == pytest.approx(exact, abs=0.01 * size)
+
+
+def test_close_slopes_of_a_coarse_curve(diode: tuple[Drive, Curve]) -> None:
+    """The fine curve's own slopes, also at both ends."""
+    there, fine = diode
+    coarse = curve_at(there, np.array([0.0, 0.1, 0.2, 0.4]))
+    exact = np.interp(coarse.bias_V, fine.bias_V, fine.conductance_S_per_cm2)
+    size = np.abs(fine.conductance_S_per_cm2).max()
+    assert slopes_at(there, coarse) == pytest.approx(exact, abs=0.02 * size)
+    assert np.isnan(slopes_at(there, curve_at(there, np.array([0.1])))).all()
 
 
 def test_peak_and_valley_lie_off_the_grid(diode: tuple[Drive, Curve]) -> None:

@@ -29,10 +29,9 @@ SAMPLES = 13
 
 def sweep_table(sweep: Sweep) -> str:
     """Write one bias a line, with each level's energy and share of the current."""
-    curve = sweep.curve
     energy, share = _by_level(sweep)
     header = list(POINTS)
-    parts = [np.stack([getattr(curve, name) for name in POINTS], axis=1)]
+    parts = [np.stack([*_points(sweep)], axis=1)]
     for n in range(energy.shape[1]):
         header += [f"level_{n + 1}_eV", f"level_{n + 1}_share"]
         parts.append(np.stack([energy[:, n], share[:, n]], axis=1))
@@ -45,7 +44,7 @@ def sweep_object(sweep: Sweep) -> Object:
     energy, share = _by_level(sweep)
     main = None if sweep.main is None else _region(sweep.main)
     return {
-        **{name: getattr(curve, name).tolist() for name in POINTS},
+        **{name: values.tolist() for name, values in zip(POINTS, _points(sweep), strict=True)},
         "reached": curve.reached.tolist(),
         "peak": None if main is None else main["peak"],
         "valley": None if main is None else main["valley"],
@@ -88,7 +87,7 @@ def sweep_text(sweep: Sweep) -> str:
             f"{curve.bias_V[n]:.4f}",
             f"{curve.current_density_A_per_cm2[n]:.6g}",
             f"{curve.error_A_per_cm2[n]:.0e}",
-            f"{curve.conductance_S_per_cm2[n]:.4g}",
+            f"{sweep.conductance_S_per_cm2[n]:.4g}",
         ]
         for n in at
     ]
@@ -120,6 +119,12 @@ def figure_lines(figures: Figures) -> list[tuple[str, str]]:
     if figures.cutoff_said:
         said[-1] = ("no cut-off:", figures.cutoff_said)
     return [(name, text) for name, text in said if text]
+
+
+def _points(sweep: Sweep) -> list[np.ndarray[Any, Any]]:
+    """Give the columns of `POINTS`."""
+    values = [getattr(sweep.curve, name) for name in POINTS[:-1]]
+    return [*values, sweep.conductance_S_per_cm2]
 
 
 def _by_level(sweep: Sweep) -> tuple[np.ndarray[Any, Any], np.ndarray[Any, Any]]:
