@@ -30,6 +30,12 @@ KEYS = {
     "energy line": [b"k", b"j"] * 20,
     "form cursor": [b"\x1b[B", b"\x1b[A"] * 20,
 }
+CURRENT_KEYS = {
+    "bias line": [b"k", b"j"] * 20,
+    "next peak or valley": [b"n", b"p"] * 20,
+}
+CURRENT_S = 6.0
+"""Time that the demo's current is given."""
 
 
 def start() -> tuple[int, int]:
@@ -65,7 +71,17 @@ def main() -> None:
     print(f"start to full first screen: {shown - begun:.2f} s, {size} bytes")
     os.write(terminal, b"\x1b[B" * 2)
     burst(terminal)
-    for name, keys in KEYS.items():
+    press(terminal, KEYS)
+    os.write(terminal, b"c")
+    burst(terminal, CURRENT_S)
+    press(terminal, CURRENT_KEYS)
+    os.write(terminal, b"qd")
+    burst(terminal, 0.5)
+
+
+def press(terminal: int, groups: dict[str, list[bytes]]) -> None:
+    """Press the keys of each group and print how long the answers take."""
+    for name, keys in groups.items():
         times, sizes = [], []
         for key in keys:
             pressed = time.perf_counter()
@@ -79,8 +95,6 @@ def main() -> None:
             f"95th percentile {times[int(0.95 * len(times)) - 1]:.0f} ms, "
             f"{statistics.median(sizes):.0f} bytes"
         )
-    os.write(terminal, b"qd")
-    burst(terminal, 0.5)
 
 
 if __name__ == "__main__":
