@@ -88,6 +88,11 @@ def advise(
     return tuple(notes)
 
 
+def structure_notes(structure: Structure) -> tuple[Advice, ...]:
+    """Collect the notes on the layers themselves, whatever is computed of them."""
+    return (*_thin(structure), *_strain(structure))
+
+
 def scattering_width_eV(temperature_K: float) -> float:
     """Broadening that scattering adds to a level at a temperature; an order of magnitude."""
     ratio = PHONON_EV / (BOLTZMANN_EV_PER_K * temperature_K)

@@ -12,6 +12,7 @@ from dataclasses import dataclass, fields
 import numpy as np
 from numpy.typing import NDArray
 
+from physics.constants import BOLTZMANN_EV_PER_K
 from physics.current import Currents, tsu_esaki
 from physics.dephasing import COHERENT, Dephasing
 from physics.errors import StructureError
@@ -35,6 +36,10 @@ CLOSE_V = 2e-4
 what the error of a current makes of it."""
 DECIMALS = 12
 """Decimals of a bias in V that is chosen here."""
+FAINT = 0.2
+"""The same as a share of what is around: where little current flows, features are sought too."""
+ABOUT_ZERO_KT = (0.003, 0.03, 0.3)
+"""Biases about zero, in kT, where levels of like wells are aligned."""
 STENCIL = 5
 """Points through which a polynomial is laid for the slope."""
 
@@ -157,7 +162,10 @@ def own_curve(
     tell : callable, optional
         Called with what there is after each round.
     """
-    curve = curve_at(drive, even_biases(from_V, to_V, FIRST_POINTS))
+    kT = BOLTZMANN_EV_PER_K * drive.temperature_K
+    about_zero = np.round(kT * np.concatenate([-np.array(ABOUT_ZERO_KT), ABOUT_ZERO_KT]), DECIMALS)
+    seeds = about_zero[(about_zero > from_V) & (about_zero < to_V)]
+    curve = curve_at(drive, np.append(even_biases(from_V, to_V, FIRST_POINTS), seeds))
     for _ in range(HALVINGS):
         if tell is not None:
             tell(curve)
@@ -227,7 +235,8 @@ def _bent_steps(curve: Curve) -> FloatArray:
     chord = y[:-2] * (1.0 - share) + y[2:] * share
     # The largest current at the end of the range must not hide a peak: half weighs the middle.
     size = np.maximum(np.median(np.abs(y)), 0.25 * np.abs(y[1:-1]))
-    departs = np.abs(y[1:-1] - chord) > 4.0 * STRAIGHT * size
+    around = np.max(np.abs([y[:-2], y[1:-1], y[2:]]), axis=0)
+    departs = np.abs(y[1:-1] - chord) > np.minimum(4.0 * STRAIGHT * size, FAINT * around)
     bent = np.zeros(x.size - 1, dtype=bool)
     bent[:-1] |= departs
     bent[1:] |= departs

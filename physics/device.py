@@ -20,6 +20,7 @@ import math
 from dataclasses import dataclass
 
 import numpy as np
+from numpy.typing import NDArray
 
 from physics.constants import (
     ELECTRIC_CONSTANT_F_PER_M,
@@ -31,11 +32,13 @@ from physics.field import ASSUMED_PERMITTIVITY, Profile
 from physics.levels import Level
 from physics.structure import Structure
 
+FloatArray = NDArray[np.float64]
+
 CUBIC = 3.0 / 16.0
 A_PER_CM2_IN_KA, A_PER_CM2_IN_MA_PER_UM2 = 1e-3, 1e-5
 UM2_IN_CM2 = 1e-8
 F_PER_M2_IN_F_PER_CM2 = 1e-4
-HOT_W_PER_CM2 = 2e4
+HOT_W_PER_CM2 = 1e4
 """Dissipation from which small mesas have been seen to burn out in continuous operation (common
 practice; order of magnitude)."""
 
@@ -122,7 +125,9 @@ def device_figures(
         space_charge_F_per_cm2=space_charge_F_per_cm2,
         quantum_F_per_cm2=quantum,
         dwell_time_s=None if level is None else level.lifetime_s,
-        transit_time_s=None if level is None else transit_time_s(profile, level, peak.bias_V),
+        transit_time_s=None
+        if level is None
+        else transit_time_s(profile, level, peak.bias_V) or None,
         dissipated_W_per_cm2=hottest,
         peak_current_A=None if area is None else peak_J * area,
         available_power_W=None if area is None or power is None else power * area,
@@ -169,12 +174,23 @@ def transit_time_s(profile: Profile, level: Level, bias_V: float) -> float:
     if blocked.size == 0:
         return 0.0
     free = slice(blocked[-1] + 1, None) if bias_V >= 0.0 else slice(0, blocked[0])
+    above = energy - left[free], energy - right[free]
     mass = 0.5 * (profile.mass_left + profile.mass_right)[free]
-    root = np.sqrt(energy - left[free]) + np.sqrt(energy - right[free])
-    # v = 2 sqrt(c (E - V) / m) / hbar; over a linear edge the mean of
-    # 1/v is 2 / (v_left + v_right).
-    speed_nm_s = np.sqrt(HBAR2_OVER_2M0_EV_NM2 / mass) * root / HBAR_EV_S
-    return float(np.sum(profile.thickness_nm[free] / speed_nm_s))
+    slope = 0.5 * (profile.mass_slope_left + profile.mass_slope_right)[free]
+    # v = 2 sqrt(c (E - V) / m) / hbar; a linear edge has 1/v = 2 / (v_left + v_right) in the mean.
+    speed_nm_s = np.sqrt(HBAR2_OVER_2M0_EV_NM2 / mass) * (np.sqrt(above[0]) + np.sqrt(above[1]))
+    slower = [_two_band_slowness(mass, slope, x) for x in (*above, 0.5 * (above[0] + above[1]))]
+    factor = (slower[0] + slower[1] + 4.0 * slower[2]) / 6.0
+    return float(np.sum(profile.thickness_nm[free] * factor * HBAR_EV_S / speed_nm_s))
+
+
+def _two_band_slowness(mass: FloatArray, slope: FloatArray, above_eV: FloatArray) -> FloatArray:
+    """Give how much slower the two-band mass m + b (E - V) makes an electron; 1 where b = 0.
+
+    From hbar v = dE/dk with c k^2 = (m + b (E - V)) (E - V).
+    """
+    slower: FloatArray = (mass + 2.0 * slope * above_eV) / np.sqrt(mass * (mass + slope * above_eV))
+    return slower
 
 
 def _quantum_capacitance(

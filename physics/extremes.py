@@ -21,10 +21,13 @@ FloatArray = NDArray[np.float64]
 
 NODES = 9
 """Chebyshev nodes in a bracket."""
-NARROWING = (0.2,)
-"""Width of the windows after the first, as a share of the bracket."""
 Place = tuple[float, float, float, float]
 """Bias, current, its error, and conductance."""
+ANGLE = (np.arange(NODES) + 0.5) * np.pi / NODES
+MOST_ROUNDS = 8
+SETTLED, SETTLED_SLOPE = 1e-6, 1e-5
+"""Size of a polynomial's last coefficients, over the largest, at which a window is small enough."""
+LEAST_WINDOW_V = 1e-6
 FALL_TO_SPEAK_OF = 0.05
 """Share of a peak's current that has to go for the peak to be the one that is meant."""
 LEAST_DROP = 1e-4
@@ -70,11 +73,15 @@ class Region:
 
     @property
     def onset_V(self) -> float | None:
-        """Bias at which the tangent of the steepest rise meets zero current."""
+        """Bias at which the tangent of the steepest rise meets zero current.
+
+        None where the current rises steepest at zero bias: it has no onset.
+        """
         rise = self.steepest_rise
         if rise is None or rise.conductance_S_per_cm2 == 0.0:
             return None
-        return rise.bias_V - rise.current_density_A_per_cm2 / rise.conductance_S_per_cm2
+        onset = rise.bias_V - rise.current_density_A_per_cm2 / rise.conductance_S_per_cm2
+        return onset if abs(rise.bias_V) > LEAST_WINDOW_V and onset * rise.bias_V > 0.0 else None
 
 
 @dataclass(frozen=True)
@@ -145,19 +152,24 @@ def _side_regions(drive: Drive, x: FloatArray, y: FloatArray, sign: float) -> li
 
 
 def _turns(size: FloatArray) -> list[tuple[int, int | None]]:
-    """Find the indices of each peak and of the valley behind it, by walking outward."""
+    """Find the indices of each peak and of the valley behind it, by walking outward.
+
+    Where the range begins on a falling flank, nothing counts before the current has risen.
+    """
     turns: list[tuple[int, int | None]] = []
     top = bottom = 0
-    falling = False
+    has_risen = falling = False
     for n in range(1, size.size):
-        least = LEAST_DROP * abs(size[top])
-        if not falling:
+        if not has_risen:
+            bottom = n if size[n] < size[bottom] else bottom
+            has_risen, top = size[n] - size[bottom] > LEAST_DROP * abs(size[bottom]), n
+        elif not falling:
             top = n if size[n] > size[top] else top
-            if top > 0 and size[top] - size[n] > least:
+            if size[top] - size[n] > LEAST_DROP * abs(size[top]):
                 falling, bottom = True, n
         else:
             bottom = n if size[n] < size[bottom] else bottom
-            if size[n] - size[bottom] > least:
+            if size[n] - size[bottom] > LEAST_DROP * abs(size[top]):
                 turns.append((top, bottom))
                 falling, top = False, n
     if falling:
@@ -182,15 +194,20 @@ def _steepest(
 
 
 def _refined(drive: Drive, brackets: list[Bracket]) -> list[Place]:
-    """Seek every bracket's extreme of the current or of its slope, all of them side by side."""
+    """Seek every bracket's extreme of the current or of its slope, all of them side by side.
+
+    A window narrows about the best of its computed nodes until its polynomial has settled, so that
+    a cusp, where a level leaves the range, is followed too.
+    """
     windows = [(bracket.low, bracket.high) for bracket in brackets]
     fits = _fitted(drive, windows)
-    for share in NARROWING:
-        windows = [
-            _narrowed(bracket, _extreme(fit, bracket), share)
-            for bracket, fit in zip(brackets, fits, strict=True)
-        ]
-        fits = _fitted(drive, windows)
+    for _ in range(MOST_ROUNDS):
+        late = [n for n, fit in enumerate(fits) if not _has_settled(fit, brackets[n])]
+        if not late:
+            break
+        again = _fitted(drive, [_narrowed(fits[n], brackets[n]) for n in late])
+        for n, fit in zip(late, again, strict=True):
+            fits[n] = fit
     best = [_extreme(fit, bracket) for fit, bracket in zip(fits, brackets, strict=True)]
     at = curve_at(drive, np.array(best))
     where = np.searchsorted(at.bias_V, best)
@@ -205,10 +222,17 @@ def _refined(drive: Drive, brackets: list[Bracket]) -> list[Place]:
     ]
 
 
+def _has_settled(fit: Chebyshev, bracket: Bracket) -> bool:
+    """Say whether the last coefficients have died away, or the window is small enough."""
+    size = np.abs(fit.coef)
+    tail = SETTLED_SLOPE if bracket.order else SETTLED
+    narrow = float(fit.domain[1] - fit.domain[0]) <= LEAST_WINDOW_V
+    return narrow or float(size[-2:].sum()) <= tail * float(size.max())
+
+
 def _fitted(drive: Drive, windows: list[tuple[float, float]]) -> list[Chebyshev]:
     """Lay a polynomial through the currents at the Chebyshev nodes of each window."""
-    angle = (np.arange(NODES) + 0.5) * np.pi / NODES
-    nodes = [0.5 * (low + high) + 0.5 * (high - low) * np.cos(angle) for low, high in windows]
+    nodes = [0.5 * (low + high) + 0.5 * (high - low) * np.cos(ANGLE) for low, high in windows]
     currents = _currents(drive, np.concatenate(nodes)).reshape(len(nodes), NODES)
     return [
         Chebyshev.fit(x, y, NODES - 1, domain=list(window))
@@ -216,11 +240,16 @@ def _fitted(drive: Drive, windows: list[tuple[float, float]]) -> list[Chebyshev]
     ]
 
 
-def _narrowed(bracket: Bracket, middle: float, share: float) -> tuple[float, float]:
-    """Give a window around an extreme, inside the bracket."""
-    half = 0.5 * share * (bracket.high - bracket.low)
-    middle = min(max(middle, bracket.low + half), bracket.high - half)
-    return middle - half, middle + half
+def _narrowed(fit: Chebyshev, bracket: Bracket) -> tuple[float, float]:
+    """Give the window between the neighbours of the best node, or of the steepest step."""
+    low, high = float(fit.domain[0]), float(fit.domain[1])
+    nodes = np.sort(0.5 * (low + high) + 0.5 * (high - low) * np.cos(ANGLE))
+    values = bracket.sign * fit(nodes)
+    best = int(np.argmax(np.diff(values) / np.diff(nodes) if bracket.order else values))
+    last = best + bracket.order
+    start = low if best == 0 else float(nodes[best - 1])
+    stop = high if last >= NODES - 1 else float(nodes[last + 1])
+    return start, stop
 
 
 def _extreme(fit: Chebyshev, bracket: Bracket) -> float:

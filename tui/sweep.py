@@ -13,6 +13,7 @@ from dataclasses import dataclass, replace
 import numpy as np
 from numpy.typing import NDArray
 
+from physics.advice import structure_notes
 from physics.curve import Curve, Drive, curve_at, even_biases, own_curve, slopes_at
 from physics.dephasing import Dephasing, wells_of
 from physics.device import (
@@ -33,6 +34,7 @@ from tui.session.lines import KeyPath
 from tui.session.model import Session
 from tui.session.refusal import SessionError
 from tui.session.resolve import dephasing_of, resolve
+from tui.sweep_notes import said_of_masses, said_of_screening
 
 NEEDS_ELECTRONS = "a current needs electrons: state donors_cm3 or fermi_eV of both contacts"
 STEP_V, LEAST_V, MOST_V = 0.1, 0.3, 2.0
@@ -184,14 +186,17 @@ def suggested_V(structure: Structure) -> float:
 def _finished(first: Sweep, drive: Drive, solutions: Solutions | None) -> Sweep:
     if _wants_close_slopes(first, solutions):
         first = replace(first, close_slope_S_per_cm2=slopes_at(drive, first.curve))
-    found = regions(drive, first.curve)
-    main = main_region(found, first.curve)
+    sought = first.curve
+    if first.request.points is not None and solutions is None:
+        sought = own_curve(drive, first.from_V, first.to_V)  # features do not depend on the points
+    found = regions(drive, sought)
+    main = main_region(found, sought)
     figures = None
     if main is not None:
         (profile,) = drive.profiles(np.array([main.peak.bias_V]))
         stated = first.request.session.device
         mesa = Mesa(stated.mesa_um2, stated.series_ohm, stated.parallel_fF)
-        level = carrying_level(first.curve, profile, main.peak.bias_V)
+        level = carrying_level(sought, profile, main.peak.bias_V)
         if solutions is None:
             capacitance = plate_capacitance_F_per_cm2(first.structure)
         else:
@@ -207,8 +212,7 @@ def _finished(first: Sweep, drive: Drive, solutions: Solutions | None) -> Sweep:
 
 def _wants_close_slopes(first: Sweep, solutions: Solutions | None) -> bool:
     """Say whether slopes are computed beside the points; a field for each costs its time."""
-    points = first.request.points
-    return points is not None and (solutions is None or points <= MOST_SCREENED_SLOPES)
+    return solutions is None or first.curve.bias_V.size <= MOST_SCREENED_SLOPES
 
 
 def carrying_level(curve: Curve, profile: Profile, bias_V: float) -> Level | None:
@@ -225,7 +229,7 @@ def carrying_level(curve: Curve, profile: Profile, bias_V: float) -> Level | Non
 
 
 def _notes(done: Sweep) -> tuple[str, ...]:
-    notes = [*_said_of_screening(done.screening)]
+    notes = [*said_of_screening(done.screening)]
     late = ~done.curve.reached
     if late.any():
         worst = done.curve.error_A_per_cm2[late] / np.maximum(
@@ -235,9 +239,15 @@ def _notes(done: Sweep) -> tuple[str, ...]:
             f"accuracy: {int(late.sum())} of {late.size} currents miss the stated 1e-6, "
             f"the worst is known to {float(worst.max()):.0e}"
         )
+    notes += [f"{note.topic}: {note.text}" for note in structure_notes(done.structure)]
+    notes += said_of_masses(done.structure)
+    if done.screening and done.request.points is not None:
+        notes.append(f"features: they are those that {done.request.points} points can bracket")
     if done.main is None:
         notes.append("peak: the current has no peak in this range of bias")
-    elif done.main.valley is None:
+    elif done.figures is not None and done.figures.dwell_time_s is None:
+        notes.append("peak: no level carries it; it is a wave's reflection at the edges")
+    if done.main is not None and done.main.valley is None:
         notes.append("valley: the current still falls at the end of the range; go further")
     if done.figures is not None and done.figures.dissipated_W_per_cm2 > HOT_W_PER_CM2:
         notes.append(
@@ -245,31 +255,10 @@ def _notes(done: Sweep) -> tuple[str, ...]:
             "can burn out in continuous operation: limit the current, sink the heat or pulse it, "
             "and follow your laboratory's rules"
         )
-    if done.request.points is not None and done.close_slope_S_per_cm2 is None:
-        notes.append("conductance: dJ/dV is the slope of the polynomial through the points given")
+    if done.close_slope_S_per_cm2 is None:
+        notes.append("conductance: dJ/dV is the slope of the polynomial through the nearest points")
     notes.append(_said_of_coherence(done))
     return tuple(notes)
-
-
-def _said_of_screening(reports: tuple[ScreeningReport, ...]) -> list[str]:
-    if not reports:
-        return []
-    failed = [report for report in reports if not report.converged]
-    if failed:
-        text = (
-            f"screening: {len(failed)} of {len(reports)} fields did not converge, their currents "
-            f"are those of the last step: {failed[0].reason}"
-        )
-        return [text]
-    residual = max(report.residual for report in reports)
-    neutrality = max(report.neutrality for report in reports)
-    off = max(report.mesh_error_eV for report in reports)
-    text = (
-        f"screening: {reports[0].model}; at all {len(reports)} biases residual up to "
-        f"{residual:.0e}, total charge up to {neutrality:.0e} of all charges, edge good to "
-        f"{1e3 * off:.2g} meV"
-    )
-    return [text]
 
 
 def _said_of_coherence(done: Sweep) -> str:

@@ -71,7 +71,7 @@ def features_said(sweep: Sweep) -> list[str]:
     if main.peak_to_valley is not None:
         lines.append(f"peak to valley {main.peak_to_valley:.4g}")
     if main.onset_V is not None:
-        lines.append(f"onset {main.onset_V:.5f} V")
+        lines.append(f"onset {main.onset_V:.5g} V")
     others = len(sweep.regions) - 1
     if others:
         lines.append(f"{others} more peaks in this range; --json lists them")
@@ -147,7 +147,7 @@ def _region(region: Region) -> Object:
 
 
 def _at(bias_V: float, current: float) -> str:
-    return f"{current:.6g} A/cm2 at {bias_V:.5f} V"
+    return f"{current:.6g} A/cm2 at {bias_V:.6g} V"
 
 
 def _with(value: float | None, unit: str) -> str:
