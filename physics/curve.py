@@ -34,6 +34,8 @@ which a step in bias is left alone."""
 CLOSE_V = 2e-4
 """Distance of the biases that give a slope: far below a level's or kT's share of a curve, far above
 what the error of a current makes of it."""
+CLOSEST_V = 1e-7
+"""But not closer: there the error of a current would show."""
 DECIMALS = 12
 """Decimals of a bias in V that is chosen here."""
 FAINT = 0.2
@@ -136,7 +138,10 @@ def slopes_at(drive: Drive, curve: Curve) -> FloatArray:
     bias = curve.bias_V
     if bias.size < 2:
         return np.full(bias.size, np.nan)
-    low, high = np.maximum(bias - CLOSE_V, bias[0]), np.minimum(bias + CLOSE_V, bias[-1])
+    gap = np.diff(bias)
+    nearest = np.minimum(np.append(gap, np.inf), np.append(np.inf, gap))
+    close = np.maximum(np.minimum(CLOSE_V, 0.5 * nearest), CLOSEST_V)
+    low, high = np.maximum(bias - close, bias[0]), np.minimum(bias + close, bias[-1])
     near = curve_at(drive, np.concatenate([low, high]))
     first, last = (
         near.current_density_A_per_cm2[np.searchsorted(near.bias_V, ends)] for ends in (low, high)

@@ -111,6 +111,32 @@ def test_peak_and_valley_lie_off_the_grid(diode: tuple[Drive, Curve]) -> None:
     assert region.steepest_fall.conductance_S_per_cm2 == pytest.approx(steps.min(), rel=0.02)
 
 
+def test_a_cusp_is_followed() -> None:
+    """A narrow level that drops below the emitter's edge: the peak beats a grid of 1e-6 V."""
+    there = drive(two_barriers(4.0, 6.0, 6.0), 0.02, 77.0)
+    curve = own_curve(there, 0.0, 0.35)
+    region = main_region(regions(there, curve), curve)
+    assert region is not None
+    assert region.steepest_fall is not None
+    near = region.peak.bias_V + np.linspace(-3e-4, 3e-4, 601)
+    around = curve_at(there, near).current_density_A_per_cm2
+    assert region.peak.current_density_A_per_cm2 >= around.max() * (1.0 - 1e-9)
+    fine = np.linspace(region.peak.bias_V, region.peak.bias_V + 2e-3, 2001)
+    falls = np.diff(curve_at(there, fine).current_density_A_per_cm2) / np.diff(fine)
+    assert region.steepest_fall.conductance_S_per_cm2 <= falls.min() * 0.98
+    assert region.steepest_fall.bias_V > region.peak.bias_V
+
+
+def test_a_range_that_begins_on_a_falling_flank(diode: tuple[Drive, Curve]) -> None:
+    there, whole = diode
+    first, second = regions(there, own_curve(there, 0.0, 0.9))[:2]
+    assert first.steepest_fall is not None
+    start = first.steepest_fall.bias_V
+    (found, *_) = regions(there, own_curve(there, start, 0.9))
+    assert found.peak.bias_V == pytest.approx(second.peak.bias_V, abs=1e-5)
+    assert whole.bias_V[0] == 0.0
+
+
 def test_onset_is_where_the_steepest_tangent_meets_zero(diode: tuple[Drive, Curve]) -> None:
     there, curve = diode
     (region, *_) = regions(there, curve)

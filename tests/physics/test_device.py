@@ -134,6 +134,25 @@ def test_transit_time_is_that_of_a_ball_on_a_slope(bias_V: float) -> None:
     assert transit_time_s(profile, level, bias_V) == pytest.approx(exact, rel=1e-8)
 
 
+def test_transit_of_a_two_band_electron() -> None:
+    """dE / (hbar dk) with c k^2 = m (1 + e / Eg) e, integrated by scipy."""
+    bare = stack([(2.0, 0.4, 0.09), (5.0, 0.0, 0.05), (2.0, 0.4, 0.09), (20.0, 0.0, 0.05)])
+    layers = tuple(replace(layer, gap_eV=0.8) for layer in bare.layers)
+    left, right = (replace(side, gap_eV=0.8) for side in (bare.left, bare.right))
+    structure = replace(bare, left=left, layers=layers, right=right)
+    profile = uniform_field(structure, 0.2, band="kane")
+    (level, *_) = find_levels(profile, 1e-3, 0.25).levels
+    c = si.hbar**2 / (2.0 * si.m_e) / si.e * 1e18
+
+    def slowness(x_nm: float) -> float:
+        above = level.energy_eV + 0.2 * x_nm / structure.thickness_nm
+        wave = math.sqrt(0.05 * (1.0 + above / 0.8) * above / c)
+        return si.hbar / si.e * 0.05 * (1.0 + 2.0 * above / 0.8) / (2.0 * c * wave)
+
+    exact = quad(slowness, 9.0, structure.thickness_nm)[0]
+    assert transit_time_s(profile, level, 0.2) == pytest.approx(exact, rel=2e-3)
+
+
 def test_no_barrier_no_transit() -> None:
     profile = uniform_field(stack([(5.0, 0.0, 0.067)]))
     assert np.isfinite(transit_time_s(profile, LEVEL, 0.1))

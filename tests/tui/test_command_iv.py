@@ -133,6 +133,21 @@ def test_refused_tables(
     assert words in capsys.readouterr().err
 
 
+def test_unlike_masses_and_strain_are_said(
+    capsys: pytest.CaptureFixture[str], tmp_path: Path
+) -> None:
+    path = tmp_path / "unlike.toml"
+    text = demo_text().replace('material   = "GaAs"', 'material = "GaAs"')
+    head, _, tail = text.rpartition('material = "GaAs"')
+    unlike = f'{head}material = "In0.3Ga0.7As"{tail}' + '\n[growth]\nsubstrate = "GaAs"\n'
+    path.write_text(unlike, encoding="utf-8")
+    found = result(capsys, str(path), "--to", "0.1", "--points", "3")
+    notes = found["notes"]
+    assert isinstance(notes, list)
+    assert any(note.startswith("mass: in the plane") for note in notes)
+    assert any(note.startswith("strain: ") for note in notes)
+
+
 def test_no_electrons(capsys: pytest.CaptureFixture[str], tmp_path: Path) -> None:
     path = tmp_path / "bare.toml"
     path.write_text(demo_text().replace("donors_cm3 = 2e17", ""), encoding="utf-8")
