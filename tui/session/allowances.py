@@ -27,7 +27,7 @@ def tolerance_of(table: dict[str, Any]) -> ToleranceEntry:
         if key in values:
             if values[key] != int(values[key]):
                 rule = tables.TOLERANCE[key]
-                allowed = rule.allowed if isinstance(rule, tables.Range) else ""
+                allowed = "" if isinstance(rule, tables.Text) else rule.allowed
                 found = f"is {shown(table[key])}"
                 raise refuse(("tolerance", key), f"tolerance {key}", found, allowed)
             values[key] = int(values[key])
