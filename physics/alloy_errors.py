@@ -8,6 +8,7 @@ from __future__ import annotations
 
 from collections.abc import Callable
 from dataclasses import dataclass, replace
+from functools import lru_cache
 
 from physics.formula import parse_formula
 from physics.materials import Material
@@ -65,12 +66,15 @@ def with_alloys(structure: Structure, makeup: Makeup, shifts: Shifts) -> Structu
     return replace(structure, left=contacts[0], layers=layers, right=contacts[1])
 
 
+_parsed = lru_cache(maxsize=256)(parse_formula)
+
+
 def _change(
     formula: str,
     shifts: Shifts,
     look_up: Callable[[str], Material],
 ) -> Change:
-    name = parse_formula(formula).name
+    name = _parsed(formula).name
     if name not in shifts:
         return NO_CHANGE
     new = name
@@ -90,7 +94,7 @@ def shifted(formula: str, sublattice: int, shift: float) -> str:
 
     The first is the one that comes first of Al, Ga, In or of P, As, Sb; it stays from 0 to 1.
     """
-    alloy = parse_formula(formula)
+    alloy = _parsed(formula)
     mixed = [list(alloy.cations), list(alloy.anions)]
     (first, share), *others = mixed[sublattice]
     new = min(max(share + shift, 0.0), 1.0)

@@ -11,6 +11,7 @@ from __future__ import annotations
 import math
 from collections.abc import Sequence
 from dataclasses import dataclass, replace
+from functools import lru_cache
 
 from physics.alloy_errors import Makeup, Shifts, with_alloys
 from physics.errors import StructureError
@@ -224,13 +225,19 @@ def _with_numbers(
     return replace(structure, left=left, layers=layers, right=right)
 
 
+@lru_cache(maxsize=65_536)
+def _known_fermi(donors_cm3: float, mass: float, temperature_K: float) -> float:
+    # One set of draws comes again for each source that is switched off.
+    return fermi_from_donors(donors_cm3, mass, temperature_K)
+
+
 def _with_fermi(made: Structure, designed: Structure, temperature_K: float) -> Structure:
     """Let the Fermi energies follow donors and masses; a stated Fermi energy stays."""
     contacts: list[Contact] = []
     for new, old in ((made.left, designed.left), (made.right, designed.right)):
         contact = new
         if new.donors_cm3 and (new.donors_cm3, new.mass) != (old.donors_cm3, old.mass):
-            fermi = fermi_from_donors(new.donors_cm3, new.mass, temperature_K)
+            fermi = _known_fermi(new.donors_cm3, new.mass, temperature_K)
             contact = replace(new, fermi_eV=fermi)
         contacts.append(contact)
     return replace(made, left=contacts[0], right=contacts[1])

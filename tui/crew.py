@@ -8,7 +8,7 @@ from __future__ import annotations
 
 import os
 import signal
-from collections.abc import Callable, Iterator, Sequence
+from collections.abc import Callable, Generator, Iterator, Sequence
 from concurrent.futures import FIRST_COMPLETED, Future, ProcessPoolExecutor, wait
 from concurrent.futures.process import BrokenProcessPool
 from contextlib import contextmanager
@@ -43,7 +43,7 @@ def shared_out(
     pieces: Sequence[Piece],
     jobs: int,
     watch: Callable[[], None] = go_on,
-) -> Iterator[tuple[int, Done]]:
+) -> Generator[tuple[int, Done], None, None]:
     """Do pieces of work; yield each result with its piece's index, as they are done.
 
     Parameters

@@ -18,15 +18,16 @@ import numpy as np
 from numpy.typing import NDArray
 
 from physics.field import go_on
-from physics.growth_errors import SOURCES
 from tui.chance import Plan, Slopes, plan_of
 from tui.crew import cores, shared_out
 from tui.draws import Drawn, evaluate_draws, linear_model
+from tui.estimate import Linear, bounds, linear_estimate, of_source, sources_of
 from tui.session.model import Session
 from tui.yields import (
     SCRAMBLINGS,
     Spread,
     Yield,
+    all_pass,
     gain_of,
     normal_draws,
     passes,
@@ -39,8 +40,6 @@ BoolArray = NDArray[np.bool_]
 
 PIECE, CURVE_PIECE = 128, 8
 """Draws that are computed at once: of levels, side by side; of currents, each by itself."""
-LINEAR_DRAWS = 16_384
-"""Draws of the linear model, which cost nothing."""
 ALONE_S = 4.0
 """Work that takes longer is shared out to processes, which take a second to start."""
 
@@ -54,20 +53,6 @@ class ToleranceRequest:
     seed: int | None = None
     jobs: int | None = None
     """Number of processes; None: one a core. The numbers do not depend on it."""
-
-
-@dataclass(frozen=True, eq=False)
-class Linear:
-    """The linear estimate; for gradings, whose width counts by its square, the square as well."""
-
-    slopes: Slopes
-    sd: FloatArray
-    """Of each result, shape (M,)."""
-    share: FloatArray
-    """Share of each result's variance that each source has, shape (M, S)."""
-    yields: tuple[float | None, ...]
-    """By specification; None for a result without one."""
-    joint: float | None
 
 
 @dataclass(frozen=True)
@@ -154,7 +139,7 @@ def tolerance(
     begun = time.perf_counter()
     results, levels = linear_model(plan, watch)
     spent_s = (time.perf_counter() - begun) / (1 + 2 * inputs.shape[1])
-    linear = _linear(plan, results, seed)
+    linear = linear_estimate(plan, results, seed)
     nothing = np.empty((0, results.value.size))
     first = Tolerance(request, plan, linear, 0, seed, inputs[:0], nothing)
     if tell is not None:
@@ -217,45 +202,12 @@ def _runs(plan: Plan, inputs: FloatArray) -> list[FloatArray]:
     """All draws, and with specifications again with each source switched off."""
     if not plan.session.specs:
         return [inputs]
-    return [inputs, *(np.where(_of_source(plan, s), 0.0, inputs) for s in sources_of(plan))]
-
-
-def sources_of(plan: Plan) -> list[str]:
-    """Give the sources that act on the design."""
-    there = {variable.source for variable in plan.errors.variables}
-    return [source for source in SOURCES if source in there]
-
-
-def _of_source(plan: Plan, source: str) -> BoolArray:
-    return np.array([variable.source == source for variable in plan.errors.variables])
+    return [inputs, *(np.where(of_source(plan, s), 0.0, inputs) for s in sources_of(plan))]
 
 
 def _cut(plan: Plan, draws: FloatArray) -> list[FloatArray]:
     size = PIECE if plan.sweep is None else CURVE_PIECE
     return [draws[n : n + size] for n in range(0, draws.shape[0], size)]
-
-
-def _bounds(plan: Plan) -> tuple[FloatArray, FloatArray]:
-    """Lower and upper bound of each result, each of shape (M,), infinite where there is none."""
-    specs = plan.session.specs
-    low = [-math.inf if spec.at_least is None else spec.at_least for spec in specs]
-    high = [math.inf if spec.at_most is None else spec.at_most for spec in specs]
-    return np.array(low), np.array(high)
-
-
-def _linear(plan: Plan, slopes: Slopes, seed: int) -> Linear:
-    variance = slopes.slope**2 + 2.0 * slopes.bend**2  # of z^2, the variance is 2
-    total = variance.sum(axis=1)
-    parts = [variance[:, _of_source(plan, s)].sum(axis=1) for s in sources_of(plan)]
-    share = np.stack(parts, axis=1) / np.where(total > 0.0, total, np.nan)[:, None]
-    count = slopes.value.size
-    if not plan.session.specs:
-        return Linear(slopes, np.sqrt(total), share, (None,) * count, None)
-    random = np.random.default_rng([seed, SCRAMBLINGS])
-    draws = random.standard_normal((LINEAR_DRAWS, slopes.slope.shape[1]))
-    passed = passes(slopes.at(draws), *_bounds(plan))
-    each = tuple(float(share) for share in passed.mean(axis=0))
-    return Linear(slopes, np.sqrt(total), share, each, float(passed.all(axis=1).mean()))
 
 
 def _assembled(
@@ -278,8 +230,8 @@ def _assembled(
     )
     if not plan.session.specs:
         return answer
-    passed = passes(values, *_bounds(plan))
-    joint: BoolArray = passed.all(axis=1)
+    passed = passes(values, *bounds(plan))
+    joint = all_pass(values, *bounds(plan))
     costs = []
     for run, source in zip(range(1, runs), sources_of(plan), strict=True):
         numbers = [run * len(cut) + n for n in range(len(cut))]
@@ -297,7 +249,7 @@ def _assembled(
 
 def _cost(plan: Plan, source: str, off: FloatArray, joint: BoolArray) -> Cost:
     """Say what a source costs, from the draws (N, M) without it."""
-    passed: BoolArray = passes(off, *_bounds(plan)).all(axis=1)
+    passed = all_pass(off, *bounds(plan))
     names = tuple(v.name for v in plan.errors.variables if v.source == source)
     sd = tuple(spread_of(column).sd for column in off.T)
     return Cost(source, names, sd, yield_of(passed), *gain_of(passed, joint))

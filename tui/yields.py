@@ -127,3 +127,9 @@ def passes(values: FloatArray, at_least: FloatArray, at_most: FloatArray) -> Boo
     """Say which values (N, M) keep to their bounds (M,); nan does not."""
     kept: BoolArray = (values >= at_least) & (values <= at_most)
     return kept
+
+
+def all_pass(values: FloatArray, at_least: FloatArray, at_most: FloatArray) -> BoolArray:
+    """Say which draws keep to all bounds, shape (N,); see `passes`."""
+    kept: BoolArray = np.all(passes(values, at_least, at_most), axis=1)
+    return kept
