@@ -185,12 +185,15 @@ def track(
     off = np.zeros_like(place_eV)
     slope = place_eV - expected.energy_eV
     levels: list[Level | None] = []
+    lost: set[int] = set()
     reached = True
     for share in STEPS:
         place = expected.energy_eV + share * slope + off
         levels, reached = proved(profile_at(share), place, expected)
         for number, level in zip(expected.wanted, levels, strict=True):
             if level is None:
-                return [None] * len(expected.wanted), reached
-            off[number] += level.energy_eV - place[number]
-    return levels, reached
+                lost.add(number)
+            else:
+                off[number] += level.energy_eV - place[number]
+    kept = zip(expected.wanted, levels, strict=True)
+    return [None if number in lost else level for number, level in kept], reached

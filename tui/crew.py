@@ -9,14 +9,14 @@ from __future__ import annotations
 import os
 import signal
 from collections.abc import Callable, Generator, Iterator, Sequence
-from concurrent.futures import FIRST_COMPLETED, Future, ProcessPoolExecutor, wait
-from concurrent.futures.process import BrokenProcessPool
 from contextlib import contextmanager
-from multiprocessing import get_context
-from typing import Any, TypeVar
+from typing import TYPE_CHECKING, Any, TypeVar
 
 from physics.field import go_on
 from tui.diagnostics import CallError
+
+if TYPE_CHECKING:
+    from concurrent.futures import Future
 
 Piece = TypeVar("Piece")
 Done = TypeVar("Done")
@@ -64,6 +64,10 @@ def shared_out(
         for index, piece in enumerate(pieces):
             yield index, work(piece, watch)
         return
+    from concurrent.futures import ProcessPoolExecutor
+    from concurrent.futures.process import BrokenProcessPool
+    from multiprocessing import get_context
+
     context = get_context("spawn")
     end = context.Event()
     executor = ProcessPoolExecutor(jobs, context, _begin, (end,))
@@ -81,6 +85,8 @@ def shared_out(
 def _finished(
     futures: dict[Future[Done], int], watch: Callable[[], None]
 ) -> Iterator[tuple[int, Done]]:
+    from concurrent.futures import FIRST_COMPLETED, wait
+
     waiting = set(futures)
     while waiting:
         watch()

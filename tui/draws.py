@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from collections.abc import Callable, Sequence
 from dataclasses import dataclass, replace
 from functools import partial
@@ -14,7 +15,8 @@ from physics.drawn_levels import energies_and_widths, proved, track
 from physics.errors import PhysicsError
 from physics.field import Profile, go_on
 from physics.growth_errors import drawn
-from physics.levels import Level
+from physics.levels import Level, levels_at
+from physics.resonances import OPEN
 from physics.structure import Structure
 from tui.chance import QUICK_KEYS, Plan, Slopes
 from tui.outcome import curve_value, level_value
@@ -118,11 +120,12 @@ def _put_levels(
         profiles.append(profile)
         rows.append(row)
     left = set(rows)
-    if all(one.key in QUICK_KEYS for one in plan.outcomes if one.of == "level") and rows:
+    if rows:
         energy, width = energies_and_widths(profiles, place_eV[rows], expected)
         for at in np.flatnonzero(np.isfinite(energy).all(axis=1)).tolist():
             left.discard(rows[at])
-            _put_quick(plan, energy[at], width[at], rows[at], targets)
+            row, poles = rows[at], (energy[at], width[at])
+            _put_quick(plan, profiles[at], poles, targets[0][row], targets[1][row])
     for at, row in enumerate(rows):
         if row in left:
             _put_proved(
@@ -141,25 +144,42 @@ def _profile(plan: Plan, structure: Structure, watch: Callable[[], None]) -> Pro
 
 
 def _put_quick(
-    plan: Plan, energy: FloatArray, width: FloatArray, row: int, targets: Targets
+    plan: Plan,
+    profile: Profile,
+    poles: tuple[FloatArray, FloatArray],
+    values: FloatArray,
+    places: FloatArray,
 ) -> None:
-    """Put in what is known of one draw's levels from their energies and widths, each (W,)."""
+    """Put in one draw's results, energies and widths (W,) of its levels being known."""
     expected = plan.expected
     if expected is None:
         return
-    values, places, _ = targets
-    places[row, list(expected.wanted)] = energy
-    for n, one in enumerate(plan.outcomes):
-        if one.of == "level":
-            at = expected.wanted.index(plan.numbers.index(one.number))
-            with np.errstate(divide="ignore"):
-                known = {
-                    "energy_eV": energy[at],
-                    "width_eV": width[at],
-                    "log10_width_eV": np.log10(width[at]),
-                    "lifetime_s": HBAR_EV_S / width[at],
-                }
-            values[row, n] = known[one.key]
+    energy, width = poles
+    places[list(expected.wanted)] = energy
+    wanted = [(n, one) for n, one in enumerate(plan.outcomes) if one.of == "level"]
+    levels: tuple[Level, ...] = ()
+    if any(one.key not in QUICK_KEYS for _, one in wanted):
+        levels = levels_at(profile, OPEN, energy - 0.5j * width)
+    for n, one in wanted:
+        at = expected.wanted.index(plan.numbers.index(one.number))
+        values[n] = (
+            level_value(levels[at], one.key)
+            if levels
+            else _quick(one.key, float(energy[at]), float(width[at]))
+        )
+
+
+def _quick(key: str, energy_eV: float, width_eV: float) -> float:
+    """Read one of `QUICK_KEYS`."""
+    match key:
+        case "energy_eV":
+            return energy_eV
+        case "width_eV":
+            return width_eV
+        case "log10_width_eV":
+            return math.log10(width_eV) if width_eV > 0.0 else -math.inf
+        case _:
+            return HBAR_EV_S / width_eV if width_eV > 0.0 else math.inf
 
 
 def _put_proved(
@@ -181,7 +201,10 @@ def _put_proved(
     try:
         levels, sure = proved(profile, place_eV, expected)
         if None in levels:
-            levels, sure = track(partial(_profile_at, plan, draw, watch), place_eV, expected)
+            way = partial(_profile_at, plan, draw, watch)
+            tracked, also = track(way, place_eV, expected)
+            pairs = zip(levels, tracked, strict=True)
+            levels, sure = [other if one is None else one for one, other in pairs], sure and also
     except PhysicsError:
         sure = False
     reached[row] &= sure and None not in levels
