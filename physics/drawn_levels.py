@@ -31,6 +31,10 @@ SURE_SHARE = 0.35
 """A level is known again within this share of the distance between two expected ones."""
 SURE_EV = 0.03
 """A level that stands alone is known again within this distance, or two of its widths."""
+ALIKE_DECADES = 1.0
+"""A level whose width is this many decades off is another one: one of a spacer, say."""
+ALIKE_FROM_EV = 1e-9
+"""Levels narrower than this are alike in any case."""
 STEPS = (0.25, 0.5, 0.75, 1.0)
 
 
@@ -114,16 +118,24 @@ def matched(
     """Say which of the levels found (N,) each wanted one has become; None where in doubt."""
     taken: list[int | None] = []
     for number in expected.wanted:
-        if energy_eV.size == 0:
+        like = _alike(width_eV, expected.width_eV[number])
+        if not like.any():
             taken.append(None)
             continue
-        distance = np.abs(energy_eV - place_eV[number])
+        distance = np.where(like, np.abs(energy_eV - place_eV[number]), np.inf)
         at = int(np.argmin(distance))
-        others = np.delete(place_eV, number)
-        gap = float(np.abs(others - place_eV[number]).min()) if others.size else np.inf
-        reach = min(SURE_SHARE * gap, max(SURE_EV, 2.0 * float(width_eV[at])))
+        rivals = _alike(expected.width_eV, expected.width_eV[number])
+        rivals[number] = False
+        gap = np.abs(place_eV[rivals] - place_eV[number]).min(initial=np.inf)
+        reach = min(SURE_SHARE * float(gap), max(SURE_EV, 2.0 * float(width_eV[at])))
         taken.append(at if distance[at] <= reach else None)
     return [at if at is None or taken.count(at) == 1 else None for at in taken]
+
+
+def _alike(width_eV: FloatArray, of_eV: float) -> NDArray[np.bool_]:
+    """Say which levels are not of quite another width than a given one."""
+    ratio = np.maximum(width_eV, ALIKE_FROM_EV) / max(of_eV, ALIKE_FROM_EV)
+    return np.asarray(np.abs(np.log10(ratio)) <= ALIKE_DECADES)
 
 
 def proved(

@@ -61,6 +61,8 @@ def linear_estimate(plan: Plan, slopes: Slopes, seed: int) -> Linear:
     count = slopes.value.size
     if not plan.session.specs:
         return Linear(slopes, np.sqrt(total), share, (None,) * count, None)
+    if not np.isfinite(total).all():
+        return Linear(slopes, np.sqrt(total), share, (None,) * count, None)
     random = np.random.default_rng([seed, SCRAMBLINGS])
     draws = random.standard_normal((LINEAR_DRAWS, slopes.slope.shape[1]))
     passed = passes(slopes.at(draws), *bounds(plan))

@@ -135,6 +135,8 @@ def linear_said(found: Tolerance) -> list[str]:
         nominal, spread = float(linear.slopes.value[n]), float(linear.sd[n])
         parts = f", of its variance {parts}" if parts else ""
         lines.append(f"linear estimate: {one.text} {nominal:.6g}, spread {spread:.2g}{parts}")
+        if not math.isfinite(spread):
+            lines[-1] = f"linear estimate: {one.text} is not known again near the design"
     if linear.joint is not None:
         lines.append(f"linear estimate: joint yield {100.0 * linear.joint:.1f} %")
     return lines
