@@ -97,8 +97,21 @@ def _finished(
 
 def _begin(end: Any) -> None:
     """Make a worker deaf to interrupts, and ready to be told to end."""
+    from threading import Thread
+
     signal.signal(signal.SIGINT, signal.SIG_IGN)
     _told[:] = [end]
+    Thread(target=_end_with_parent, daemon=True).start()
+
+
+def _end_with_parent() -> None:
+    """Leave when the parent is gone, however it went; a queue alone would not tell."""
+    from multiprocessing import parent_process
+
+    parent = parent_process()
+    if parent is not None:
+        parent.join()
+        os._exit(1)
 
 
 def _do(work: Callable[[Piece, Callable[[], None]], Done], piece: Piece) -> Done:
