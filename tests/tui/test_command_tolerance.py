@@ -155,7 +155,7 @@ def test_an_interrupt_ends_all_processes(design: str) -> None:
     out, said = process.communicate(timeout=60)
     assert process.returncode == 130, said
     assert "Traceback" not in said
-    assert "interrupted: this is the answer of the first" in said
+    assert "interrupted: this is the answer of " in said
     assert out.startswith("result,")
     for _ in range(100):
         try:

@@ -77,7 +77,7 @@ def run(options: Namespace) -> int:
         for line in yield_said(found):
             say(line)
     if found.interrupted:
-        say(f"interrupted: this is the answer of the first {found.draws} draws")
+        say(f"interrupted: this is the answer of {found.draws} draws")
         return INTERRUPTED
     return DONE if found.reached else INACCURATE
 
