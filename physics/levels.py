@@ -179,6 +179,11 @@ def follow_levels(profile: Profile, before: LevelSet) -> LevelSet:
     return replace(before, levels=tuple(levels))
 
 
+def levels_at(profile: Profile, sheet: Sheet, pole_eV: ComplexArray) -> tuple[Level, ...]:
+    """Describe levels whose poles (N,) are known, all of them on one sheet."""
+    return tuple(_describe(profile, _Strip(sheet, pole_eV, 0, proved=False)))
+
+
 def _mixing(poles: ComplexArray) -> FloatArray:
     """Bound the relative error of each width that neighbours bring about, shape (N,)."""
     if poles.size < 2:

@@ -121,7 +121,7 @@ def evaluate(
         curve = sweep(SweepRequest(session), watch)
         reached = reached and curve.reached
     values = tuple(
-        _of_curve(one, curve) if one.needs_curve else _of_levels(one, levels) for one in wanted
+        curve_value(one, curve) if one.needs_curve else _of_levels(one, levels) for one in wanted
     )
     return Answer(values, reached, levels, curve)
 
@@ -140,7 +140,8 @@ def _of_levels(wanted: Outcome, levels: LevelSet | None) -> float:
     return level_value(levels.levels[wanted.number - 1], wanted.key)
 
 
-def _of_curve(wanted: Outcome, found: Sweep | None) -> float:
+def curve_value(wanted: Outcome, found: Sweep | None) -> float:
+    """Read one result off a current curve; nan where it is not there."""
     value = None
     if found is not None and wanted.of == "device":
         value = None if found.figures is None else getattr(found.figures, wanted.key)

@@ -99,7 +99,7 @@ def set_scene(request: Request, watch: Callable[[], None] = go_on) -> Scene:
         The session does not describe something that can be computed.
     """
     structure = resolve(request.session)
-    profile, screening = _field(request.session.conditions, structure, watch)
+    profile, screening = field_over(request.session.conditions, structure, watch)
     profile = replace(profile, watch=watch)
     low, high = energy_window(profile)
     view = request.session.view
@@ -160,9 +160,10 @@ def scatter_scene_in_parts(scene: Scene, energy_eV: NDArray[np.float64]) -> Iter
         yield scatter_scene(scene, energy_eV[first : first + ENERGIES_AT_ONCE])
 
 
-def _field(
-    conditions: Conditions, structure: Structure, watch: Callable[[], None]
+def field_over(
+    conditions: Conditions, structure: Structure, watch: Callable[[], None] = go_on
 ) -> tuple[Profile, ScreeningReport | None]:
+    """Lay the field of the conditions over a structure; how it was solved, if it was screened."""
     if conditions.field == "uniform":
         return uniform_field(structure, conditions.bias_V, band=conditions.band), None
     screened = screened_field(

@@ -109,11 +109,20 @@ def sweep(
     SessionError, PhysicsError
         The session does not describe something that can be computed, or no electrons are stated.
     """
-    structure = resolve(request.session)
+    return sweep_over(resolve(request.session), request, watch, tell)
+
+
+def sweep_over(
+    structure: Structure,
+    request: SweepRequest,
+    watch: Callable[[], None] = go_on,
+    tell: Callable[[Sweep], None] | None = None,
+) -> Sweep:
+    """As `sweep`, for a structure that is not quite the session's: as it was grown, say."""
     if structure.left.fermi_eV is None:
         path: KeyPath = ("left", "donors_cm3")
         raise SessionError("left donors_cm3", "is missing", NEEDS_ELECTRONS, path=path)
-    start, stop = _range(request, structure)
+    start, stop = range_of(request, structure)
     drive, solutions = drive_of(request.session, structure, (start, stop), watch)
 
     def first(curve: Curve) -> Sweep:
@@ -164,7 +173,8 @@ def drive_of(
     return Drive(structure, conditions.temperature_K, profiles, watch, lost), solutions
 
 
-def _range(request: SweepRequest, structure: Structure) -> tuple[float, float]:
+def range_of(request: SweepRequest, structure: Structure) -> tuple[float, float]:
+    """Give the range of a sweep: as asked for, as the session says, or as the barriers suggest."""
     stated = request.session.sweep
     start = next(v for v in (request.from_V, stated.from_V, 0.0) if v is not None)
     suggested = max(suggested_V(structure), start + STEP_V)

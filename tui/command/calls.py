@@ -6,14 +6,14 @@ import argparse
 import sys
 from typing import Any, NoReturn
 
-from tui.command import example, iv, levels, profile, report, spectrum
+from tui.command import example, iv, levels, profile, report, spectrum, tolerance
 from tui.command.options import NUMBERS, locate
 from tui.command.workbench import open_workbench
 from tui.diagnostics import WRONG, CallError
 from tui.session.refusal import SessionError
 
 VERSION = "0.1.0"
-COMMANDS = (levels, spectrum, profile, iv, report, example)
+COMMANDS = (levels, spectrum, profile, iv, tolerance, report, example)
 DESCRIPTION = """\
 Design layered tunnelling structures: where the levels are, how long they live,
 what gets through, what current flows.
@@ -30,6 +30,7 @@ examples:
   winze spectrum diode.toml --from 0 --to 0.4 --points 2000 > t.csv
   winze profile diode.toml --level 2 --json | jq .norm
   winze iv diode.toml --from 0 --to 0.5 -o iv.csv
+  winze tolerance diode.toml --draws 2048 --seed 7
   sed 's/= 10$/= 11/' diode.toml | winze report -
 
 exit status: 0 done, 1 a check failed, 2 wrong input or call,

@@ -116,15 +116,15 @@ def request_of(options: Namespace) -> Request:
 
 def _require_other_output(options: Namespace) -> None:
     """Refuse to put a result where the session text is: nothing that was typed may be lost."""
-    if "-" in (options.file, options.output) or options.output is None:
-        return
-    with contextlib.suppress(
-        OSError, ValueError
-    ):  # what cannot be found is refused where it is used
-        if Path(options.output).is_file() and Path(options.output).samefile(options.file):
-            raise CallError(
-                f"-o names the session text itself, {printable(options.file)}; name another file"
-            )
+    for option, name in (("-o", options.output), ("--each", getattr(options, "each", None))):
+        if "-" in (options.file, name) or name is None:
+            continue
+        with contextlib.suppress(
+            OSError, ValueError
+        ):  # what cannot be found is refused where it is used
+            if Path(name).is_file() and Path(name).samefile(options.file):
+                said = f"{option} names the session text itself, {printable(options.file)}"
+                raise CallError(f"{said}; name another file")
 
 
 def read(file: str) -> tuple[str, Session]:

@@ -117,6 +117,35 @@ class DeviceEntry:
 
 
 @dataclass(frozen=True)
+class ToleranceEntry:
+    """What growth leaves to chance: standard deviations, None where exact; and how it is drawn."""
+
+    rate_percent: float | None = None
+    """Growth rate, one drift for all layers of a material."""
+    thickness_nm: float | None = None
+    """Thickness of each layer for itself."""
+    thickness_ml: float | None = None
+    """The same in monolayers of the layer."""
+    composition: float | None = None
+    """Fraction of an alloy, one error for all layers of its formula."""
+    donors_percent: float | None = None
+    """Donors, for each doped layer and contact."""
+    grading_nm: float | None = None
+    """Mean width of the linear grade that all interfaces of a run share."""
+    draws: int = 1024
+    seed: int = 1
+
+
+@dataclass(frozen=True)
+class SpecEntry:
+    """A specification: a result by its name (`tui.outcome`), and its bounds."""
+
+    result: str
+    at_least: float | None = None
+    at_most: float | None = None
+
+
+@dataclass(frozen=True)
 class Session:
     """A whole session text."""
 
@@ -131,3 +160,5 @@ class Session:
     sweep: SweepEntry = field(default_factory=SweepEntry)
     device: DeviceEntry = field(default_factory=DeviceEntry)
     growth: Growth = field(default_factory=Growth)
+    tolerance: ToleranceEntry = field(default_factory=ToleranceEntry)
+    specs: tuple[SpecEntry, ...] = ()

@@ -13,6 +13,7 @@ from typing import Any
 
 from physics.ranges import TEMPERATURE_K
 from tui.session import tables
+from tui.session.allowances import specs_of, tolerance_of
 from tui.session.checked import refuse, require_known, table_values
 from tui.session.lines import MOST_PARTS, KeyPath, tangled
 from tui.session.model import (
@@ -166,6 +167,8 @@ def _session(document: dict[str, Any]) -> Session:
         growth=Growth(
             **table_values(_table(document, "growth"), tables.GROWTH, ("growth",), "growth")
         ),
+        tolerance=tolerance_of(_table(document, "tolerance")),
+        specs=specs_of(document.get("spec", [])),
     )
 
 

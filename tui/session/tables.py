@@ -14,6 +14,18 @@ ENERGY_EV = Range(-200.0, 200.0, "an energy lies between -200 and 200 eV")
 WIDTH_EV = Range(0.0, 200.0, "a largest width is above 0 and at most 200 eV", open_below=True)
 MONOLAYERS = Range(0.0, 1e6, "a number of monolayers is above 0", open_below=True)
 
+RATE_PERCENT = Range(0.0, 20.0, "a growth rate's standard deviation lies between 0 and 20 %")
+SPREAD_NM = Range(0.0, 10.0, "a thickness's standard deviation lies between 0 and 10 nm")
+SPREAD_ML = Range(0.0, 50.0, "a thickness's standard deviation lies between 0 and 50 monolayers")
+COMPOSITION = Range(0.0, 0.2, "a fraction's standard deviation lies between 0 and 0.2")
+DONORS_PERCENT = Range(0.0, 30.0, "the donors' standard deviation lies between 0 and 30 %")
+GRADING_NM = Range(0.0, 5.0, "a grade's mean width lies between 0 and 5 nm")
+DRAWS = Range(8.0, 1e5, "draws are a whole number from 8 to 100000")
+SEED = Range(0.0, 2.0**53, "a seed is a whole number from 0 to 2^53")
+BOUND = Range(-1e300, 1e300, "a bound is a number that is not infinite")
+WHOLE = ("draws", "seed")
+"""Keys whose number is a whole one."""
+
 NAME_RULE = "a text on one line without control characters, in quotation marks"
 TEXT_RULE = "a text without control characters, in quotation marks"
 
@@ -90,6 +102,17 @@ DEVICE: Table = {
     "series_ohm": ranges.SERIES_OHM,
     "parallel_fF": ranges.PARALLEL_FF,
 }
+TOLERANCE: Table = {
+    "rate_percent": RATE_PERCENT,
+    "thickness_nm": SPREAD_NM,
+    "thickness_ml": SPREAD_ML,
+    "composition": COMPOSITION,
+    "donors_percent": DONORS_PERCENT,
+    "grading_nm": GRADING_NM,
+    "draws": DRAWS,
+    "seed": SEED,
+}
+SPEC: Table = {"result": LINE_TEXT, "at_least": BOUND, "at_most": BOUND}
 TOP_TEXTS: Table = {"title": LINE_TEXT, "notes": Text(lines=True)}
 TOP_TABLES = (
     "conditions",
@@ -101,6 +124,8 @@ TOP_TABLES = (
     "view",
     "sweep",
     "device",
+    "tolerance",
+    "spec",
 )
 TOP_KEYS = ("format", *TOP_TEXTS, *TOP_TABLES)
 
@@ -113,7 +138,7 @@ UNITLESS = {
     "mobility": "mobility_cm2_Vs",
     "edge": "edge_eV",
     "to_edge": "to_edge_eV",
-    "donors": "donors_cm3",
+    "donors": "donors_cm3 or donors_percent",
     "doping": "donors_cm3",
     "fermi": "fermi_eV",
     "monolayer": "monolayer_nm",
@@ -128,5 +153,7 @@ UNITLESS = {
     "series": "series_ohm",
     "parallel": "parallel_fF",
     "overlay": "overlay_K",
+    "rate": "rate_percent",
+    "grading": "grading_nm",
 }
 """Keys that people write without the unit, and what they mean."""

@@ -157,8 +157,10 @@ def _tables(session: Session) -> dict[KeyPath, Values]:
     for entry in session.materials:
         values = asdict(entry)
         result["material", values.pop("name")] = values
-    for name in ("view", "sweep", "device"):
+    for name in ("view", "sweep", "device", "tolerance"):
         result[name,] = asdict(getattr(session, name))
+    for number, spec in enumerate(session.specs):
+        result["spec", number] = asdict(spec)
     return result
 
 
@@ -180,16 +182,18 @@ def _fresh(session: Session) -> str:
     pieces += [_table_text(("layer",), _layer(layer)) for layer in session.layers]
     pieces.append(_table_text(("right",), parts["right",]))
     pieces += [_table_text(name, parts[name]) for name in parts if name[:1] == ("material",)]
-    for name in ("view", "sweep", "device"):
+    for name in ("view", "sweep", "device", "tolerance"):
         table = getattr(session, name)
         if table != type(table)():
             pieces.append(_table_text((name,), parts[name,]))
+    pieces += [_table_text(name, parts[name]) for name in parts if name[:1] == ("spec",)]
     return "\n".join([text, *pieces])
 
 
 def _table_text(name: KeyPath, values: Values) -> str:
-    header = ".".join(_name(str(part)) for part in name)
-    lines = [f"[[{header}]]" if name == ("layer",) else f"[{header}]"]
+    header = ".".join(_name(part) for part in name if isinstance(part, str))
+    is_one_of_many = name == ("layer",) or isinstance(name[-1], int)
+    lines = [f"[[{header}]]" if is_one_of_many else f"[{header}]"]
     lines += [
         f"{key} = {_said(value)}"
         for key, value in values.items()
