@@ -28,6 +28,8 @@ NAME_WIDTH = 8
 """Room at the right for the names of curves, where there are several."""
 MIN_WIDTH, MIN_HEIGHT = 44, 7
 PAD_ABOVE, PAD_BELOW = 0.14, 0.05
+NEXT_TO_ZERO = 0.01
+"""Share of the range of bias about zero that the decades' lower end takes no notice of."""
 MOST_DECADES = 12.0
 """Currents smaller than the largest by more run along the lower edge."""
 ROWS_A_SHARE = 5
@@ -167,7 +169,10 @@ def _limits(scene: Scene) -> tuple[Limits, float]:
     size = np.abs(every)
     most = float(size.max())
     if scene.is_log:
-        least = float(size[size > 0.0].min(initial=most))
+        # Next to zero bias the current has no end of decades: the first column need not show them.
+        bias = np.concatenate([curve.bias_V for curve in curves])
+        seen = (size > 0.0) & (np.abs(bias) >= NEXT_TO_ZERO * (sweep.to_V - sweep.from_V))
+        least = float(size[seen].min(initial=most))
         top = math.log10(most) if most > 0.0 else 0.0
         bottom = max(math.log10(least) if least > 0.0 else -1.0, top - MOST_DECADES)
         scale = 1.0

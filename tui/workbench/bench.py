@@ -40,7 +40,7 @@ WIDE_FROM, SMALLEST = (160, 30), (60, 18)
 RESIZE_PAUSE_S = 0.08
 SLOW_S, PROGRESS_S = 0.3, 1.0
 """When a computation is called slow, and how often its time is shown."""
-HINT = "? keys  Enter change  + - step  n p level  a d x layer  c current  w save"
+HINT = "? keys  Enter change  + - step  n p level  a d x layer  c view  w save  q quit"
 
 
 class Bench(Asking, inherit_bindings=False):
