@@ -102,7 +102,7 @@ def _device(figures: Figures) -> list[Item]:
         ("power", _amount(figures.available_power_W_per_cm2, "W/cm2")),
         ("heat", amount(figures.dissipated_W_per_cm2, "W/cm2", 3)),
         ("cut-off", _cutoff(figures)),
-        ("-G", _amount(figures.negative_conductance_S_per_cm2, SLOPE)),
+        ("steepest fall", _amount(figures.negative_conductance_S_per_cm2, SLOPE)),
         ("C plates", amount(figures.space_charge_F_per_cm2, CAPACITANCE)),
         ("C quantum", _amount(figures.quantum_F_per_cm2, CAPACITANCE)),
         ("dwell", _duration(figures.dwell_time_s)),
